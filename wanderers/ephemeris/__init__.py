@@ -1,0 +1,1 @@
+"""From a JPL kernel to positions: kernels, time scales, frames and the tracks everything else reads."""
