@@ -1,0 +1,158 @@
+"""Apparent directions of anything in the list of targets, as stacks of derivatives.
+
+Targets are numbered: 0 to 9 the bodies in their written order, from 10 on the stars of a catalogue.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+
+from wanderers.ephemeris import frames, places, stars, vectors
+from wanderers.ephemeris.bodies import BODIES, Body
+from wanderers.arrays import Floats, Ints
+from wanderers.ephemeris.deflection import deflection, deflection_rate
+from wanderers.ephemeris.frames import Frame
+from wanderers.ephemeris.stars import StarCatalogue
+from wanderers.ephemeris.tracks import (
+    EARTH_DISTANCE,
+    EARTH_POSITION,
+    OBLIQUITY,
+    POSITION,
+    ROTATION,
+    Tracks,
+)
+
+FIRST_STAR: Final = len(BODIES)
+SUN: Final = Body.SUN.order
+ABERRATION_STEP_DAYS: Final = 1e-2
+
+
+@dataclass(frozen=True, slots=True)
+class Sky:
+    """Tracks, and the stars among which they run."""
+
+    tracks: Tracks
+    catalogue: StarCatalogue | None = None
+
+    def apparent(self, target: Ints, jd: Floats, order: int = 0) -> Floats:
+        """Return apparent geocentric directions, one target an instant.
+
+        Args:
+            target: target numbers, shape (n,).
+            jd: TT, shape (n,).
+            order: highest derivative, 0 to 2. The second leaves out how deflection (and, for a star,
+                aberration) is accelerated: it steers root finders and is no result.
+
+        Returns:
+            unit vectors in GCRS axes, shape (order + 1, 3, n).
+        """
+        is_star = target >= FIRST_STAR
+        if not is_star.any():
+            return self._apparent_bodies(target, jd, order)
+        out = np.empty((order + 1, 3, jd.size))
+        out[..., is_star] = self._apparent_stars(target[is_star] - FIRST_STAR, jd[is_star], order)
+        bodies = ~is_star
+        if bodies.any():
+            out[..., bodies] = self._apparent_bodies(target[bodies], jd[bodies], order)
+        return out
+
+    def rotation(self, frame: Frame, jd: Floats, order: int = 0) -> Floats:
+        """Return the rotation from GCRS axes to a frame: (order + 1, 3, 3, n), or (3, 3) if fixed."""
+        if frame is Frame.J2000:
+            return frames.ecliptic_of_j2000()
+        return rotation_from(self.tracks.observer.evaluate(0, jd, slice(0, 10), order), frame)
+
+    def longitude_deg(self, target: Ints, jd: Floats, frame: Frame, order: int = 0) -> Floats:
+        """Return the stack of apparent longitude (right ascension on the equator), shape (order + 1, n)."""
+        return vectors.longitude_deg(
+            vectors.rotate(self.rotation(frame, jd, order), self.apparent(target, jd, order))
+        )
+
+    def earth_distance_au(self, target: Ints, jd: Floats, order: int = 0) -> Floats:
+        """Return the stack of geometric geocentric distance of bodies, shape (order + 1, n)."""
+        return self.tracks.evaluate_each(target, jd, EARTH_DISTANCE, order)[:, 0]
+
+    def _apparent_bodies(self, target: Ints, jd: Floats, order: int) -> Floats:
+        position = self.tracks.evaluate_each(target, jd, POSITION, order)
+        sun = self.tracks.evaluate_each(np.full(jd.size, SUN), jd, POSITION, min(order, 1))
+        return bent(position, sun, target == SUN)
+
+    def _apparent_stars(self, star: Ints, jd: Floats, order: int) -> Floats:
+        if self.catalogue is None:
+            raise LookupError("this sky holds no stars")
+        sun = self.tracks.evaluate_each(np.full(jd.size, SUN), jd, POSITION, min(order, 1))
+        earth = self.tracks.observer.evaluate(0, jd, EARTH_POSITION, 2)
+        direction = stars.astrometric_directions_each(self.catalogue, star, jd, earth[0])
+        return bent_star(direction, earth, sun, order)
+
+
+def rotation_from(observer: Floats, frame: Frame) -> Floats:
+    """Turn an observer's track, components 0 to 9, into rotations of date, shape (order + 1, 3, 3, n)."""
+    ecliptic = observer[:, ROTATION].reshape(observer.shape[0], 3, 3, -1)
+    if frame is Frame.ECLIPTIC:
+        return np.asarray(ecliptic)
+    turn = _turn_to_equator(observer[:, OBLIQUITY][:, 0])
+    out = np.zeros_like(ecliptic)
+    for d in range(out.shape[0]):
+        for k in range(d + 1):
+            out[d] += vectors.comb(d, k) * np.einsum("ijn,jkn->ikn", turn[k], ecliptic[d - k])
+    return out
+
+
+def _turn_to_equator(obliquity: Floats) -> Floats:
+    """Return the rotation about x from ecliptic to equator axes as a stack, shape (order + 1, 3, 3, n)."""
+    turn = np.zeros((obliquity.shape[0], 3, 3, obliquity.shape[1]))
+    c, s = np.cos(obliquity[0]), np.sin(obliquity[0])
+    turn[0, 0, 0] = 1.0
+    turn[0, 1:, 1:] = [[c, -s], [s, c]]
+    if obliquity.shape[0] > 1:
+        rate = obliquity[1]
+        turn[1, 1:, 1:] = [[-s * rate, -c * rate], [c * rate, -s * rate]]
+    if obliquity.shape[0] > 2:
+        rate, bend = obliquity[1], obliquity[2]
+        dc, ds = -s * bend - c * rate**2, c * bend - s * rate**2
+        turn[2, 1:, 1:] = [[dc, -ds], [ds, dc]]
+    return turn
+
+
+def bent(position: Floats, sun: Floats, is_sun: np.ndarray) -> Floats:
+    """Return apparent unit directions of bodies: track positions with the Sun's deflection added.
+
+    Args:
+        position: stack in au, shape (order + 1, 3, n).
+        sun: the Sun's, order at most 1.
+        is_sun: shape (n,), where the body is the Sun itself and nothing bends.
+    """
+    out = vectors.unit(position)
+    bends = ~is_sun
+    if not bends.any():
+        return out
+    some_position, some_sun = position[..., bends], sun[..., bends]
+    out[0][:, bends] += deflection(some_position[0], some_sun[0])
+    if position.shape[0] > 1:
+        out[1][:, bends] += deflection_rate(some_position[:2], some_sun)
+    return out
+
+
+def bent_star(direction: Floats, earth: Floats, sun: Floats, order: int) -> Floats:
+    """Return apparent unit directions of stars.
+
+    Args:
+        direction: astrometric, shape (3, n); its own drift is too slow to matter in a rate.
+        earth: barycentric position stack, au, order 2.
+        sun: geocentric position stack, au.
+        order: highest derivative wanted.
+    """
+    h = ABERRATION_STEP_DAYS
+    out = np.zeros((order + 1, 3, direction.shape[-1]))
+    out[0] = places.aberrated(direction, earth[1])
+    if order:
+        after = places.aberrated(direction, earth[1] + h * earth[2])
+        before = places.aberrated(direction, earth[1] - h * earth[2])
+        out[1] = (after - before) / (2.0 * h)
+        out[1] += deflection_rate(np.stack([out[0], out[1]]), sun, at_infinity=True)
+    out[0] += deflection(out[0], sun[0], at_infinity=True)
+    return out

@@ -1,0 +1,93 @@
+"""Extrema of the true angle between two bodies: appulses and greatest elongations.
+
+The angle itself has a corner where two bodies meet head on and is nearly flat in the cosine; half the
+square of the chord between the two unit directions has neither fault. Its rate is chord times chord rate.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from wanderers.arrays import Bools, Floats, Ints
+from wanderers.ephemeris.bodies import BODIES, INNER, Body
+from wanderers.ephemeris.frames import Frame
+from wanderers.ephemeris.sky import SUN
+from wanderers.ephemeris.vectors import separation_deg, wrapped_deg
+from wanderers.events.kinds import Batch, Kind, batch
+from wanderers.events.scene import Scene
+from wanderers.events.search import Roots, find_roots
+
+ELONGATION_DETAILS = ("east", "west")
+MARGIN_DEG = 3.0
+"""How much wider than the limit an interval's ends may be: planets close in by less within two days."""
+MOON_MARGIN_DEG = 32.0
+
+
+def find_appulses(scene: Scene) -> list[Batch]:
+    """Find the least separations of every chosen pair of Moon and planets, within the limits."""
+    pairs = scene.held_pairs(BODIES[1:])
+    if pairs.shape[1] == 0:
+        return []
+    with_moon = pairs[0] == Body.MOON.order
+    limit = np.where(with_moon, scene.choice.limits.moon_deg, scene.choice.limits.planets_deg)
+    margin = np.where(with_moon, MOON_MARGIN_DEG, MARGIN_DEG)
+    roots = chord_extrema(scene, pairs, limit + margin)
+    first, second = pairs[0][roots.function], pairs[1][roots.function]
+    apart = separation_of(scene, first, second, roots.jd)
+    near = roots.rising & (apart < limit[roots.function])
+    return [batch(Kind.APPULSE, None, roots.jd[near], first[near], other=second[near])]
+
+
+def find_greatest_elongations(scene: Scene) -> list[Batch]:
+    """Find the greatest true angles of Mercury and Venus from the Sun."""
+    planets = scene.held(scene.choice.among(INNER))
+    if planets.size == 0:
+        return []
+    pairs = np.stack([np.full(planets.size, SUN), planets])
+    roots = chord_extrema(scene, pairs, np.full(planets.size, 180.0))
+    farthest = ~roots.rising
+    jd, body = roots.jd[farthest], planets[roots.function[farthest]]
+    longitude = scene.sky.longitude_deg(body, jd, Frame.ECLIPTIC)[0]
+    sun = scene.sky.longitude_deg(np.full(jd.size, SUN), jd, Frame.ECLIPTIC)[0]
+    west = (wrapped_deg(longitude - sun) < 0.0).astype(np.int64)
+    return [batch(Kind.GREATEST_ELONGATION, None, jd, body, detail=west, details=ELONGATION_DETAILS)]
+
+
+def separation_of(scene: Scene, first: Ints, second: Ints, jd: Floats) -> Floats:
+    """Return the apparent separation of two targets an instant, degrees, shape (n,)."""
+    return separation_deg(scene.sky.apparent(first, jd)[0], scene.sky.apparent(second, jd)[0])
+
+
+def chord_extrema(scene: Scene, pairs: Ints, within_deg: Floats) -> Roots:
+    """Find the extrema of the separation of pairs.
+
+    Args:
+        scene: where to look.
+        pairs: target numbers, shape (2, pairs).
+        within_deg: intervals with both ends farther apart than this are passed over, shape (pairs,).
+
+    Returns:
+        roots whose function is the pair and which rise at a least separation.
+    """
+    directions = scene.samples.directions
+    sampled = [closing(directions[a], directions[b]) for a, b in pairs.T.tolist()]
+    values = np.stack([value for value, _, _ in sampled])
+    slopes = np.stack([slope for _, slope, _ in sampled])
+    near = np.stack([chord for _, _, chord in sampled]) < 2.0 * np.sin(np.radians(within_deg / 2.0))[:, None]
+    usable: Bools = near[:, :-1] | near[:, 1:]
+
+    def rate(row: Ints, jd: Floats) -> tuple[Floats, Floats]:
+        one = scene.sky.apparent(pairs[0][row], jd, order=2)
+        two = scene.sky.apparent(pairs[1][row], jd, order=2)
+        value, slope, _ = closing(one, two)
+        return value, slope
+
+    return find_roots(rate, scene.samples.jd, values, slopes, usable=usable)
+
+
+def closing(one: Floats, two: Floats) -> tuple[Floats, Floats, Floats]:
+    """Return half the square of the chord's rate, that rate's slope, and the chord, shape (n,) each."""
+    chord = one - two
+    value = np.einsum("in,in->n", chord[0], chord[1])
+    slope = np.einsum("in,in->n", chord[1], chord[1]) + np.einsum("in,in->n", chord[0], chord[2])
+    return value, slope, np.sqrt(np.einsum("in,in->n", chord[0], chord[0]))

@@ -1,0 +1,41 @@
+"""Conjunctions: two bodies at one longitude, or at one right ascension."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from wanderers.arrays import Floats, Ints
+from wanderers.ephemeris.bodies import BODIES
+from wanderers.ephemeris.frames import Frame
+from wanderers.ephemeris.vectors import wrapped_deg
+from wanderers.events.kinds import Batch, Kind, batch
+from wanderers.events.scene import Scene
+from wanderers.events.search import find_roots
+
+FRAMES = (Frame.ECLIPTIC, Frame.EQUATOR)
+
+
+def find_conjunctions(scene: Scene) -> list[Batch]:
+    """Find the conjunctions of every chosen pair of Moon and planets, in longitude and in right ascension."""
+    pairs = scene.held_pairs(BODIES[1:])
+    if pairs.shape[1] == 0:
+        return []
+    return [_conjunctions_in(scene, pairs, frame) for frame in FRAMES]
+
+
+def _conjunctions_in(scene: Scene, pairs: Ints, frame: Frame) -> Batch:
+    first, second = pairs
+    targets = np.unique(pairs)
+    longitudes = scene.samples.longitudes_deg(targets.tolist(), frame)
+    a, b = np.searchsorted(targets, first), np.searchsorted(targets, second)
+    values = wrapped_deg(longitudes[a, 0] - longitudes[b, 0])
+    slopes = longitudes[a, 1] - longitudes[b, 1]
+
+    def ahead(row: Ints, jd: Floats) -> tuple[Floats, Floats]:
+        one = scene.sky.longitude_deg(first[row], jd, frame, order=1)
+        two = scene.sky.longitude_deg(second[row], jd, frame, order=1)
+        return wrapped_deg(one[0] - two[0]), one[1] - two[1]
+
+    roots = find_roots(ahead, scene.samples.jd, values, slopes, period=360.0)
+    row = roots.function
+    return batch(Kind.CONJUNCTION, frame, roots.jd, first[row], other=second[row])

@@ -1,0 +1,212 @@
+"""The one search behind every finder: roots of many smooth functions of time at once.
+
+Knows no planets. A caller samples its functions, value and slope, on a grid; the search brackets every
+change of sign and every turn toward zero that might hide two close roots, then refines all brackets
+together with a safeguarded Newton iteration. The slope only steers: it may be approximate, the roots are
+those of the value.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+
+from wanderers.arrays import Bools, Floats, Ints
+
+ValueAndSlope = Callable[[Ints, Floats], tuple[Floats, Floats]]
+"""Takes function numbers and instants, shape (n,) each; returns value and slope per day, shape (n,) each."""
+
+TIME_TOLERANCE_DAYS: Final = 2e-9
+"""A fifth of a millisecond, a few times the spacing of double-precision Julian dates."""
+
+MOST_STEPS: Final = 60
+
+
+@dataclass(frozen=True, slots=True)
+class Brackets:
+    """Intervals at whose ends a function has opposite signs, shape (n,) each."""
+
+    function: Ints
+    left: Floats
+    right: Floats
+    left_value: Floats
+    right_value: Floats
+    guess: Floats
+
+
+@dataclass(frozen=True, slots=True)
+class Roots:
+    """Where functions pass through zero, sorted by time: shape (n,) each."""
+
+    function: Ints
+    jd: Floats
+    rising: Bools
+
+    def within(self, jd_from: float, jd_to: float) -> Roots:
+        """Return the roots in a half-open span."""
+        keep = (self.jd >= jd_from) & (self.jd < jd_to)
+        return Roots(self.function[keep], self.jd[keep], self.rising[keep])
+
+
+def find_roots(
+    evaluate: ValueAndSlope,
+    jd: Floats,
+    values: Floats,
+    slopes: Floats,
+    *,
+    period: float | None = None,
+    usable: Bools | None = None,
+) -> Roots:
+    """Find every root of several functions sampled on one grid.
+
+    Args:
+        evaluate: the functions themselves.
+        jd: the grid, rising, shape (n,).
+        values: samples, shape (functions, n).
+        slopes: their rates per day, shape (functions, n).
+        period: for angles wrapped to plus or minus half a period: the jump that is no root.
+        usable: shape (functions, n - 1), the intervals to look into; all when None.
+
+    Returns:
+        all roots between the first and last sample. Complete if no function turns twice within one step.
+    """
+    usable = np.ones((values.shape[0], jd.size - 1), dtype=np.bool_) if usable is None else usable
+    if period is not None:
+        usable = usable & (np.abs(np.diff(values, axis=1)) < period / 2.0)
+    crossing = sign_changes(jd, values, slopes, usable)
+    turning = split_turns(evaluate, turns_toward_zero(jd, values, slopes, usable))
+    brackets = _joined([crossing, turning])
+    root = refine(evaluate, brackets)
+    by_time = np.lexsort((brackets.function, root))
+    rising = brackets.right_value > brackets.left_value
+    return Roots(brackets.function[by_time], root[by_time], rising[by_time])
+
+
+def sign_changes(jd: Floats, values: Floats, slopes: Floats, usable: Bools) -> Brackets:
+    """Bracket every change of sign between neighbouring samples (zero counts as positive)."""
+    positive = values >= 0.0
+    changed = usable & (positive[:, :-1] != positive[:, 1:])
+    return _brackets(jd, values, slopes, *np.nonzero(changed))
+
+
+def turns_toward_zero(jd: Floats, values: Floats, slopes: Floats, usable: Bools) -> Brackets:
+    """Bracket every interval inside which a function heads for zero and away again.
+
+    Both ends have one sign. Intervals in which even the straight lines from both ends cannot reach zero are
+    left out: between two samples of a function that turns once, the curve stays on the near side of both
+    tangents' meeting point when it is convex toward zero.
+    """
+    sign = np.where(values >= 0.0, 1.0, -1.0)
+    step = np.diff(jd)
+    same = usable & (sign[:, :-1] == sign[:, 1:])
+    inward = (sign * slopes)[:, :-1] < 0.0
+    outward = (sign * slopes)[:, 1:] > 0.0
+    row, column = np.nonzero(same & inward & outward)
+    left, right = np.abs(values[row, column]), np.abs(values[row, column + 1])
+    fall, rise = np.abs(slopes[row, column]), np.abs(slopes[row, column + 1])
+    lowest = (left * rise + right * fall - fall * rise * step[column]) / (fall + rise)
+    reachable = lowest <= 0.0
+    return _brackets(jd, values, slopes, row[reachable], column[reachable])
+
+
+def split_turns(evaluate: ValueAndSlope, turns: Brackets) -> Brackets:
+    """Find each turn's extremum; where it reaches across zero, return the two brackets beside it."""
+    if turns.function.size == 0:
+        return turns
+    extremum = _turning_points(evaluate, turns)
+    value, _ = evaluate(turns.function, extremum)
+    crosses = (value >= 0.0) != (turns.left_value >= 0.0)
+    function, at, peak = turns.function[crosses], extremum[crosses], value[crosses]
+    left, right = turns.left[crosses], turns.right[crosses]
+    before = Brackets(function, left, at, turns.left_value[crosses], peak, (left + at) / 2.0)
+    after = Brackets(function, at, right, peak, turns.right_value[crosses], (at + right) / 2.0)
+    return _joined([before, after])
+
+
+def refine(evaluate: ValueAndSlope, brackets: Brackets) -> Floats:
+    """Shrink every bracket onto its root by Newton steps that never leave the bracket, shape (n,).
+
+    Where Newton would leave it, or halves too slowly, the bracket is bisected.
+    Source: Press et al., Numerical Recipes, 3rd ed., section 9.4 (rtsafe), for all brackets at once.
+    """
+    low, high = brackets.left.copy(), brackets.right.copy()
+    low_is_positive = brackets.left_value >= 0.0
+    root = brackets.guess.copy()
+    last_step = high - low
+    active = np.arange(root.size)
+    for _ in range(MOST_STEPS):
+        if active.size == 0:
+            break
+        at = root[active]
+        value, slope = evaluate(brackets.function[active], at)
+        beyond_low = (value >= 0.0) == low_is_positive[active]
+        low[active] = np.where(beyond_low, at, low[active])
+        high[active] = np.where(beyond_low, high[active], at)
+        step = np.divide(-value, slope, out=np.full_like(value, np.inf), where=slope != 0.0)
+        newton = at + step
+        safe = (newton >= low[active]) & (newton <= high[active])
+        safe &= np.abs(step) <= 0.5 * np.abs(last_step[active])
+        target = np.where(safe, newton, (low[active] + high[active]) / 2.0)
+        last_step[active] = target - at
+        root[active] = target
+        done = (np.abs(target - at) <= TIME_TOLERANCE_DAYS) | (value == 0.0)
+        root[active] = np.where(value == 0.0, at, root[active])
+        active = active[~done]
+    return root
+
+
+def _turning_points(evaluate: ValueAndSlope, turns: Brackets) -> Floats:
+    """Bisect on the sign of the slope, shape (n,): few candidates, so the plain method will do."""
+    low, high = turns.left.copy(), turns.right.copy()
+    inward = np.where(turns.left_value >= 0.0, -1.0, 1.0)
+    for _ in range(36):
+        middle = (low + high) / 2.0
+        _, slope = evaluate(turns.function, middle)
+        still_inward = slope * inward > 0.0
+        low = np.where(still_inward, middle, low)
+        high = np.where(still_inward, high, middle)
+    return np.asarray((low + high) / 2.0)
+
+
+def _brackets(jd: Floats, values: Floats, slopes: Floats, row: Ints, column: Ints) -> Brackets:
+    left, right = jd[column], jd[column + 1]
+    left_value, right_value = values[row, column], values[row, column + 1]
+    ends = (left_value, right_value, slopes[row, column], slopes[row, column + 1])
+    return Brackets(row, left, right, left_value, right_value, left + cubic_root(*ends, right - left))
+
+
+def cubic_root(
+    left_value: Floats, right_value: Floats, left_slope: Floats, right_slope: Floats, step: Floats
+) -> Floats:
+    """Return the offset at which the cubic through both ends' values and slopes is zero, shape (n,).
+
+    Falls back on the chord where the cubic's Newton iteration leaves the interval; the middle where the
+    ends agree in sign.
+    """
+    rise = right_value - left_value
+    chord = np.divide(-left_value, rise, out=np.full_like(rise, 0.5), where=rise != 0.0)
+    chord = np.where((chord >= 0.0) & (chord <= 1.0), chord, 0.5)
+    a, b = step * left_slope, step * right_slope
+    quadratic, cubic = 3.0 * rise - 2.0 * a - b, a + b - 2.0 * rise
+    s = chord
+    for _ in range(4):
+        value = left_value + s * (a + s * (quadratic + s * cubic))
+        slope = a + s * (2.0 * quadratic + 3.0 * s * cubic)
+        s = np.clip(s - np.divide(value, slope, out=np.zeros_like(s), where=slope != 0.0), 0.0, 1.0)
+    value = left_value + s * (a + s * (quadratic + s * cubic))
+    better = np.abs(value) <= np.abs(left_value + chord * (a + chord * (quadratic + chord * cubic)))
+    return np.asarray(np.where(better, s, chord) * step)
+
+
+def _joined(parts: list[Brackets]) -> Brackets:
+    return Brackets(
+        np.concatenate([part.function for part in parts]),
+        np.concatenate([part.left for part in parts]),
+        np.concatenate([part.right for part in parts]),
+        np.concatenate([part.left_value for part in parts]),
+        np.concatenate([part.right_value for part in parts]),
+        np.concatenate([part.guess for part in parts]),
+    )
