@@ -21,7 +21,7 @@ SLOW_STATION_TOLERANCE_S = 5.0  # Uranus, Neptune, Pluto
 
 SLOW = ("jupiter", "saturn", "uranus", "neptune", "pluto")
 SUN_KINDS = ("opposition", "solar_conjunction", "quadrature", "greatest_elongation", "transit", "moon_phase")
-# Kinds whose detail is told apart elsewhere, or not searched here.
+# Whether a conjunction belongs to an appulse is not searched here.
 FREE_DETAIL = ("appulse",)
 
 MATCH_WINDOW_DAYS = 1.0  # events of one key farther apart are different events
@@ -37,7 +37,7 @@ class Comparison:
         missing: rows of the search that the table lacks.
         extra: rows of the table that the search does not know.
         matched: pairs, with ``difference_s`` (table minus search) and ``tolerance_s``.
-        worst: per kind, frame and group: ``count``, ``worst_s`` and ``worst_of_tolerance`` (1 = just allowed).
+        worst: per kind, frame and group: ``count``, ``worst_s``, ``worst_of_tolerance`` (1 = limit).
     """
 
     missing: pl.DataFrame

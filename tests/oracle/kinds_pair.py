@@ -11,7 +11,8 @@ from tests.oracle.rows import events
 from tests.oracle.sampling import Grid
 from tests.oracle.search import crossings, rate, sampled_rate, wrapped
 
-STEP_DAYS = 0.1
+# Short: the Sun's deflection bends the separation of bodies close behind it within hours.
+STEP_DAYS = 0.02
 APPULSE_LIMIT_DEG = 10.0
 MOON_APPULSE_LIMIT_DEG = 6.0
 

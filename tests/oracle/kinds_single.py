@@ -7,12 +7,21 @@ import polars as pl
 
 from tests.oracle.angles import CIRCLE, latitude, longitude
 from tests.oracle.places import AU_KM, Sky
-from tests.oracle.rows import events
+from tests.oracle.rows import SCHEMA, events
 from tests.oracle.sampling import FRAMES, Grid
 from tests.oracle.search import Direct, crossings, rate, sampled_rate
 
 STEP_DAYS = 0.1
 APSIS_STEP_DAYS = 0.5  # heliocentric distances bend over months at least
+
+# Periods (days) and mean distances (au), rough on purpose: they only part one orbit from the next.
+ORBITS = {
+    "jupiter": (4333.0, 5.20),
+    "saturn": (10759.0, 9.55),
+    "uranus": (30688.0, 19.2),
+    "neptune": (60182.0, 30.07),
+    "pluto": (90560.0, 39.5),
+}
 
 
 def station(sky: Sky, grid: Grid, subject: tuple[str, ...]) -> pl.DataFrame:
@@ -86,17 +95,20 @@ def _heliocentric_extreme(sky: Sky, grid: Grid, body: str, kind: str, *, rising:
     return events(kind, jd, body=body, heliocentric_au=sky.heliocentric_au(body, jd), tolerance_s=tolerance_s)
 
 
-def one_per_orbit(apsides: pl.DataFrame, least_gap_days: dict[str, float]) -> pl.DataFrame:
-    """Keep of each cluster of apsides the most extreme one.
+def one_per_orbit(apsides: pl.DataFrame) -> pl.DataFrame:
+    """Keep of each cluster of apsides of the outer planets the most extreme one.
 
-    Args:
-        apsides: rows of kind perihelion and aphelion, with ``heliocentric_au``.
-        least_gap_days: by body, the gap that parts two orbits (half a period); others stay as they are.
+    The Sun's wobble about the barycentre makes small extremes of the wrong kind near an apsis: those
+    on the wrong side of the mean distance are dropped, and of several in half a period one is kept.
     """
-    kept = []
+    kept = [SCHEMA.to_frame()]
     for (kind, body), rows in apsides.sort("jd_tt").group_by("kind", "body", maintain_order=True):
-        gap = least_gap_days.get(str(body), 0.0)
-        cluster = (rows["jd_tt"].diff().fill_null(0.0) > gap).cum_sum()
-        ranked = rows.with_columns(cluster.alias("cluster")).sort("heliocentric_au", descending=kind == "aphelion")
+        period_days, mean_au = ORBITS.get(str(body), (0.0, None))
+        if mean_au is not None:
+            inside = pl.col("heliocentric_au") < mean_au
+            rows = rows.filter(inside if kind == "perihelion" else ~inside)
+        cluster = (rows["jd_tt"].diff().fill_null(0.0) > period_days / 2.0).cum_sum()
+        ranked = rows.with_columns(cluster.alias("cluster"))
+        ranked = ranked.sort("heliocentric_au", descending=kind == "aphelion")
         kept.append(ranked.unique("cluster", keep="first", maintain_order=True).drop("cluster"))
-    return pl.concat(kept).sort("jd_tt") if kept else apsides
+    return pl.concat(kept).sort("jd_tt")

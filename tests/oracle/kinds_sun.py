@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 import numpy as np
 import polars as pl
 
@@ -13,7 +15,12 @@ from tests.oracle.search import Crossings, crossings, rate, sampled_rate, wrappe
 
 STEP_DAYS = 0.1  # of the difference stencil; truncation and rounding are both far below a millisecond
 SMALLEST_ELONGATION_DEG = 10.0  # Mercury's greatest elongations are 17.9 degrees and more
-SEASON_POINTS = {0.0: "equinox_march", 90.0: "solstice_june", 180.0: "equinox_september", 270.0: "solstice_december"}
+SEASON_POINTS = {
+    0.0: "equinox_march",
+    90.0: "solstice_june",
+    180.0: "equinox_september",
+    270.0: "solstice_december",
+}
 MOON_PHASES = {0.0: "new", 90.0: "first_quarter", 180.0: "full", 270.0: "last_quarter"}
 
 
@@ -22,6 +29,14 @@ def _from_sun(sky: Sky, grid: Grid, body: str, target_deg: float) -> Crossings:
     sampled = grid.longitude_deg("ecliptic", body) - grid.longitude_deg("ecliptic", "sun") - target_deg
     direct = longitude_difference(sky, "ecliptic", body, "sun", target_deg)
     return crossings(direct, grid.jd_tt, wrapped(sampled, CIRCLE), period=CIRCLE)
+
+
+def _phases(sky: Sky, grid: Grid, body: str, kind: str, targets_deg: Mapping[float, str]) -> pl.DataFrame:
+    """Find several differences from the Sun's longitude, each with its detail."""
+    return pl.concat(
+        events(kind, _from_sun(sky, grid, body, target).jd_tt, body=body, frame="ecliptic", detail=detail)
+        for target, detail in targets_deg.items()
+    )
 
 
 def opposition(sky: Sky, grid: Grid, subject: tuple[str, ...]) -> pl.DataFrame:
@@ -45,10 +60,7 @@ def solar_conjunction(sky: Sky, grid: Grid, subject: tuple[str, ...]) -> pl.Data
 def quadrature(sky: Sky, grid: Grid, subject: tuple[str, ...]) -> pl.DataFrame:
     """Find quadratures: longitude 90 degrees east or west of the Sun's."""
     (body,) = subject
-    found = {"east": _from_sun(sky, grid, body, 90.0), "west": _from_sun(sky, grid, body, 270.0)}
-    return pl.concat(
-        events("quadrature", part.jd_tt, body=body, frame="ecliptic", detail=detail) for detail, part in found.items()
-    )
+    return _phases(sky, grid, body, "quadrature", {90.0: "east", 270.0: "west"})
 
 
 def greatest_elongation(sky: Sky, grid: Grid, subject: tuple[str, ...]) -> pl.DataFrame:
@@ -71,10 +83,7 @@ def greatest_elongation(sky: Sky, grid: Grid, subject: tuple[str, ...]) -> pl.Da
 def moon_phase(sky: Sky, grid: Grid, subject: tuple[str, ...]) -> pl.DataFrame:
     """Find new Moons, quarters and full Moons by the longitude difference from the Sun."""
     (body,) = subject
-    return pl.concat(
-        events("moon_phase", _from_sun(sky, grid, body, target).jd_tt, body=body, frame="ecliptic", detail=detail)
-        for target, detail in MOON_PHASES.items()
-    )
+    return _phases(sky, grid, body, "moon_phase", MOON_PHASES)
 
 
 def season_point(sky: Sky, grid: Grid, subject: tuple[str, ...]) -> pl.DataFrame:

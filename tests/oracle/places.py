@@ -10,7 +10,7 @@ routines of ERFA (the open SOFA) and the kernel read by jplephem.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from contextlib import contextmanager
 from dataclasses import dataclass
 from pathlib import Path
@@ -58,9 +58,25 @@ CHAINS: dict[str, tuple[tuple[int, int], ...]] = {
     "pluto": ((0, 9),),
 }
 
-# The point-mass formula diverges behind the Sun's centre; below this it is held (about 1 arcsecond
-# of angle at the Sun). Wide limiters would bend places within the Sun's disc by arcseconds.
-DEFLECTION_LIMITER = 1e-11
+# Equatorial radii: Archinal et al., WGCCRE report 2015, Celest. Mech. Dyn. Astron. 130:22 (2018), from
+# memory; the Sun's is the nominal radius of IAU 2015 resolution B3.
+RADII_KM: Mapping[str, float] = {
+    "sun": 695700.0,
+    "moon": 1737.4,
+    "mercury": 2440.53,
+    "venus": 6051.8,
+    "mars": 3396.19,
+    "jupiter": 71492.0,
+    "saturn": 60268.0,
+    "uranus": 25559.0,
+    "neptune": 24764.0,
+    "pluto": 1188.3,
+}
+
+# The point-mass formula diverges behind the Sun's centre; within about 290 arcseconds of it, well inside
+# the disc, ERFA's ldsun lets the deflection fall to zero instead, and so does this module. Without a
+# limiter a planet seen through the Sun's centre would seem to turn back for half an hour.
+DEFLECTION_LIMITER = 1e-6
 LIGHT_TIME_PRECISION_DAYS = 1e-13
 
 
@@ -81,9 +97,17 @@ class Astrometric:
 
 @dataclass(frozen=True, slots=True)
 class Sky:
-    """An open kernel and the places that follow from it."""
+    """An open kernel and the places that follow from it.
+
+    Attributes:
+        kernel: as opened by jplephem.
+        radii_km: of the bodies, for their discs.
+        deflection_limiter: see ``DEFLECTION_LIMITER``.
+    """
 
     kernel: Any
+    radii_km: Mapping[str, float]
+    deflection_limiter: float = DEFLECTION_LIMITER
 
     def barycentric(self, body: str, tdb: Floats, offset_days: Floats) -> tuple[Floats, Floats]:
         """Give position (au) and velocity (au/day) from the barycentre, shapes (n, 3)."""
@@ -127,8 +151,9 @@ class Sky:
         sun_distance = norm(sun_to_earth)
         direction = unit(seen.vector_au)
         if body != "sun":
+            limiter = self.deflection_limiter / np.maximum(sun_distance**2, 1.0)
             direction = erfa.ld(
-                1.0, direction, unit(seen.body_au - sun), unit(sun_to_earth), sun_distance, DEFLECTION_LIMITER
+                1.0, direction, unit(seen.body_au - sun), unit(sun_to_earth), sun_distance, limiter
             )
             direction = unit(direction)
         velocity = earth_velocity / LIGHT_AU_PER_DAY
@@ -157,11 +182,16 @@ class Sky:
 
 
 @contextmanager
-def open_sky(kernel_path: str | Path) -> Iterator[Sky]:
-    """Open an SPK kernel for the length of a ``with`` block."""
+def open_sky(
+    kernel_path: str | Path,
+    *,
+    radii_km: Mapping[str, float] | None = None,
+    deflection_limiter: float = DEFLECTION_LIMITER,
+) -> Iterator[Sky]:
+    """Open an SPK kernel for the length of a ``with`` block; given radii replace the usual ones."""
     kernel = SPK.open(str(kernel_path))
     try:
-        yield Sky(kernel)
+        yield Sky(kernel, {**RADII_KM, **(radii_km or {})}, deflection_limiter)
     finally:
         kernel.close()
 
@@ -185,7 +215,8 @@ def frame_matrix(frame: str, jd_tt: Floats, offset_days: Floats | float = 0.0) -
     jd_tt, offset_days = broadcast(jd_tt, offset_days)
     if frame == "j2000":
         bias = erfa.bp06(2451545.0, 0.0)[0]
-        return np.broadcast_to(rotate_x(np.radians(J2000_OBLIQUITY_ARCSEC / 3600.0)) @ bias, (*jd_tt.shape, 3, 3))
+        tilt = rotate_x(np.radians(J2000_OBLIQUITY_ARCSEC / 3600.0))
+        return np.broadcast_to(tilt @ bias, (*jd_tt.shape, 3, 3))
     if frame == "b1875":
         return np.broadcast_to(erfa.pmat06(B1875_JD, 0.0), (*jd_tt.shape, 3, 3))
     longitude, obliquity = erfa.nut00a(jd_tt, offset_days)
@@ -193,7 +224,7 @@ def frame_matrix(frame: str, jd_tt: Floats, offset_days: Floats | float = 0.0) -
     if frame == "equator":
         return np.asarray(to_equator)
     if frame == "ecliptic":
-        return rotate_x(mean_obliquity + obliquity) @ to_equator
+        return np.asarray(rotate_x(mean_obliquity + obliquity) @ to_equator)
     raise LookupError(f"no frame {frame!r}")
 
 
@@ -209,18 +240,18 @@ def rotate_x(angle: Floats | float) -> Floats:
 def longitude_deg(matrix: Floats, direction: Floats) -> Floats:
     """Give the longitude (or right ascension) of directions in a frame, [0, 360)."""
     x, y, _ = turned(matrix, direction)
-    return np.degrees(np.arctan2(y, x)) % 360.0
+    return np.asarray(np.degrees(np.arctan2(y, x)) % 360.0)
 
 
 def latitude_deg(matrix: Floats, direction: Floats) -> Floats:
     """Give the latitude (or declination) of directions in a frame."""
     x, y, z = turned(matrix, direction)
-    return np.degrees(np.arctan2(z, np.hypot(x, y)))
+    return np.asarray(np.degrees(np.arctan2(z, np.hypot(x, y))))
 
 
 def turned(matrix: Floats, direction: Floats) -> Floats:
     """Apply one matrix to each direction, shape (3, n)."""
-    return np.einsum("nij,nj->in", matrix, direction)
+    return np.asarray(np.einsum("nij,nj->in", matrix, direction))
 
 
 def separation_deg(first: Floats, second: Floats) -> Floats:
@@ -230,7 +261,7 @@ def separation_deg(first: Floats, second: Floats) -> Floats:
 
 def norm(vector: Floats) -> Floats:
     """Give the length of vectors along the last axis."""
-    return np.sqrt(np.sum(vector**2, axis=-1))
+    return np.asarray(np.sqrt(np.sum(vector**2, axis=-1)))
 
 
 def unit(vector: Floats) -> Floats:

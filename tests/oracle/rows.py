@@ -40,8 +40,8 @@ def events(kind: str, jd_tt: Floats, **columns: Any) -> pl.DataFrame:
         **columns: any other column of ``SCHEMA``: a value for all rows or shape (k,); else null.
     """
     given = {"kind": kind, "jd_tt": jd_tt} | columns
-    series = {name: pl.Series(name, _column(given.get(name), len(jd_tt)), dtype) for name, dtype in SCHEMA.items()}
-    return pl.DataFrame(series, schema=SCHEMA)
+    columns = {name: _column(given.get(name), len(jd_tt)) for name in SCHEMA}
+    return pl.DataFrame(columns, schema=SCHEMA)
 
 
 def _column(value: Any, count: int) -> list[Any]:

@@ -4,12 +4,20 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
-from itertools import combinations
+from itertools import combinations, pairwise
 
 import numpy as np
 import polars as pl
 
-from tests.oracle import kinds_pair, kinds_single, kinds_sun
+from tests.oracle import (
+    gatherings,
+    kinds_constellation,
+    kinds_disc,
+    kinds_light,
+    kinds_pair,
+    kinds_single,
+    kinds_sun,
+)
 from tests.oracle.places import BODIES, OUTER, PLANETS, Sky
 from tests.oracle.rows import SCHEMA
 from tests.oracle.sampling import Grid, sample
@@ -17,6 +25,7 @@ from tests.oracle.search import MARGIN
 
 Find = Callable[[Sky, Grid, tuple[str, ...]], pl.DataFrame]
 Subjects = tuple[tuple[str, ...], ...]
+Job = tuple[Find, tuple[str, ...]]
 
 _EACH = tuple((body,) for body in PLANETS)
 _OUTER = tuple((body,) for body in OUTER)
@@ -48,6 +57,12 @@ KINDS: dict[str, Kind] = {
     "perihelion": Kind(kinds_single.perihelion, _EACH),
     "aphelion": Kind(kinds_single.aphelion, _EACH),
     "node": Kind(kinds_single.node, _EACH, _MOON),
+    "greatest_brilliancy": Kind(kinds_light.greatest_brilliancy, (("venus",),)),
+    "ring_plane_crossing": Kind(kinds_light.ring_plane_crossing, (("saturn",),)),
+    "transit": Kind(kinds_disc.transit, (("mercury", "sun"), ("venus", "sun"))),
+    "occultation": Kind(kinds_disc.occultation, _PAIRS, _MOON_PAIRS),
+    "constellation_entry": Kind(kinds_constellation.constellation_entry, (("sun",), *_EACH), _MOON),
+    "gathering": Kind(gatherings.gathering),
     "season_point": Kind(kinds_sun.season_point, (("sun",),)),
     "moon_phase": Kind(kinds_sun.moon_phase, (), _MOON),
 }
@@ -80,6 +95,7 @@ def run(
     kinds: Iterable[str],
     *,
     moon: bool = False,
+    gathered: Subjects = (),
     steps: Steps | None = None,
 ) -> pl.DataFrame:
     """Find all events of the given kinds in a half-open span of TT Julian dates.
@@ -89,15 +105,17 @@ def run(
         span: from (included), to (excluded).
         kinds: names in ``KINDS``.
         moon: also search the kinds and pairs of the Moon.
+        gathered: groups of three bodies or more, for the kind ``gathering``.
         steps: density of the samples.
 
     Returns:
         Rows with the columns of ``rows.SCHEMA``, rising in time.
     """
-    names, steps = tuple(kinds), steps or Steps()
+    steps = steps or Steps()
+    plan = _plan(_jobs(tuple(kinds), gathered, moon=moon), steps)
     tables = [SCHEMA.to_frame()]
     for low, high in _chunks(span, steps.chunk_days):
-        for step, jobs in _plan(names, steps, moon=moon):
+        for step, jobs in plan:
             grid = sample(sky, _bodies(jobs), (low, high), step, MARGIN)
             for find, subject in jobs:
                 found = find(sky, grid, subject)
@@ -109,20 +127,26 @@ def _chunks(span: tuple[float, float], chunk_days: float) -> list[tuple[float, f
     """Divide a span into equal chunks no longer than asked."""
     count = max(1, int(np.ceil((span[1] - span[0]) / chunk_days)))
     edges = np.linspace(span[0], span[1], count + 1).tolist()
-    return list(zip(edges[:-1], edges[1:], strict=True))
+    return list(pairwise(edges))
 
 
-def _plan(
-    names: tuple[str, ...], steps: Steps, *, moon: bool
-) -> list[tuple[float, list[tuple[Find, tuple[str, ...]]]]]:
-    """List the searches by sample step: the planets' and the Moon's."""
-    planets = [(KINDS[name].find, subject) for name in names for subject in KINDS[name].planets]
-    lunar = [(KINDS[name].find, subject) for name in names for subject in KINDS[name].moon if moon]
+def _jobs(names: tuple[str, ...], gathered: Subjects, *, moon: bool) -> list[Job]:
+    """List the searches to run, one a kind and subject."""
+    subjects = {name: KINDS[name].planets + (KINDS[name].moon if moon else ()) for name in names}
+    if "gathering" in subjects:
+        subjects["gathering"] = gathered
+    return [(KINDS[name].find, subject) for name in names for subject in subjects[name]]
+
+
+def _plan(jobs: list[Job], steps: Steps) -> list[tuple[float, list[Job]]]:
+    """Divide the searches by sample step: the planets' and the Moon's."""
+    planets = [job for job in jobs if "moon" not in job[1]]
+    lunar = [job for job in jobs if "moon" in job[1]]
     plan = [(steps.planets_days, planets), (steps.moon_days, lunar)]
-    return [(step, jobs) for step, jobs in plan if jobs]
+    return [(step, part) for step, part in plan if part]
 
 
-def _bodies(jobs: list[tuple[Find, tuple[str, ...]]]) -> tuple[str, ...]:
+def _bodies(jobs: list[Job]) -> tuple[str, ...]:
     """Name the bodies that some searches need, the Sun always."""
     needed = {body for _, subject in jobs for body in subject} | {"sun"}
     return tuple(body for body in BODIES if body in needed)

@@ -39,10 +39,12 @@ class Grid:
         return latitude_deg(self.matrix[frame], self.direction[body])
 
 
-def sample(sky: Sky, bodies: tuple[str, ...], span: tuple[float, float], step_days: float, margin: int) -> Grid:
+def sample(
+    sky: Sky, bodies: tuple[str, ...], span: tuple[float, float], step_days: float, margin: int
+) -> Grid:
     """Evaluate bodies and frames over a span and some samples beyond it on either side."""
     count = int(np.ceil((span[1] - span[0]) / step_days)) + 1
-    jd_tt = span[0] + step_days * np.arange(-margin, count + margin)
+    jd_tt = span[0] + step_days * np.arange(-margin, count + margin, dtype=np.float64)
     return Grid(
         jd_tt,
         step_days,

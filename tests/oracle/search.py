@@ -96,6 +96,22 @@ def sampled_rate(values: Floats, step_days: float, *, period: float | None = Non
     return total / (60.0 * step_days)
 
 
+def refine(direct: Direct, jd_tt: Floats, low: Floats, high: Floats) -> Floats:
+    """Give the zero of a direct function within ``jd_tt + [low, high]`` (days), one in each."""
+    return _refine(direct, _Brackets(jd_tt, low, high)).jd_tt
+
+
+def bisect(
+    predicate: Callable[[Floats, Floats], NDArray[np.bool_]], jd_tt: Floats, low: Floats, high: Floats
+) -> Floats:
+    """Give the instant within ``jd_tt + [low, high]`` (days) from which a predicate is true."""
+    while np.any(high - low > ROOT_PRECISION_DAYS):
+        middle = 0.5 * (low + high)
+        after = predicate(jd_tt, middle)
+        low, high = np.where(after, low, middle), np.where(after, middle, high)
+    return jd_tt + high
+
+
 def wrapped(values: Floats, period: float | None) -> Floats:
     """Bring values into [-period/2, period/2); leave them alone where there is no period."""
     if period is None:
@@ -114,9 +130,7 @@ def _sign_changes(
     return _Brackets(jd_tt[at], np.zeros(at.size), jd_tt[at + 1] - jd_tt[at])
 
 
-def _hidden_pairs(
-    direct: Direct, jd_tt: Floats, values: Floats, wanted: NDArray[np.bool_]
-) -> _Brackets:
+def _hidden_pairs(direct: Direct, jd_tt: Floats, values: Floats, wanted: NDArray[np.bool_]) -> _Brackets:
     """Bracket pairs of zeros between samples of one sign, around each local minimum of the size."""
     size = np.abs(values)
     positive = values >= 0.0

@@ -18,6 +18,7 @@ from wanderers.ephemeris import chebyshev, frames, places
 from wanderers.ephemeris.bodies import NAIF_CHAINS, Body
 from wanderers.arrays import Floats
 from wanderers.ephemeris.chebyshev import Series
+from wanderers.ephemeris.spk_files import open_spk
 
 FORMAT_VERSION: Final = 1
 """Raise it whenever what a block holds changes: older files are then rebuilt."""
@@ -85,7 +86,7 @@ def build_block(kernel_path: Path, bodies: tuple[Body, ...], index: int, usable:
         usable: first and last TT Julian date at which light-time stays inside the kernel.
     """
     planets = tuple(body for body in bodies if body is not Body.MOON)
-    with SPK.open(str(kernel_path)) as spk:
+    with open_spk(kernel_path) as spk:
         moon = _body_series(spk, (Body.MOON,), MOON_LAYOUT, index, usable) if Body.MOON in bodies else None
         return Block(
             index,

@@ -76,26 +76,6 @@ EQUATORIAL_RADIUS_KM: Final[dict[Body, float]] = {
     Body.PLUTO: 1_188.3,
 }
 
-MEAN_LONGITUDE_DEG: Final[dict[Body, tuple[float, float]]] = {
-    Body.SUN: (280.46646, 35_999.37245),
-    Body.MOON: (218.31644, 481_266.48425),
-    Body.MERCURY: (280.46646, 35_999.37245),
-    Body.VENUS: (280.46646, 35_999.37245),
-    Body.MARS: (355.43300, 19_140.29930),
-    Body.JUPITER: (34.35152, 3_034.90567),
-    Body.SATURN: (50.07744, 1_222.11379),
-    Body.URANUS: (314.05501, 428.46700),
-    Body.NEPTUNE: (304.34867, 218.48620),
-    Body.PLUTO: (238.92903, 145.20780),
-}
-"""Mean longitude at J2000 (deg) and motion (deg per Julian century) on the fixed ecliptic of J2000.
-
-Only counts revolutions, so a tenth of a degree is plenty. Simon et al. 1994, A&A 282, 663, section 5.8
-(Moon: mean longitude of Chapront's theory less precession); Pluto: Standish, Keplerian elements for
-approximate positions of the major planets, JPL. From memory; the inner planets share the Sun's, which is
-theirs as seen from the Earth.
-"""
-
 
 def body_named(name: str) -> Body:
     """Return the body of that name, in any case.

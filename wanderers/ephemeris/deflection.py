@@ -7,7 +7,6 @@ from typing import Final
 import numpy as np
 
 from wanderers import constants
-from wanderers.ephemeris.bodies import EQUATORIAL_RADIUS_KM, Body
 from wanderers.arrays import Floats
 
 STRENGTH_AU: Final = (
@@ -15,7 +14,9 @@ STRENGTH_AU: Final = (
 )
 """Twice the gravitational radius of the Sun's mass, GM/c^2, in au."""
 
-SUN_RADIUS_AU: Final = EQUATORIAL_RADIUS_KM[Body.SUN] / constants.AU_KM
+LIMITER: Final = 1e-6
+"""Least denominator of the formula at 1 au: reached 5 arcminutes from the Sun's centre, well inside its
+disc, where the formula for a point mass would throw images about that nobody sees. SOFA's value (iauLdsun)."""
 TANGENT_STEP_DAYS: Final = 1e-3
 
 
@@ -27,16 +28,14 @@ def deflection(position: Floats, sun: Floats, *, at_infinity: bool = False) -> F
         sun: from the Earth to the Sun, au, shape (3, n).
         at_infinity: the body is a star, so that its light reaches Sun and Earth in parallel.
 
-    A ray through the Sun's disc, which nobody sees, is bent as one that grazes the limb at most.
-
     Source: Explanatory Supplement, 3rd ed., eq. 7.38; Klioner 2003, AJ 125, 1580, eq. 70, Sun only.
     """
     sun_distance = _length(sun)
     to_body = position / _length(position)
     from_sun_to_earth = -sun / sun_distance
     from_sun_to_body = to_body if at_infinity else (position - sun) / _length(position - sun)
-    grazing = 0.5 * (SUN_RADIUS_AU / sun_distance) ** 2
-    closeness = np.maximum(1.0 + _dot(from_sun_to_body, from_sun_to_earth), grazing)
+    limiter = LIMITER / np.maximum(sun_distance**2, 1.0)
+    closeness = np.maximum(1.0 + _dot(from_sun_to_body, from_sun_to_earth), limiter)
     bend = (
         _dot(to_body, from_sun_to_body) * from_sun_to_earth
         - _dot(from_sun_to_earth, to_body) * from_sun_to_body

@@ -6,6 +6,7 @@ Targets are numbered: 0 to 9 the bodies in their written order, from 10 on the s
 from __future__ import annotations
 
 from dataclasses import dataclass
+from math import comb
 from typing import Final
 
 import numpy as np
@@ -27,7 +28,7 @@ from wanderers.ephemeris.tracks import (
 
 FIRST_STAR: Final = len(BODIES)
 SUN: Final = Body.SUN.order
-ABERRATION_STEP_DAYS: Final = 1e-2
+STAR_TANGENT_DAYS: Final = 1e-2
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,6 +72,11 @@ class Sky:
             vectors.rotate(self.rotation(frame, jd, order), self.apparent(target, jd, order))
         )
 
+    def latitude_deg(self, target: Ints, jd: Floats, frame: Frame) -> Floats:
+        """Return apparent latitudes (declinations on the equator), shape (n,)."""
+        place = vectors.rotate(self.rotation(frame, jd), self.apparent(target, jd))
+        return vectors.latitude_deg(place)[0]
+
     def earth_distance_au(self, target: Ints, jd: Floats, order: int = 0) -> Floats:
         """Return the stack of geometric geocentric distance of bodies, shape (order + 1, n)."""
         return self.tracks.evaluate_each(target, jd, EARTH_DISTANCE, order)[:, 0]
@@ -85,8 +91,7 @@ class Sky:
             raise LookupError("this sky holds no stars")
         sun = self.tracks.evaluate_each(np.full(jd.size, SUN), jd, POSITION, min(order, 1))
         earth = self.tracks.observer.evaluate(0, jd, EARTH_POSITION, 2)
-        direction = stars.astrometric_directions_each(self.catalogue, star, jd, earth[0])
-        return bent_star(direction, earth, sun, order)
+        return bent_star(self.catalogue, star, jd, earth, sun)[: order + 1]
 
 
 def rotation_from(observer: Floats, frame: Frame) -> Floats:
@@ -98,7 +103,7 @@ def rotation_from(observer: Floats, frame: Frame) -> Floats:
     out = np.zeros_like(ecliptic)
     for d in range(out.shape[0]):
         for k in range(d + 1):
-            out[d] += vectors.comb(d, k) * np.einsum("ijn,jkn->ikn", turn[k], ecliptic[d - k])
+            out[d] += comb(d, k) * np.einsum("ijn,jkn->ikn", turn[k], ecliptic[d - k])
     return out
 
 
@@ -137,22 +142,30 @@ def bent(position: Floats, sun: Floats, is_sun: np.ndarray) -> Floats:
     return out
 
 
-def bent_star(direction: Floats, earth: Floats, sun: Floats, order: int) -> Floats:
-    """Return apparent unit directions of stars.
+def bent_star(catalogue: StarCatalogue, star: Ints, jd: Floats, earth: Floats, sun: Floats) -> Floats:
+    """Return the stack of apparent unit directions of stars, shape (3, 3, n).
 
     Args:
-        direction: astrometric, shape (3, n); its own drift is too slow to matter in a rate.
-        earth: barycentric position stack, au, order 2.
-        sun: geocentric position stack, au.
-        order: highest derivative wanted.
+        catalogue: the stars.
+        star: rows of the catalogue, shape (n,).
+        jd: TT (a star does not notice the 2 ms to TDB), shape (n,).
+        earth: the Earth's barycentric position stack, au, order 2.
+        sun: the Sun's geocentric position stack, au.
+
+    The rate follows proper motion, parallax and aberration along the tangent of the Earth's motion; the
+    second derivative is left zero: next to a planet's it is nothing.
     """
-    h = ABERRATION_STEP_DAYS
-    out = np.zeros((order + 1, 3, direction.shape[-1]))
-    out[0] = places.aberrated(direction, earth[1])
-    if order:
-        after = places.aberrated(direction, earth[1] + h * earth[2])
-        before = places.aberrated(direction, earth[1] - h * earth[2])
-        out[1] = (after - before) / (2.0 * h)
-        out[1] += deflection_rate(np.stack([out[0], out[1]]), sun, at_infinity=True)
+    h = STAR_TANGENT_DAYS
+
+    def at(days: float) -> Floats:
+        position = earth[0] + days * earth[1] + (days**2 / 2.0) * earth[2]
+        direction = stars.astrometric_directions_each(catalogue, star, jd + days, position)
+        return places.aberrated(direction, earth[1] + days * earth[2])
+
+    out = np.zeros((3, 3, jd.size))
+    out[0] = at(0.0)
+    out[1] = (at(h) - at(-h)) / (2.0 * h)
+    if sun.shape[0] > 1:
+        out[1] += deflection_rate(out[:2], sun, at_infinity=True)
     out[0] += deflection(out[0], sun[0], at_infinity=True)
     return out

@@ -36,7 +36,7 @@ _TT_MINUS_TAI_S: Final = 32.184
 """Exact by definition. IAU 1991 Resolution A4."""
 _TAI_MINUS_UTC_1972_S: Final = 10.0
 _PREDICTED_DAYS: Final = 365
-"""IERS finals2000A closes with one year of predictions. From memory; a test holds it against a later issue."""
+"""IERS finals2000A closes with one year of predictions. From memory; a test holds it to a later issue."""
 
 _HUBER_Q_MS2_PER_YEAR: Final = 0.058
 _HUBER_M_YEARS: Final = 2_500.0
@@ -159,8 +159,8 @@ def utc_uncertainty_s(jd_tt: npt.ArrayLike) -> Floats:
 
     Zero in the leap-second era. From -1000 to 1972 the published standard error of Delta-T, or, where that
     is larger, the distance between that table and the newer curve of delta_t_s: the solutions of 2004 and
-    2021 differ by more than the errors printed (190 s at 1300, 4.4 s at 1800). Before -1000 and after the last measured
-    Delta-T, the growth of a random walk in the length of the day, calibrated on 2500 years.
+    2021 differ by more than the errors printed (190 s at 1300, 4.4 s at 1800). Before -1000 and after the
+    last measured Delta-T, the growth of a random walk in the length of the day, calibrated on 2500 years.
 
     Args:
         jd_tt: any shape, TT days; NaN gives NaN.
@@ -169,8 +169,8 @@ def utc_uncertainty_s(jd_tt: npt.ArrayLike) -> Floats:
         Seconds, same shape.
 
     Source: Morrison and Stephenson 2004, JHA 35, 327, Table 1 (wanderers/data/delta_t_errors.csv); Huber
-        2000, as given on NASA's page on the uncertainty in Delta-T: sigma = 365.25 N sqrt(N Q/3 (1 + N/M))/1000
-        seconds with N years of extrapolation, Q = 0.058 ms^2 per year, M = 2500 years (from memory).
+        2000, as given on NASA's page on the uncertainty in Delta-T (from memory): sigma in seconds =
+        365.25 N sqrt(N Q/3 (1 + N/M))/1000, N years of extrapolation, Q = 0.058 ms^2 per year, M = 2500.
     """
     jd_tt = np.asarray(jd_tt, dtype=np.float64)
     tables = _earth_rotation()
@@ -189,9 +189,9 @@ def time_scale_facts() -> TimeScaleFacts:
     until, measured = _date(tables.end_jd_utc), _date(tables.measured_until_jd)
     source = (
         "Leap seconds and Delta-T: IERS Earth rotation data packaged with skyfield "
-        f"{metadata.version('skyfield')}, measured to {measured}, predicted to {until}. Before 1972-01-01 and "
-        f"from {until} on, UTC stands for UT1 = TT - Delta-T: Morrison, Stephenson, Hohenkerk and Zawilski "
-        "2021 in the past, extrapolated in the future."
+        f"{metadata.version('skyfield')}, measured to {measured}, predicted to {until}. "
+        f"Before 1972-01-01 and from {until} on, UTC stands for UT1 = TT - Delta-T: "
+        "Morrison, Stephenson, Hohenkerk and Zawilski 2021 in the past, extrapolated in the future."
     )
     return TimeScaleFacts(_date(float(tables.leap_jd_utc[-1])), until, measured, source)
 

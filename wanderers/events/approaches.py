@@ -9,7 +9,7 @@ from __future__ import annotations
 import numpy as np
 
 from wanderers.arrays import Bools, Floats, Ints
-from wanderers.ephemeris.bodies import BODIES, INNER, Body
+from wanderers.ephemeris.bodies import BODIES, INNER
 from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.sky import SUN
 from wanderers.ephemeris.vectors import separation_deg, wrapped_deg
@@ -17,25 +17,35 @@ from wanderers.events.kinds import Batch, Kind, batch
 from wanderers.events.scene import Scene
 from wanderers.events.search import Roots, find_roots
 
+APPULSE_DETAILS = ("", "quasi", "farthest")
 ELONGATION_DETAILS = ("east", "west")
-MARGIN_DEG = 3.0
-"""How much wider than the limit an interval's ends may be: planets close in by less within two days."""
-MOON_MARGIN_DEG = 32.0
 
 
 def find_appulses(scene: Scene) -> list[Batch]:
-    """Find the least separations of every chosen pair of Moon and planets, within the limits."""
+    """Find all least separations of every chosen pair of Moon and planets, however wide.
+
+    The catalogue leaves out those beyond the limits, after it has numbered them: a name must not depend on
+    a limit. The greatest separations between them come along under the detail "farthest": they part one
+    approach from the next, and are dropped when that has been used.
+    """
     pairs = scene.held_pairs(BODIES[1:])
     if pairs.shape[1] == 0:
         return []
-    with_moon = pairs[0] == Body.MOON.order
-    limit = np.where(with_moon, scene.choice.limits.moon_deg, scene.choice.limits.planets_deg)
-    margin = np.where(with_moon, MOON_MARGIN_DEG, MARGIN_DEG)
-    roots = chord_extrema(scene, pairs, limit + margin)
+    roots = chord_extrema(scene, pairs, np.full(pairs.shape[1], 180.0))
     first, second = pairs[0][roots.function], pairs[1][roots.function]
-    apart = separation_of(scene, first, second, roots.jd)
-    near = roots.rising & (apart < limit[roots.function])
-    return [batch(Kind.APPULSE, None, roots.jd[near], first[near], other=second[near])]
+    detail = np.where(roots.rising, 0, APPULSE_DETAILS.index("farthest"))
+    return [
+        batch(
+            Kind.APPULSE,
+            None,
+            roots.jd,
+            first,
+            other=second,
+            detail=detail,
+            details=APPULSE_DETAILS,
+            figure_deg=separation_of(scene, first, second, roots.jd),
+        )
+    ]
 
 
 def find_greatest_elongations(scene: Scene) -> list[Batch]:

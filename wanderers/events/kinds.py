@@ -53,7 +53,8 @@ class Batch:
         detail: index into ``details``, shape (n,).
         details: the words; the empty one stands for none.
         contacts_jd: for discs that meet, the four contacts, shape (n, 4), NaN where one does not happen.
-        figure_deg: for gatherings, the diameter of the circle, shape (n,).
+        figure_deg: a figure the finder knows, shape (n,): least separation of an appulse, diameter of a
+            gathering's circle, longitude of date of a constellation entry.
     """
 
     kind: Kind
@@ -92,6 +93,8 @@ def batch(
     other: Ints | None = None,
     detail: Ints | None = None,
     details: tuple[str, ...] = ("",),
+    contacts_jd: Floats | None = None,
+    figure_deg: Floats | None = None,
 ) -> Batch:
     """Compose a batch, filling in what most kinds leave empty."""
     return Batch(
@@ -102,4 +105,6 @@ def batch(
         np.full(jd.size, NOBODY) if other is None else other,
         np.zeros(jd.size, dtype=np.int64) if detail is None else detail,
         details,
+        contacts_jd,
+        figure_deg,
     )

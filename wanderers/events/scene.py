@@ -9,7 +9,7 @@ from typing import Final
 
 import numpy as np
 
-from wanderers.arrays import Ints
+from wanderers.arrays import Floats, Ints
 from wanderers.ephemeris.bodies import BODIES, PLANETS, Body
 from wanderers.ephemeris.sky import FIRST_STAR, Sky
 from wanderers.events.sampling import Samples
@@ -35,6 +35,11 @@ class Limits:
     moon_deg: float = 6.0
     stars_deg: float = 5.0
     gathering_deg: float = 10.0
+
+    def of(self, body: Ints, other: Ints) -> Floats:
+        """Return the limit of each pair of targets, shape (n,)."""
+        without_star = np.where(body == Body.MOON.order, self.moon_deg, self.planets_deg)
+        return np.where(other >= FIRST_STAR, self.stars_deg, without_star)
 
 
 @dataclass(frozen=True, slots=True)
@@ -96,8 +101,3 @@ class Scene:
             pair for pair in pairs.T.tolist() if all(t in self.samples.directions for t in pair)
         ]
         return np.array(held, dtype=np.int64).reshape(-1, 2).T
-
-
-def is_star(target: Ints) -> np.ndarray:
-    """Return where targets are stars."""
-    return np.asarray(target >= FIRST_STAR)

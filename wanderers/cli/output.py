@@ -1,0 +1,89 @@
+"""Where tables go: standard output or a file, in the format asked."""
+
+from __future__ import annotations
+
+import functools
+import io
+import sys
+from collections.abc import Callable
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any, Final, TypeVar
+
+import click
+import polars as pl
+
+from wanderers.files import reported_as_output_error, require_writable, write_atomically
+from wanderers.report.tables import print_table
+
+Command = TypeVar("Command", bound=Callable[..., Any])
+
+FORMATS: Final = ("table", "csv", "parquet", "json")
+SUFFIXES: Final = {".csv": "csv", ".parquet": "parquet", ".json": "json", ".txt": "table"}
+
+
+@dataclass(frozen=True, slots=True)
+class Destination:
+    """Where a table goes, and how.
+
+    Attributes:
+        format: one of FORMATS.
+        path: the file, or None for standard output.
+    """
+
+    format: str
+    path: Path | None
+
+
+def output_options(command: Command) -> Command:
+    """Add ``--format`` and ``--out``; the command receives ``destination``, already checked."""
+
+    @click.option("--format", "form", type=click.Choice(FORMATS), help="How to write it. [default: by the ending of --out, else table]")
+    @click.option("--out", "path", type=click.Path(path_type=Path), metavar="PATH", help="File to write. [default: standard output]")
+    @functools.wraps(command)
+    def wrapped(*args: Any, form: str | None, path: Path | None, **kwargs: Any) -> Any:
+        if path is not None:
+            require_writable(path)
+        chosen = form or (SUFFIXES.get(path.suffix.lower(), "table") if path else "table")
+        return command(*args, destination=Destination(chosen, path), **kwargs)
+
+    return wrapped  # type: ignore[return-value]
+
+
+def write_table(table: pl.DataFrame, destination: Destination, heading: str) -> None:
+    """Write a table; ``heading`` stands above the printed form only."""
+    if destination.path is None:
+        _write_to_stdout(table, destination.format, heading)
+        return
+    content = _encoded(table, destination.format, heading)
+    with reported_as_output_error(destination.path):
+        write_atomically(destination.path, lambda file: _write_all(file.write, content))
+
+
+def _write_all(write: Callable[[bytes], int], content: bytes) -> None:
+    write(content)
+
+
+def _write_to_stdout(table: pl.DataFrame, form: str, heading: str) -> None:
+    if form == "table":
+        print_table(table, heading, sys.stdout)
+        return
+    stream = click.get_binary_stream("stdout")
+    stream.write(_encoded(table, form, heading))
+    stream.flush()
+
+
+def _encoded(table: pl.DataFrame, form: str, heading: str) -> bytes:
+    """Return the bytes of a table in a format."""
+    if form == "table":
+        text = io.StringIO()
+        print_table(table, heading, text)
+        return text.getvalue().encode()
+    buffer = io.BytesIO()
+    if form == "csv":
+        table.write_csv(buffer)
+    elif form == "parquet":
+        table.write_parquet(buffer)
+    else:
+        table.write_json(buffer)
+    return buffer.getvalue()

@@ -1,0 +1,132 @@
+"""What a body looks like from the Earth's centre: place, distance, brightness, size, constellation."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+
+from wanderers import constants
+from wanderers.arrays import Floats, Ints
+from wanderers.ephemeris import constellations, vectors
+from wanderers.ephemeris.bodies import BODIES, EQUATORIAL_RADIUS_KM, Body
+from wanderers.ephemeris.frames import Frame
+from wanderers.ephemeris.magnitudes import Circumstances, apparent_magnitude, pole_latitudes_deg
+from wanderers.ephemeris.sky import SUN, Sky
+from wanderers.ephemeris.tracks import EARTH_POSITION, POSITION, SUN_DISTANCE
+
+TILTED: Final = (Body.SATURN, Body.URANUS)
+RADII_KM: Final = np.array([EQUATORIAL_RADIUS_KM[body] for body in BODIES])
+
+
+@dataclass(frozen=True, slots=True)
+class Appearance:
+    """Geocentric apparent circumstances of bodies, arrays of shape (n,); see the contract's columns.
+
+    ``elongation_deg`` is NaN for the Sun, ``magnitude`` NaN outside its formula's range, ``constellation``
+    an index into :data:`wanderers.ephemeris.constellations.ABBREVIATIONS`.
+    """
+
+    longitude_deg: Floats
+    latitude_deg: Floats
+    ra_deg: Floats
+    dec_deg: Floats
+    elongation_deg: Floats
+    distance_au: Floats
+    magnitude: Floats
+    diameter_arcsec: Floats
+    illuminated_fraction: Floats
+    constellation: Ints
+
+
+@dataclass(frozen=True, slots=True)
+class Triangle:
+    """Sun, body and Earth as light shows them: astrometric vectors in au, shape (3, n) each."""
+
+    earth_to_body: Floats
+    sun_to_body: Floats
+
+    @property
+    def phase_angle_deg(self) -> Floats:
+        """Angle at the body between Sun and Earth, shape (n,); zero for the Sun itself."""
+        from_earth, from_sun = self.earth_to_body, self.sun_to_body
+        across = np.cross(from_earth, from_sun, axis=0)
+        along = np.einsum("in,in->n", from_earth, from_sun)
+        return np.asarray(np.degrees(np.arctan2(np.sqrt(np.einsum("in,in->n", across, across)), along)))
+
+
+def appearance(sky: Sky, body: Ints, jd: Floats) -> Appearance:
+    """Describe one body an instant.
+
+    Args:
+        sky: the tracks.
+        body: places in the bodies' written order, shape (n,).
+        jd: TT, shape (n,).
+    """
+    apparent = sky.apparent(body, jd)
+    sun = sky.apparent(np.full(jd.size, SUN), jd)[0]
+    ecliptic = vectors.rotate(sky.rotation(Frame.ECLIPTIC, jd), apparent)
+    equator = vectors.rotate(sky.rotation(Frame.EQUATOR, jd), apparent)
+    distance = sky.earth_distance_au(body, jd)[0]
+    elongation = vectors.separation_deg(apparent[0], sun)
+    shape = triangle(sky, body, jd)
+    phase_angle = shape.phase_angle_deg
+    return Appearance(
+        vectors.longitude_deg(ecliptic)[0],
+        vectors.latitude_deg(ecliptic)[0],
+        vectors.longitude_deg(equator)[0],
+        vectors.latitude_deg(equator)[0],
+        np.where(body == SUN, np.nan, elongation),
+        distance,
+        _magnitudes(sky, body, jd, shape, phase_angle),
+        diameter_arcsec(body, distance),
+        np.cos(np.radians(phase_angle / 2.0)) ** 2,
+        np.asarray(constellations.constellation_at(apparent[0]), dtype=np.int64),
+    )
+
+
+def triangle(sky: Sky, body: Ints, jd: Floats) -> Triangle:
+    """Return the triangle behind phase and brightness, the observer's aberration taken out again.
+
+    Taking aberration out to first order leaves a billionth of a radian.
+    """
+    velocity = sky.tracks.observer.evaluate(0, jd, EARTH_POSITION, 1)[1]
+    seen, sun = (
+        _without_aberration(sky.tracks.evaluate_each(rows, jd, POSITION)[0], velocity)
+        for rows in (body, np.full(jd.size, SUN))
+    )
+    return Triangle(seen, seen - sun)
+
+
+def diameter_arcsec(body: Ints, distance_au: Floats) -> Floats:
+    """Return apparent equatorial diameters, shape (n,)."""
+    radius_au = RADII_KM[body] / constants.AU_KM
+    return np.asarray(np.degrees(2.0 * np.arcsin(radius_au / distance_au)) * constants.ARCSEC_PER_DEG)
+
+
+def _without_aberration(position: Floats, velocity: Floats) -> Floats:
+    distance = np.sqrt(np.einsum("in,in->n", position, position))
+    beta = velocity / constants.SPEED_OF_LIGHT_AU_PER_DAY
+    direction = position / distance
+    direction = direction - beta + np.einsum("in,in->n", direction, beta) * direction
+    return np.asarray(direction * distance)
+
+
+def _magnitudes(sky: Sky, body: Ints, jd: Floats, shape: Triangle, phase_angle: Floats) -> Floats:
+    """Apply each planet's own formula to its own instants."""
+    out = np.empty(jd.size)
+    sun_distance = sky.tracks.evaluate_each(body, jd, SUN_DISTANCE)[0, 0]
+    earth_distance = np.sqrt(np.einsum("in,in->n", shape.earth_to_body, shape.earth_to_body))
+    for number in np.unique(body).tolist():
+        own = body == number
+        tilts: tuple[Floats | None, Floats | None] = (None, None)
+        if BODIES[number] in TILTED:
+            tilts = pole_latitudes_deg(
+                BODIES[number], shape.sun_to_body[:, own], shape.earth_to_body[:, own], jd[own]
+            )
+        circumstances = Circumstances(
+            sun_distance[own], earth_distance[own], phase_angle[own], jd[own], *tilts
+        )
+        out[own] = apparent_magnitude(BODIES[number], circumstances)
+    return out

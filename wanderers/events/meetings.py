@@ -1,0 +1,132 @@
+"""Meetings: what a user calls one encounter of two bodies, however many conjunctions it has.
+
+The rule. Two bodies that lap each other meet once a lap: all their conjunctions, in longitude and in right
+ascension, and all their least separations that fall into one lap (counted by mean longitudes, see
+:mod:`wanderers.events.cycles`) are one meeting. Retrograde motion makes it a triple, rarely a quintuple.
+Mercury and Venus never lap each other; their conjunctions and approaches within 10 degrees are one meeting
+while no more than 45 days pass from one to the next.
+
+Conjunctions are numbered within a meeting, frame by frame, least separations likewise. The greatest
+separations part one approach from the next: a least separation with no conjunction of either frame between
+the greatest separations on both sides of it is ``quasi``.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from typing import Final
+
+import numpy as np
+
+from wanderers.arrays import Bools, Floats, Ints
+from wanderers.ephemeris.bodies import Body
+from wanderers.events.approaches import APPULSE_DETAILS
+from wanderers.events.kinds import Batch
+
+FARTHEST: Final = APPULSE_DETAILS.index("farthest")
+QUASI: Final = APPULSE_DETAILS.index("quasi")
+INNER_GAP_DAYS: Final = 45.0
+INNER_REACH_DEG: Final = 10.0
+
+
+@dataclass(frozen=True, slots=True)
+class Meeting:
+    """Which meeting each event of a batch belongs to: its number, the event's part and how many parts."""
+
+    number: Ints
+    part: Ints
+    parts: Ints
+
+    def chosen(self, keep: Bools) -> Meeting:
+        """Return the entries where ``keep`` is true."""
+        return Meeting(self.number[keep], self.part[keep], self.parts[keep])
+
+
+def meetings_of(batch: Batch, rounds: Ints) -> Meeting:
+    """Number the parts of every meeting in one batch of conjunctions or of least separations.
+
+    Args:
+        batch: events of one kind and frame, every meeting whole.
+        rounds: the number of the lap of each; for Mercury with Venus, of the cluster.
+    """
+    keys = np.stack([batch.body, batch.other, rounds])
+    order = np.lexsort((batch.jd, *keys))
+    placed = keys[:, order]
+    starts = np.ones(batch.jd.size, dtype=np.bool_)
+    starts[1:] = (placed[:, 1:] != placed[:, :-1]).any(axis=0)
+    group = np.cumsum(starts) - 1
+    position = np.arange(batch.jd.size)
+    part, parts = np.empty_like(position), np.empty_like(position)
+    part[order] = position - position[starts][group] + 1
+    parts[order] = np.bincount(group, minlength=1)[group]
+    return Meeting(rounds, part, parts)
+
+
+def inner_clusters(conjunctions: list[Batch], appulse: Batch, rounds: list[Ints]) -> list[Ints]:
+    """Replace the rounds of Mercury with Venus by numbers of clusters in time.
+
+    Args:
+        conjunctions: a batch a frame.
+        appulse: least and greatest separations.
+        rounds: the laps of each batch, conjunctions first.
+
+    Returns:
+        the rounds with every meeting of Mercury and Venus numbered by its first event's round, times ten,
+        plus how many meetings began in that round before it.
+    """
+    batches = [*conjunctions, appulse]
+    joins = [_inner(batch) for batch in batches]
+    joins[-1] &= _within_reach(appulse)
+    jd = np.concatenate([batch.jd[own] for batch, own in zip(batches, joins, strict=True)])
+    lap = np.concatenate([numbers[own] for numbers, own in zip(rounds, joins, strict=True)])
+    if jd.size == 0:
+        return rounds
+    number = np.empty_like(lap)
+    order = np.argsort(jd, kind="stable")
+    number[order] = _cluster_numbers(jd[order], lap[order])
+    out, start = [numbers.copy() for numbers in rounds], 0
+    for numbers, own in zip(out, joins, strict=True):
+        count = int(own.sum())
+        numbers[own] = number[start : start + count]
+        start += count
+    return out
+
+
+def _cluster_numbers(jd: Floats, lap: Ints) -> Ints:
+    """Number runs of events in order of time, shape (n,)."""
+    begins = np.concatenate([[True], np.diff(jd) > INNER_GAP_DAYS])
+    first_lap = lap[begins]
+    same_lap = np.concatenate([[False], first_lap[1:] == first_lap[:-1]])
+    return np.asarray((first_lap * 10 + same_lap)[np.cumsum(begins) - 1])
+
+
+def marked_quasi(conjunctions: list[Batch], appulse: Batch) -> Batch:
+    """Return least separations with those marked that no conjunction belongs to."""
+    met = np.concatenate([_approach_keys(batch, appulse) for batch in conjunctions] or [np.empty(0)])
+    own = _approach_keys(appulse, appulse)
+    lonely = ~np.isin(own, met) & (appulse.detail != FARTHEST)
+    return replace(appulse, detail=np.where(lonely, QUASI, appulse.detail))
+
+
+def _approach_keys(batch: Batch, appulse: Batch) -> Ints:
+    """Number approaches: pair and count of greatest separations before each event, shape (n,)."""
+    farthest = appulse.detail == FARTHEST
+    marks = np.sort(_pair_times(appulse.chosen(farthest)))
+    pair = batch.body * 1000 + batch.other
+    return np.asarray(np.searchsorted(marks, _pair_times(batch)) + pair * 10_000_000)
+
+
+def _pair_times(batch: Batch) -> Floats:
+    """Set the times of different pairs apart, so that one sorted list serves them all, shape (n,)."""
+    return np.asarray((batch.body * 1000 + batch.other) * 1e8 + batch.jd)
+
+
+def _inner(batch: Batch) -> Bools:
+    return (batch.body == Body.MERCURY.order) & (batch.other == Body.VENUS.order)
+
+
+def _within_reach(appulse: Batch) -> Bools:
+    figure = np.zeros(appulse.jd.size) if appulse.figure_deg is None else appulse.figure_deg
+    return (figure < INNER_REACH_DEG) & (appulse.detail != FARTHEST)
+
+

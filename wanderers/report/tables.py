@@ -1,0 +1,178 @@
+"""Tables for the terminal: at most 100 columns wide, rounded to what people read."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import IO, Any, Final
+
+import polars as pl
+from rich.console import Console
+from rich.table import Table
+from rich.text import Text
+
+from wanderers import schema
+from wanderers.ephemeris.bodies import Body
+
+WIDTH: Final = 100
+Cell = Callable[[Any], str]
+
+
+def print_table(table: pl.DataFrame, heading: str, stream: IO[str]) -> None:
+    """Print a table under its heading; which columns are shown follows from its kind."""
+    console = Console(file=stream, width=WIDTH, highlight=False, soft_wrap=False)
+    console.print(Text(heading))
+    if table.is_empty():
+        console.print(Text("Nothing found."))
+        return
+    columns = _layout(table)
+    printed = Table(box=None, pad_edge=False, padding=(0, 2, 0, 0), header_style="bold")
+    for title, _, numeric in columns:
+        printed.add_column(title, justify="right" if numeric else "left", no_wrap=not numeric and title != "What")
+    cells = [cell(table) for _, cell, _ in columns]
+    for row in zip(*cells, strict=True):
+        printed.add_row(*row)
+    console.print(printed)
+
+
+def almanac_heading(table: pl.DataFrame, kernel: str) -> str:
+    """Say what an event table is."""
+    return (
+        f"{counted(table.height, 'event')}, geocentric, apparent places from {kernel}; times in UTC; "
+        "angles in degrees of date"
+    )
+
+
+def seasons_heading(table: pl.DataFrame, kernel: str) -> str:
+    """Say what a season table is."""
+    return f"{counted(table.height, 'retrograde season')}, geocentric, from {kernel}; dates in UTC"
+
+
+def track_heading(table: pl.DataFrame, body: Body, kernel: str) -> str:
+    """Say what a time series is."""
+    return f"{body.label}, {counted(table.height, 'row')}, geocentric, apparent places from {kernel}; times in UTC"
+
+
+def counted(count: int, noun: str) -> str:
+    """Return a number with its noun in the right form."""
+    return f"{count} {noun}" if count == 1 else f"{count} {noun}s"
+
+
+Column = tuple[str, Callable[[pl.DataFrame], list[str]], bool]
+
+
+def _layout(table: pl.DataFrame) -> list[Column]:
+    """Return title, cells and whether the column is numeric, for the kind of table this is."""
+    if schema.conforms(table, schema.EVENT_COLUMNS):
+        return EVENTS
+    if schema.conforms(table, schema.SEASON_COLUMNS):
+        return SEASONS
+    if schema.conforms(table, schema.TRACK_COLUMNS):
+        return TRACK
+    return [(name, _texts(name, str), table.schema[name].is_numeric()) for name in table.columns]
+
+
+def _texts(name: str, cell: Cell) -> Callable[[pl.DataFrame], list[str]]:
+    """Return a function that prints one column, nothing where it is null."""
+    return lambda table: ["" if value is None else cell(value) for value in table[name].to_list()]
+
+
+def _fixed(name: str, decimals: int) -> Callable[[pl.DataFrame], list[str]]:
+    return _texts(name, lambda value: f"{value:.{decimals}f}".replace("-", "−"))
+
+
+def _minute(value: str) -> str:
+    """Return an ISO instant to the minute, rounded."""
+    instant = pl.Series([value.removesuffix("Z")]).str.to_datetime(strict=False)[0]
+    if instant is None:  # a year outside 0 to 9999
+        return value.split(".")[0].rsplit(":", 1)[0].replace("T", " ")
+    rounded = pl.Series([instant]).dt.round("1m")[0]
+    return f"{rounded:%Y-%m-%d %H:%M}" if rounded.year >= 1000 else rounded.isoformat(" ")[:16]
+
+
+def _day(value: str) -> str:
+    return value.split("T")[0]
+
+
+def _what(table: pl.DataFrame) -> list[str]:
+    return [describe(row) for row in table.select(*_DESCRIBED).iter_rows(named=True)]
+
+
+_DESCRIBED: Final = ("kind", "detail", "body", "other", "frame")
+FRAME_WORDS: Final = {"ecliptic": "in longitude", "equator": "in RA", "j2000": "against the stars"}
+
+
+def label(name: str) -> str:
+    """Return a body's or star's name as text prints it."""
+    return name if not name.islower() else name.capitalize()
+
+
+def describe(event: dict[str, Any]) -> str:
+    """Return what happens, in a few words."""
+    body, other = label(event["body"]), label(event["other"] or "")
+    frame = FRAME_WORDS.get(event["frame"] or "", "")
+    detail = (event["detail"] or "").replace("_", " ")
+    kind = event["kind"]
+    if kind == "station":
+        return f"{body} turns {detail} {frame}"
+    if kind == "conjunction":
+        return f"{body} – {other} conjunction {frame}"
+    if kind == "appulse":
+        return f"{body} – {other} {'closest, no conjunction' if detail == 'quasi' else 'closest'}"
+    if kind == "solar_conjunction":
+        return " ".join(filter(None, (body, detail, "conjunction with the Sun")))
+    if kind == "quadrature":
+        return f"{body} quadrature {detail}"
+    if kind == "greatest_elongation":
+        return f"{body} greatest elongation {detail}"
+    return _describe_rest(kind, body, other, detail)
+
+
+def _describe_rest(kind: str, body: str, other: str, detail: str) -> str:
+    """Return the words for kinds that need no frame."""
+    words = {
+        "moon_phase": f"{detail.capitalize()} Moon" if detail in ("new", "full") else detail.capitalize(),
+        "season_point": f"{detail.capitalize()}",
+        "gathering": f"Gathering of {detail.replace('+', ', ')}",
+        "constellation_entry": f"{body} leaves {detail}",
+        "node": f"{body} {detail} node",
+        "occultation": f"{body} hides {other}",
+        "transit": f"{body} transit of the Sun",
+        "ring_plane_crossing": f"{body}'s ring plane crosses the {detail.capitalize()}",
+    }
+    return words.get(kind, " ".join(filter(None, (body, kind.replace("_", " "), other))))
+
+
+EVENTS: Final[list[Column]] = [
+    ("UTC", _texts("utc", _minute), False),
+    ("What", _what, False),
+    ("In", _texts("constellation", str), False),
+    ("Separation", _fixed("separation_deg", 2), True),
+    ("Elongation", _fixed("elongation_deg", 1), True),
+    ("Mag", _fixed("magnitude", 1), True),
+]
+
+SEASONS: Final[list[Column]] = [
+    ("Planet", _texts("body", label), False),
+    ("First pass", _texts("first_pass_start_utc", _day), False),
+    ("Retrograde", _texts("station_retrograde_utc", _day), False),
+    ("Middle", _texts("middle_utc", _day), False),
+    ("Direct", _texts("station_direct_utc", _day), False),
+    ("Last pass", _texts("third_pass_end_utc", _day), False),
+    ("Arc", _fixed("arc_deg", 1), True),
+    ("Days", _fixed("retrograde_days", 0), True),
+    ("Path", _texts("path_shape", str), False),
+    ("Mag", _fixed("peak_magnitude", 1), True),
+]
+
+TRACK: Final[list[Column]] = [
+    ("UTC", _texts("utc", _minute), False),
+    ("Longitude", _fixed("longitude_deg", 3), True),
+    ("Latitude", _fixed("latitude_deg", 3), True),
+    ("Deg/day", _fixed("longitude_rate_deg_per_day", 3), True),
+    ("au", _fixed("distance_au", 4), True),
+    ("Elong", _fixed("elongation_deg", 1), True),
+    ("Mag", _fixed("magnitude", 1), True),
+    ("Size", _fixed("diameter_arcsec", 1), True),
+    ("Lit", _fixed("illuminated_fraction", 2), True),
+    ("In", _texts("constellation", str), False),
+]
