@@ -113,9 +113,16 @@ def test_a_symbolic_link_stays_and_its_target_is_written(tmp_path):
 
 
 @needs_posix
-def test_a_device_is_written_and_not_replaced():
-    write_atomically(Path("/dev/null"), put(b"whole"))
-    assert Path("/dev/null").is_char_device()
+def test_a_pipe_is_written_and_not_replaced(tmp_path):
+    pipe = tmp_path / "pipe"
+    os.mkfifo(pipe)
+    reader = os.open(pipe, os.O_RDONLY | os.O_NONBLOCK)
+    try:
+        write_atomically(pipe, put(b"whole"))
+        assert os.read(reader, 100) == b"whole"
+    finally:
+        os.close(reader)
+    assert pipe.is_fifo()
 
 
 def test_a_missing_folder_is_an_error_of_the_system(tmp_path):
@@ -143,8 +150,10 @@ def test_the_current_folder_by_its_short_names_passes(tmp_path, monkeypatch):
 
 
 @needs_posix
-def test_a_device_passes():
-    require_writable(Path("/dev/null"))
+def test_a_pipe_passes(tmp_path):
+    os.mkfifo(tmp_path / "pipe")
+    require_writable(tmp_path / "pipe")
+    assert (tmp_path / "pipe").is_fifo()
 
 
 def test_a_folder_where_a_file_is_meant_is_refused(tmp_path):
@@ -190,6 +199,16 @@ def test_a_folder_without_permission_is_refused(tmp_path):
         with pytest.raises(OutputError) as caught:
             require_writable(path, folder=folder)
         assert "Permission denied" in message_of(caught)
+
+
+@needs_ordinary_user
+@needs_posix
+def test_a_pipe_passes_whatever_its_folder_allows(tmp_path):
+    closed = tmp_path / "closed"
+    closed.mkdir()
+    os.mkfifo(closed / "pipe")
+    closed.chmod(0o500)
+    require_writable(closed / "pipe")
 
 
 @needs_ordinary_user

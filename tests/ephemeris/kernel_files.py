@@ -13,6 +13,8 @@ from pathlib import Path
 import skyfield
 import skyfield_data
 
+from wanderers.ephemeris.spk_files import Contents, open_spk, usable_contents
+
 DE421 = Path(skyfield_data.__file__).parent / "data" / "de421.bsp"
 DE441_AROUND_1969 = Path(skyfield.__file__).parent / "tests" / "data" / "de441-1969.bsp"
 """DE441 splits each orbit in two segments at JD 2440432.5; this excerpt of skyfield's tests keeps both."""
@@ -34,7 +36,8 @@ class Segment:
     start_jd: float = J2000_JD
     record_days: float = 32.0
     records: int = 2
-    declared_days: float | None = None
+    declared_from_day: float = 0.0
+    declared_to_day: float | None = None
     place_km: float = 1.0e8
     drift_km: float = 1.0e6
     source: bytes = b"DE-0999LE-0999"
@@ -87,8 +90,9 @@ def spk_bytes(
         for place, value in (tail or {}).items():
             own[place] = value
         first = 3 * 128 + len(words) + 1
-        start_s = (part.start_jd - J2000_JD) * 86_400.0
-        end_s = start_s + (part.declared_days or part.days) * 86_400.0
+        first_day = part.start_jd - J2000_JD
+        start_s = (first_day + part.declared_from_day) * 86_400.0
+        end_s = (first_day + (part.declared_to_day or part.days)) * 86_400.0
         codes = (part.target, part.center, part.frame, part.data_type, first, first + len(own) - 1)
         summaries += struct.pack(f"{order}dd6i", start_s, end_s, *codes)
         names += part.source.ljust(40)
@@ -100,6 +104,24 @@ def spk_bytes(
     directory = struct.pack(f"{order}ddd", next_record, 0.0, float(len(parts))) + summaries
     records = head.ljust(1024, b"\0") + directory.ljust(1024, b"\0") + names.ljust(1024)
     return records + struct.pack(f"{order}{len(words)}d", *words)
+
+
+def whole(**changes: object) -> bytes:
+    """Return a good file with the Earth and the Sun."""
+    return spk_bytes(segments(*EARTH_AND_SUN, **changes))
+
+
+def written(folder: Path, content: bytes) -> Path:
+    """Write a file of that content."""
+    path = folder / "given.bsp"
+    path.write_bytes(content)
+    return path
+
+
+def contents(path: Path) -> Contents:
+    """Return what the program can use of a file."""
+    with open_spk(path) as spk:
+        return usable_contents(path, spk)
 
 
 def tiny_kernel(path: Path, *pairs: tuple[int, int], **changes: object) -> Path:

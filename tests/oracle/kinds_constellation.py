@@ -1,8 +1,9 @@
 """Entries into constellations, by the IAU boundaries in the mean equator and equinox of B1875.
 
 Source: Roman, Identification of a constellation from a position, PASP 99, 695 (1987), catalogue VI/42
-of the CDS, in the data file that astropy ships; its right ascensions are rounded to 0.0001 hour
-(0.75 arcseconds at the equator at most). B1875 is reached by IAU 2006 precession.
+of the CDS, in the data file that astropy ships. Its hours and degrees are printed to four decimals;
+the boundaries run along whole seconds of right ascension and whole minutes of declination, which are
+restored here. B1875 is reached by IAU 2006 precession.
 """
 
 from __future__ import annotations
@@ -26,7 +27,9 @@ def boundaries() -> tuple[Floats, list[str]]:
     """Read the table: rows of lower and upper right ascension (hours) and lower declination; names."""
     text = (files("astropy.coordinates") / "data" / "constellation_data_roman87.dat").read_text("utf-8")
     rows = [line.split() for line in text.splitlines() if line.strip() and not line.startswith("#")]
-    return np.array([row[:3] for row in rows], dtype=np.float64), [row[3] for row in rows]
+    printed = np.array([row[:3] for row in rows], dtype=np.float64)
+    whole = np.array([3600.0, 3600.0, 60.0])
+    return np.round(printed * whole) / whole, [row[3] for row in rows]
 
 
 def constellation_index(direction: Floats, bounds: Floats) -> NDArray[np.int64]:

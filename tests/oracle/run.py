@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Collection, Iterable
 from dataclasses import dataclass
 from itertools import combinations, pairwise
 
@@ -96,6 +96,7 @@ def run(
     *,
     moon: bool = False,
     gathered: Subjects = (),
+    bodies: Collection[str] = BODIES,
     steps: Steps | None = None,
 ) -> pl.DataFrame:
     """Find all events of the given kinds in a half-open span of TT Julian dates.
@@ -106,13 +107,15 @@ def run(
         kinds: names in ``KINDS``.
         moon: also search the kinds and pairs of the Moon.
         gathered: groups of three bodies or more, for the kind ``gathering``.
+        bodies: search only for these and their pairs; the Sun goes without saying.
         steps: density of the samples.
 
     Returns:
         Rows with the columns of ``rows.SCHEMA``, rising in time.
     """
     steps = steps or Steps()
-    plan = _plan(_jobs(tuple(kinds), gathered, moon=moon), steps)
+    jobs = _jobs(tuple(kinds), gathered, moon=moon)
+    plan = _plan([job for job in jobs if set(job[1]) <= {"sun", *bodies}], steps)
     tables = [SCHEMA.to_frame()]
     for low, high in _chunks(span, steps.chunk_days):
         for step, jobs in plan:

@@ -10,6 +10,7 @@ import pytest
 
 from tests.reference.published import EventFigure, event_figures, jd_of_date, rows
 from wanderers.ephemeris.bodies import BODIES
+from wanderers.events.catalogue import FINDERS
 
 Almanac = Callable[[float, float, list[str], list[str], list[str]], pl.DataFrame]
 
@@ -28,6 +29,8 @@ FIGURES = sorted(
 )
 TRIPLE_GROUPS = ("JS1980 longitude", "JS1980 right ascension", "MS1945 longitude", "UN1993 longitude")
 GEOCENTRIC_MISSES = [figure for figure in event_figures("mutual_occultations") if figure.kind == "appulse"]
+
+OFFERED_KINDS = {kind.value for kinds, _ in FINDERS for kind in kinds}
 
 MARGIN_DAYS = 60.0
 GAP_DAYS = 1500.0  # figures closer than this are asked for together
@@ -77,6 +80,12 @@ def table_of(published_almanac: Almanac) -> Callable[[EventFigure], pl.DataFrame
     return table
 
 
+def require_kind(kind: str) -> None:
+    """Skip, visibly, where this version has no finder of the kind."""
+    if kind not in OFFERED_KINDS:
+        pytest.skip(f"this version finds no {kind}")
+
+
 def alike(table: pl.DataFrame, figure: EventFigure) -> pl.DataFrame:
     """Return the events of the figure's kind, bodies and frame."""
     for column in ("kind", "detail", "body", "other", "frame"):
@@ -96,6 +105,7 @@ def nearest(table: pl.DataFrame, figure: EventFigure) -> dict[str, object]:
 
 @pytest.mark.parametrize("figure", FIGURES, ids=str)
 def test_published_figure(figure: EventFigure, table_of: Callable[[EventFigure], pl.DataFrame]) -> None:
+    require_kind(figure.kind)
     found = nearest(table_of(figure), figure)[figure.column]
     value = jd_of_date(found.removesuffix("Z")) if isinstance(found, str) else found
     assert value == pytest.approx(figure.value, rel=0.0, abs=figure.tolerance), figure.reason
@@ -117,6 +127,7 @@ def test_triple_conjunctions_have_three_parts(
 def test_occultations_seen_from_part_of_the_earth_are_not_geocentric(
     figure: EventFigure, table_of: Callable[[EventFigure], pl.DataFrame]
 ) -> None:
+    require_kind("occultation")
     hidden = table_of(figure).filter(
         pl.col("kind") == "occultation",
         pl.col("body") == figure.body,
@@ -127,6 +138,7 @@ def test_occultations_seen_from_part_of_the_earth_are_not_geocentric(
 
 
 def test_sun_enters_thirteen_constellations_on_the_handbooks_days(published_almanac: Almanac) -> None:
+    require_kind("constellation_entry")
     span = (jd_of_date("2021-01-01"), jd_of_date("2022-01-01"))
     entries = published_almanac(*span, ["constellation_entry"], ["ecliptic"], ["sun"])
     found = dict(zip(entries["constellation"], entries["jd_tt"], strict=True))

@@ -105,6 +105,12 @@ def diameter_arcsec(body: Ints, distance_au: Floats) -> Floats:
     return np.asarray(np.degrees(2.0 * np.arcsin(radius_au / distance_au)) * constants.ARCSEC_PER_DEG)
 
 
+def magnitude(sky: Sky, body: Ints, jd: Floats) -> Floats:
+    """Return apparent V magnitudes, one body an instant, shape (n,); NaN outside a formula's range."""
+    shape = triangle(sky, body, jd)
+    return _magnitudes(sky, body, jd, shape, shape.phase_angle_deg)
+
+
 def _without_aberration(position: Floats, velocity: Floats) -> Floats:
     distance = np.sqrt(np.einsum("in,in->n", position, position))
     beta = velocity / constants.SPEED_OF_LIGHT_AU_PER_DAY

@@ -76,6 +76,10 @@ EQUATORIAL_RADIUS_KM: Final[dict[Body, float]] = {
     Body.PLUTO: 1_188.3,
 }
 
+SUN_SEMIDIAMETER_AT_1_AU_ARCSEC: Final = 959.63
+"""The Sun's limb as almanacs of transits and eclipses take it: Auwers 1891; Explanatory Supplement, 3rd ed.,
+section 11.2.2 (from memory). The IAU's nominal radius, 0.4 arcseconds less, is no limb anybody observes."""
+
 
 def body_named(name: str) -> Body:
     """Return the body of that name, in any case.

@@ -4,8 +4,8 @@ Planets: Mallama and Hilton 2018, Computing apparent planetary magnitudes for Th
 Astronomy and Computing 25, 10, in the form of the authors' program Ap_Mag V3. Equation numbers from memory
 save those of Saturn and Neptune. The phase angle must be the one at the true Sun.
 
-Limits: phases the Earth never sees (Mercury below 2 or above 170 degrees, Venus above 179, Jupiter above
-130) are extrapolated as the authors' own check values do. Where the authors give nothing the answer is nan.
+Limits: phases beyond those observed (Mercury below 2 or above 170 degrees, Venus above 179, Jupiter above
+130) are extrapolated, as the authors' own check values do. Where the authors give nothing the answer is nan.
 """
 
 from __future__ import annotations
@@ -30,6 +30,7 @@ MOON_PHASE_LIMIT_DEG: Final = 160.0
 SATURN_PHASE_LIMIT_DEG: Final = 6.5
 SATURN_TILT_LIMIT_DEG: Final = 27.0
 NEPTUNE_PHASE_LIMIT_DEG: Final = 1.9
+NEPTUNE_PHASE_SEEN_DEG: Final = 2.0
 
 POLES_DEG: Final[dict[Body, tuple[float, float, float, float]]] = {
     Body.SATURN: (40.589, -0.036, 83.537, -0.004),
@@ -201,7 +202,8 @@ def _mercury(circumstances: Circumstances) -> Floats:
 def _venus(circumstances: Circumstances) -> Floats:
     """Return Venus's magnitude. Source: eq. 3 up to a phase angle of 163.7 degrees, eq. 4 beyond.
 
-    The two meet within 0.01 mag. Droplets in its air scatter light forward and brighten the thin crescent.
+    The two meet within 0.01 mag. Droplets in its air scatter light forward: the thin crescent brightens again
+    to a second, lesser maximum near 168 degrees, which is not the greatest brilliancy.
     """
     phase = circumstances.phase_angle_deg
     crescent = _polynomial(phase, -4.384, -1.044e-3, 3.687e-4, -2.814e-6, 8.938e-9)
@@ -254,7 +256,7 @@ def _uranus(circumstances: Circumstances) -> Floats:
     """Return the magnitude of Uranus: brighter with a pole in view.
 
     Source: eq. 14, with the mean of both planetographic latitudes taken positive; eq. 15 for phase angles
-    beyond 3.1 degrees (smaller ones make no difference).
+    beyond 3.1 degrees, where the source steps by 0.021 mag: the Earth sees up to 3.19, near perihelion.
     """
     under_sun, under_earth = circumstances.latitudes_deg()
     phase = circumstances.phase_angle_deg
@@ -266,16 +268,18 @@ def _uranus(circumstances: Circumstances) -> Floats:
 def _neptune(circumstances: Circumstances) -> Floats:
     """Return Neptune's magnitude, which rose from 1980 to 2000 and is taken as constant before and after.
 
-    Nan beyond a phase angle of 1.9 degrees before 2000, as the source has it; the Earth does not see it.
+    Before 2000 the source gives no term for phase angles beyond 1.9 degrees. The Earth sees up to 1.96, near
+    quadrature: there the magnitude is left undimmed (0.016 mag at most); nan beyond 2 degrees.
 
     Source: eq. 16 (its straight line is followed to -7.00, reached in mid-2000, where the source steps by
-    0.002 mag) and eq. 17 for larger phase angles.
+    0.002 mag) and eq. 17 beyond 1.9 degrees, where the source steps by 0.016 mag.
     """
     phase = circumstances.phase_angle_deg
     year = 2000.0 + (circumstances.jd_tt - constants.J2000_JD) / constants.DAYS_PER_JULIAN_YEAR
     full = np.clip(-6.89 - 0.0054 * (year - 1980.0), -7.00, -6.89)
     dimmed = full + _polynomial(phase, 0.0, 7.944e-3, 9.617e-5)
-    beyond = np.where(year >= 2000.0, dimmed, np.nan)
+    old = np.where(phase <= NEPTUNE_PHASE_SEEN_DEG, full, np.nan)
+    beyond = np.where(year >= 2000.0, dimmed, old)
     return _at_distance(np.where(phase <= NEPTUNE_PHASE_LIMIT_DEG, full, beyond), circumstances)
 
 

@@ -266,8 +266,7 @@ def _span_jd(segment: Any) -> Span:
     middle, radius = _words(segment, segment.start_i, segment.start_i + 1)
     held = segment.end_i - segment.start_i + 1
     consistent = (
-        length > 0.0
-        and count >= 1.0
+        count >= 1.0
         and count * record_words + 4 == held
         and (record_words - 2) % _SERIES_PER_RECORD[segment.data_type] == 0
         and abs(init + radius - middle) < 1.0

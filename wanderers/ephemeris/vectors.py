@@ -98,4 +98,4 @@ def separation_deg(a: Floats, b: Floats) -> Floats:
 
 def wrapped_deg(angle: Floats) -> Floats:
     """Return angles brought into (-180, 180]."""
-    return np.asarray(180.0 - (180.0 - angle) % 360.0)
+    return np.asarray(angle - 360.0 * np.ceil((angle - 180.0) / 360.0))

@@ -25,6 +25,7 @@ from wanderers.events.kinds import NOBODY, Kind
 SIGNIFICANT_DELTA_T_UNCERTAINTY_S: Final = 1.0
 """Uncertainty of UTC from which it is printed beside it."""
 
+NOT_ENTERED: Final = -1
 CONTACTS: Final = (1, 2, 3, 4)
 UNNAMEABLE: Final = r"[^a-z0-9+_-]+"
 """What does not belong in a name of an event: blanks and accents of star names."""
@@ -69,6 +70,7 @@ def _entries(found: Found) -> pl.DataFrame:
             "figure_deg": none if batch.figure_deg is None else batch.figure_deg,
             "round": found.rounds,
             "ordinal": found.ordinals,
+            "entered": np.full(batch.jd.size, NOT_ENTERED) if batch.entered is None else batch.entered,
             "body_number": batch.body,
             "other_number": batch.other,
         }
@@ -116,10 +118,12 @@ def _appearance_columns(store: TrackStore, ledger: pl.DataFrame) -> dict[str, pl
     with ThreadPoolExecutor() as pool:
         parts = list(pool.map(look_up, starts.tolist(), [*edges[:-1].tolist(), jd.size]))
     joined = {name: np.concatenate([part[name] for part in parts]) for name in parts[0]}
-    constellation = pl.Series(constellations.ABBREVIATIONS).gather(joined.pop("constellation"))
-    gathered = ledger["kind"] == Kind.GATHERING.value
+    entered = ledger["entered"].to_numpy()
+    stood_in = np.where(entered == NOT_ENTERED, joined.pop("constellation"), entered)
+    constellation = pl.Series(constellations.ABBREVIATIONS).gather(stood_in)
+    by_finder = ledger["kind"].is_in([Kind.GATHERING.value, Kind.TRANSIT.value])
     columns = {name: pl.Series(values, nan_to_null=True) for name, values in joined.items()}
-    columns["separation_deg"] = ledger["figure_deg"].zip_with(gathered, columns["separation_deg"])
+    columns["separation_deg"] = ledger["figure_deg"].zip_with(by_finder, columns["separation_deg"])
     return columns | {"constellation": constellation}
 
 

@@ -13,11 +13,15 @@ from wanderers.ephemeris.bodies import BODIES, INNER
 from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.sky import SUN
 from wanderers.ephemeris.vectors import separation_deg, wrapped_deg
+from wanderers.events.discs import Pairs, occultations, transits
 from wanderers.events.kinds import Batch, Kind, batch
 from wanderers.events.scene import Scene
 from wanderers.events.search import Roots, find_roots
 
 APPULSE_DETAILS = ("", "quasi", "farthest")
+LARGEST_DISCS_DEG = 0.35
+"""No two discs in the sky overlap whose centres are farther apart."""
+
 ELONGATION_DETAILS = ("east", "west")
 
 
@@ -32,35 +36,48 @@ def find_appulses(scene: Scene) -> list[Batch]:
     if pairs.shape[1] == 0:
         return []
     roots = chord_extrema(scene, pairs, np.full(pairs.shape[1], 180.0))
-    first, second = pairs[0][roots.function], pairs[1][roots.function]
-    detail = np.where(roots.rising, 0, APPULSE_DETAILS.index("farthest"))
+    return appulses_and_occultations(scene, pairs, roots)
+
+
+def appulses_and_occultations(scene: Scene, pairs: Ints, roots: Roots) -> list[Batch]:
+    """Turn extrema of separations into appulses, and those in which discs overlap into occultations too."""
+    met = Pairs(pairs[0][roots.function], pairs[1][roots.function], roots.jd)
+    apart = separation_of(scene, met.first, met.second, met.jd)
+    close = roots.rising & (apart < LARGEST_DISCS_DEG)
     return [
         batch(
             Kind.APPULSE,
             None,
-            roots.jd,
-            first,
-            other=second,
-            detail=detail,
+            met.jd,
+            met.first,
+            other=met.second,
+            detail=np.where(roots.rising, 0, APPULSE_DETAILS.index("farthest")),
             details=APPULSE_DETAILS,
-            figure_deg=separation_of(scene, first, second, roots.jd),
-        )
+            figure_deg=apart,
+        ),
+        occultations(scene.sky, met.chosen(close)),
     ]
 
 
-def find_greatest_elongations(scene: Scene) -> list[Batch]:
-    """Find the greatest true angles of Mercury and Venus from the Sun."""
+def find_solar_approaches(scene: Scene) -> list[Batch]:
+    """Find the greatest elongations of Mercury and Venus, and their transits over the Sun's disc."""
     planets = scene.held(scene.choice.among(INNER))
     if planets.size == 0:
         return []
     pairs = np.stack([np.full(planets.size, SUN), planets])
     roots = chord_extrema(scene, pairs, np.full(planets.size, 180.0))
-    farthest = ~roots.rising
-    jd, body = roots.jd[farthest], planets[roots.function[farthest]]
-    longitude = scene.sky.longitude_deg(body, jd, Frame.ECLIPTIC)[0]
-    sun = scene.sky.longitude_deg(np.full(jd.size, SUN), jd, Frame.ECLIPTIC)[0]
+    met = Pairs(pairs[0][roots.function], pairs[1][roots.function], roots.jd)
+    close = roots.rising & (separation_of(scene, met.first, met.second, met.jd) < LARGEST_DISCS_DEG)
+    return [_greatest_elongations(scene, met.chosen(~roots.rising)), transits(scene.sky, met.chosen(close))]
+
+
+def _greatest_elongations(scene: Scene, met: Pairs) -> Batch:
+    longitude = scene.sky.longitude_deg(met.second, met.jd, Frame.ECLIPTIC)[0]
+    sun = scene.sky.longitude_deg(met.first, met.jd, Frame.ECLIPTIC)[0]
     west = (wrapped_deg(longitude - sun) < 0.0).astype(np.int64)
-    return [batch(Kind.GREATEST_ELONGATION, None, jd, body, detail=west, details=ELONGATION_DETAILS)]
+    return batch(
+        Kind.GREATEST_ELONGATION, None, met.jd, met.second, detail=west, details=ELONGATION_DETAILS
+    )
 
 
 def separation_of(scene: Scene, first: Ints, second: Ints, jd: Floats) -> Floats:

@@ -17,11 +17,17 @@ from wanderers.ephemeris.sky import Sky
 from wanderers.ephemeris.stars import StarCatalogue, ecliptic_stars
 from wanderers.ephemeris.store import TrackStore
 from wanderers.events import identity, meetings
-from wanderers.events.approaches import find_appulses, find_greatest_elongations
+from wanderers.events.approaches import find_appulses, find_solar_approaches
+from wanderers.events.apsides import find_apsides
+from wanderers.events.brilliancy import find_greatest_brilliancies
 from wanderers.events.conjunctions import find_conjunctions
+from wanderers.events.constellation_entries import find_constellation_entries
 from wanderers.events.distances import find_perigees_and_apogees
+from wanderers.events.gatherings import find_gatherings
 from wanderers.events.kinds import Batch, Kind
 from wanderers.events.meetings import Meeting
+from wanderers.events.nodes import find_nodes
+from wanderers.events.ring_plane import find_earth_crossings, find_sun_crossings
 from wanderers.events.sampling import grid, sample
 from wanderers.events.scene import STEP_DAYS, Choice, Scene
 from wanderers.events.solar_aspects import (
@@ -31,6 +37,7 @@ from wanderers.events.solar_aspects import (
     find_season_points,
     find_solar_conjunctions,
 )
+from wanderers.events.star_meetings import find_star_meetings
 from wanderers.events.stations import find_stations
 
 Finder = Callable[[Scene], list[Batch]]
@@ -40,14 +47,28 @@ FINDERS: Final[tuple[tuple[frozenset[Kind], Finder], ...]] = (
     (frozenset({Kind.OPPOSITION}), find_oppositions),
     (frozenset({Kind.SOLAR_CONJUNCTION}), find_solar_conjunctions),
     (frozenset({Kind.QUADRATURE}), find_quadratures),
-    (frozenset({Kind.GREATEST_ELONGATION}), find_greatest_elongations),
+    (frozenset({Kind.GREATEST_ELONGATION, Kind.TRANSIT}), find_solar_approaches),
     (frozenset({Kind.PERIGEE, Kind.APOGEE}), find_perigees_and_apogees),
     (frozenset({Kind.CONJUNCTION}), find_conjunctions),
-    (frozenset({Kind.APPULSE}), find_appulses),
+    (frozenset({Kind.APPULSE, Kind.OCCULTATION}), find_appulses),
+    (frozenset({Kind.CONJUNCTION, Kind.APPULSE, Kind.OCCULTATION}), find_star_meetings),
+    (frozenset({Kind.GREATEST_BRILLIANCY}), find_greatest_brilliancies),
+    (frozenset({Kind.GATHERING}), find_gatherings),
+    (frozenset({Kind.CONSTELLATION_ENTRY}), find_constellation_entries),
+    (frozenset({Kind.NODE}), find_nodes),
+    (frozenset({Kind.RING_PLANE_CROSSING}), find_earth_crossings),
     (frozenset({Kind.MOON_PHASE}), find_moon_phases),
     (frozenset({Kind.SEASON_POINT}), find_season_points),
 )
 """A new kind of event is a module with one such function, and a line here."""
+
+SlowFinder = Callable[[TrackStore, Choice, float, float], list[Batch]]
+
+SLOW_FINDERS: Final[tuple[tuple[frozenset[Kind], SlowFinder], ...]] = (
+    (frozenset({Kind.PERIHELION, Kind.APHELION}), find_apsides),
+    (frozenset({Kind.RING_PLANE_CROSSING}), find_sun_crossings),
+)
+"""Finders of what happens around the Sun: they read the kernel itself, over whole orbits."""
 
 PAD_DAYS: Final = 1100.0
 """How far beyond a span events are looked for, so that a meeting of slow planets, which may take two
@@ -101,7 +122,10 @@ def find_events(store: TrackStore, query: Query) -> list[Found]:
     jd_from, jd_to = max(query.jd_from - PAD_DAYS, low), min(query.jd_to + PAD_DAYS, high)
     store.ensure(store.block_indices(jd_from, jd_to))
     batches = _searched(store, query, stretches(store, jd_from, jd_to))
-    named = _with_meetings([_named(batch) for batch in batches])
+    for kinds, finder in SLOW_FINDERS:
+        if kinds & query.kinds:
+            batches += finder(store, query.choice, jd_from, jd_to)
+    named = _with_meetings([_named(batch) for batch in _joined(batches)])
     return [one.chosen(_wanted(one.batch, query)) for one in named if _asked_for(one.batch, query)]
 
 
@@ -167,6 +191,7 @@ def _concatenated(group: list[Batch]) -> Batch:
         details=head.details,
         contacts_jd=joined("contacts_jd"),
         figure_deg=joined("figure_deg"),
+        entered=joined("entered"),
     )
     return whole.chosen(np.argsort(whole.jd, kind="stable"))
 

@@ -97,6 +97,12 @@ def anomalistic_phase(body: Ints, jd: Floats) -> Floats:
     return (_mean(MEAN_LONGITUDE, body, jd) - _mean(PERIHELION, body, jd)) / 360.0
 
 
+def anomalistic_days(body: Body) -> float:
+    """Return the length of an orbit from perihelion to perihelion, days."""
+    motion = MEAN_LONGITUDE[body][1] - PERIHELION[body][1]
+    return 360.0 * constants.DAYS_PER_CENTURY / motion
+
+
 def draconic_phase(body: Ints, jd: Floats) -> Floats:
     """Return turns from the ascending node: whole near it."""
     return (_mean(MEAN_LONGITUDE, body, jd) - _mean(ASCENDING_NODE, body, jd)) / 360.0

@@ -55,6 +55,7 @@ class Batch:
         contacts_jd: for discs that meet, the four contacts, shape (n, 4), NaN where one does not happen.
         figure_deg: a figure the finder knows, shape (n,): least separation of an appulse, diameter of a
             gathering's circle, longitude of date of a constellation entry.
+        entered: for constellation entries, index of the constellation entered, shape (n,).
     """
 
     kind: Kind
@@ -66,6 +67,7 @@ class Batch:
     details: tuple[str, ...] = ("",)
     contacts_jd: Floats | None = None
     figure_deg: Floats | None = None
+    entered: Ints | None = None
 
     def chosen(self, keep: Bools) -> Batch:
         """Return the events where ``keep`` is true."""
@@ -77,6 +79,7 @@ class Batch:
             detail=self.detail[keep],
             contacts_jd=None if self.contacts_jd is None else self.contacts_jd[keep],
             figure_deg=None if self.figure_deg is None else self.figure_deg[keep],
+            entered=None if self.entered is None else self.entered[keep],
         )
 
     def within(self, jd_from: float, jd_to: float) -> Batch:

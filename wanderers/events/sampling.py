@@ -9,11 +9,12 @@ from typing import Final
 import numpy as np
 
 from wanderers.arrays import Floats
-from wanderers.ephemeris import vectors
+from wanderers.ephemeris import places, stars, vectors
 from wanderers.ephemeris.bodies import BODIES
+from wanderers.ephemeris.deflection import deflection
 from wanderers.ephemeris.frames import Frame, ecliptic_of_j2000
 from wanderers.ephemeris.sky import SUN, Sky, bent, rotation_from
-from wanderers.ephemeris.tracks import POSITION
+from wanderers.ephemeris.tracks import EARTH_POSITION, POSITION
 
 GRID_ORIGIN_JD: Final = 2_287_184.5
 """Grids are cut from one raster, so that results do not depend on where a span begins."""
@@ -66,3 +67,24 @@ def sample(sky: Sky, jd: Floats, targets: Sequence[int]) -> Samples:
         directions[target] = bent(position, sun[:2], ~nowhere if target == SUN else nowhere)
     rotations = {frame: rotation_from(observer, frame) for frame in (Frame.ECLIPTIC, Frame.EQUATOR)}
     return Samples(sky, jd, directions, rotations | {Frame.J2000: ecliptic_of_j2000()})
+
+
+def sample_stars(samples: Samples) -> Floats:
+    """Sample the sky's stars on the grid of other samples.
+
+    Returns:
+        apparent unit directions in GCRS axes and their rates, shape (stars, 2, 3, n); the rates are
+        differences along the grid, good enough to steer a search.
+    """
+    sky, jd = samples.sky, samples.jd
+    if sky.catalogue is None:
+        raise LookupError("this sky holds no stars")
+    earth = sky.tracks.observer.evaluate_grid(np.array([0]), jd, EARTH_POSITION, 1)[0]
+    sun = sky.tracks.evaluate_grid(BODIES[SUN], jd, POSITION)[0]
+    lines = stars.astrometric_directions(sky.catalogue, jd, earth[0])
+    count = lines.shape[0]
+    flat = np.ascontiguousarray(lines.transpose(1, 0, 2)).reshape(3, -1)
+    seen = places.aberrated(flat, np.tile(earth[1], count))
+    seen += deflection(seen, np.tile(sun, count), at_infinity=True)
+    directions = seen.reshape(3, count, -1).transpose(1, 0, 2)
+    return np.stack([directions, np.gradient(directions, jd, axis=2)], axis=1)

@@ -8,8 +8,8 @@ those of the value.
 
 from __future__ import annotations
 
-from collections.abc import Callable
-from dataclasses import dataclass
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
 from typing import Final
 
 import numpy as np
@@ -51,6 +51,19 @@ class Roots:
         return Roots(self.function[keep], self.jd[keep], self.rising[keep])
 
 
+@dataclass(frozen=True, slots=True)
+class Candidates:
+    """Where roots must lie, and where two more might.
+
+    Attributes:
+        crossing: brackets of a root each.
+        turning: intervals at whose ends a function has one sign, heading for zero and away again.
+    """
+
+    crossing: Brackets
+    turning: Brackets
+
+
 def find_roots(
     evaluate: ValueAndSlope,
     jd: Floats,
@@ -73,16 +86,90 @@ def find_roots(
     Returns:
         all roots between the first and last sample. Complete if no function turns twice within one step.
     """
+    return solve(evaluate, [candidates(jd, values, slopes, period=period, usable=usable)])
+
+
+def candidates(
+    jd: Floats,
+    values: Floats,
+    slopes: Floats,
+    *,
+    period: float | None = None,
+    usable: Bools | None = None,
+    first_function: int = 0,
+) -> Candidates:
+    """Bracket what :func:`solve` refines; arguments as for :func:`find_roots`.
+
+    Args:
+        jd: the grid.
+        values: samples.
+        slopes: their rates.
+        period: of wrapped angles.
+        usable: the intervals to look into.
+        first_function: number of the function in the first row.
+    """
     usable = np.ones((values.shape[0], jd.size - 1), dtype=np.bool_) if usable is None else usable
     if period is not None:
         usable = usable & (np.abs(np.diff(values, axis=1)) < period / 2.0)
     crossing = sign_changes(jd, values, slopes, usable)
-    turning = split_turns(evaluate, turns_toward_zero(jd, values, slopes, usable))
-    brackets = _joined([crossing, turning])
+    turning = turns_toward_zero(jd, values, slopes, usable)
+    return Candidates(_renumbered(crossing, first_function), _renumbered(turning, first_function))
+
+
+def solve(evaluate: ValueAndSlope, found: Sequence[Candidates]) -> Roots:
+    """Refine candidates into roots, sorted by time."""
+    turning = split_turns(evaluate, _joined([one.turning for one in found]))
+    brackets = _joined([*(one.crossing for one in found), turning])
     root = refine(evaluate, brackets)
     by_time = np.lexsort((brackets.function, root))
     rising = brackets.right_value > brackets.left_value
     return Roots(brackets.function[by_time], root[by_time], rising[by_time])
+
+
+def level_crossings(jd: Floats, values: Floats, slopes: Floats, levels: Floats) -> Candidates:
+    """Bracket every passage of one function through any of many levels.
+
+    Args:
+        jd: the grid, shape (n,).
+        values: samples of the function, shape (n,).
+        slopes: its rates, shape (n,).
+        levels: sorted, shape (m,).
+
+    Returns:
+        candidates whose function is the number of the level, and whose values are counted from it.
+    """
+    cell = np.searchsorted(levels, values, side="right")
+    crossing = _level_brackets(jd, values, slopes, levels, (cell[:-1], cell[1:]))
+    turns = slopes[:-1] * slopes[1:] < 0.0
+    extreme = _tangents_meet(jd, values, slopes)
+    beyond = np.searchsorted(levels, np.where(turns, extreme, values[1:]), side="right")
+    high = slopes[:-1] > 0.0
+    nearest = np.where(high, np.maximum(cell[:-1], cell[1:]), np.minimum(cell[:-1], cell[1:]))
+    spans = (np.where(turns, nearest, 0), np.where(turns, beyond, 0))
+    return Candidates(crossing, _level_brackets(jd, values, slopes, levels, spans))
+
+
+def _tangents_meet(jd: Floats, values: Floats, slopes: Floats) -> Floats:
+    """Return where the tangents at neighbouring samples meet, shape (n - 1,): no turn between goes beyond."""
+    bend = slopes[:-1] - slopes[1:]
+    rise = values[1:] - values[:-1] - slopes[1:] * np.diff(jd)
+    offset = np.divide(rise, bend, out=np.zeros_like(rise), where=bend != 0.0)
+    return np.asarray(values[:-1] + slopes[:-1] * offset)
+
+
+def _level_brackets(
+    jd: Floats, values: Floats, slopes: Floats, levels: Floats, cells: tuple[Ints, Ints]
+) -> Brackets:
+    """Return one bracket for every level between two cells of each interval."""
+    low, high = np.minimum(*cells), np.maximum(*cells)
+    count = high - low
+    column = np.repeat(np.arange(count.size), count)
+    first = np.cumsum(count) - count
+    level = np.arange(column.size) - np.repeat(first, count) + np.repeat(low, count)
+    left_value, right_value = values[column] - levels[level], values[column + 1] - levels[level]
+    left, right = jd[column], jd[column + 1]
+    ends = (left_value, right_value, slopes[column], slopes[column + 1])
+    return Brackets(level, left, right, left_value, right_value, left + cubic_root(*ends, right - left))
 
 
 def sign_changes(jd: Floats, values: Floats, slopes: Floats, usable: Bools) -> Brackets:
@@ -199,6 +286,10 @@ def cubic_root(
     value = left_value + s * (a + s * (quadratic + s * cubic))
     better = np.abs(value) <= np.abs(left_value + chord * (a + chord * (quadratic + chord * cubic)))
     return np.asarray(np.where(better, s, chord) * step)
+
+
+def _renumbered(brackets: Brackets, first_function: int) -> Brackets:
+    return replace(brackets, function=brackets.function + first_function)
 
 
 def _joined(parts: list[Brackets]) -> Brackets:

@@ -1,0 +1,144 @@
+"""Discs that meet: occultations and transits, with their contacts.
+
+A contact is an instant at which the separation of two centres equals the sum (first and fourth) or the
+difference (second and third) of the two semidiameters, as seen from the Earth's centre.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+
+from wanderers import constants
+from wanderers.arrays import Bools, Floats, Ints
+from wanderers.ephemeris.appearance import diameter_arcsec
+from wanderers.ephemeris.bodies import SUN_SEMIDIAMETER_AT_1_AU_ARCSEC, Body
+from wanderers.ephemeris.sky import FIRST_STAR, SUN, Sky
+from wanderers.ephemeris.vectors import separation_deg
+from wanderers.events.kinds import Batch, Kind, batch
+from wanderers.events.search import Brackets, refine
+
+OCCULTATION_DETAILS: Final = ("planet", "star", "moon")
+TRANSIT_DETAILS: Final = ("mercury", "venus")
+DOUBLINGS: Final = 12
+
+
+@dataclass(frozen=True, slots=True)
+class Pairs:
+    """Pairs of targets at their least separation: shape (n,) each."""
+
+    first: Ints
+    second: Ints
+    jd: Floats
+
+    def chosen(self, keep: Bools) -> Pairs:
+        """Return the pairs where ``keep`` is true."""
+        return Pairs(self.first[keep], self.second[keep], self.jd[keep])
+
+
+def semidiameter_deg(sky: Sky, target: Ints, jd: Floats) -> Floats:
+    """Return the angular radius of one target an instant, zero for stars, shape (n,)."""
+    star = target >= FIRST_STAR
+    body = np.where(star, SUN, target)
+    distance = sky.earth_distance_au(body, jd)[0]
+    arcsec = np.where(body == SUN, SUN_SEMIDIAMETER_AT_1_AU_ARCSEC / distance, diameter_arcsec(body, distance) / 2.0)
+    return np.where(star, 0.0, arcsec / constants.ARCSEC_PER_DEG)
+
+
+def overlapping(sky: Sky, pairs: Pairs) -> Bools:
+    """Return whose discs overlap at the least separation."""
+    gap, _ = _gaps(sky, pairs, pairs.jd)
+    return np.asarray(gap < 0.0)
+
+
+def occultations(sky: Sky, pairs: Pairs) -> Batch:
+    """Return the occultations among pairs of Moon, planets and stars at their least separations.
+
+    ``moon``: the Moon hides a planet. ``star``: a planet or the Moon hides a star. ``planet``: one planet hides
+    another.
+    """
+    met = pairs.chosen(overlapping(sky, pairs))
+    by_moon = np.where(met.first == Body.MOON.order, 2, 0)
+    detail = np.where(met.second >= FIRST_STAR, 1, by_moon)
+    return batch(
+        Kind.OCCULTATION,
+        None,
+        met.jd,
+        met.first,
+        other=met.second,
+        detail=detail,
+        details=OCCULTATION_DETAILS,
+        contacts_jd=contacts(sky, met),
+    )
+
+
+def transits(sky: Sky, pairs: Pairs) -> Batch:
+    """Return the transits among least separations of the Sun (first) and an inner planet (second)."""
+    nearer = sky.earth_distance_au(pairs.second, pairs.jd)[0] < sky.earth_distance_au(pairs.first, pairs.jd)[0]
+    met = pairs.chosen(nearer & overlapping(sky, pairs))
+    detail = (met.second == Body.VENUS.order).astype(np.int64)
+    return batch(
+        Kind.TRANSIT,
+        None,
+        met.jd,
+        met.second,
+        detail=detail,
+        details=TRANSIT_DETAILS,
+        contacts_jd=contacts(sky, met),
+        figure_deg=_separations(sky, met, met.jd),
+    )
+
+
+def contacts(sky: Sky, met: Pairs) -> Floats:
+    """Return the four contacts of overlapping discs, shape (n, 4), NaN where one disc stays outside."""
+    outer, inner = _gaps(sky, met, met.jd)
+    reach = _reach_days(sky, met)
+    out = np.full((met.jd.size, 4), np.nan)
+    inside = inner < 0.0
+    for column, side, edge, there in ((0, -1, 0, outer < 0.0), (1, -1, 1, inside), (2, 1, 1, inside), (3, 1, 0, outer < 0.0)):
+        out[there, column] = _contact(sky, met.chosen(there), reach[there] * side, edge)
+    return out
+
+
+def _contact(sky: Sky, met: Pairs, reach_days: Floats, edge: int) -> Floats:
+    """Return the instant at which one edge is passed, before (negative reach) or after the middle."""
+    size = met.jd.size
+    gap_now = _gaps(sky, met, met.jd)[edge]
+
+    def gap(row: Ints, jd: Floats) -> tuple[Floats, Floats]:
+        some, h = met.chosen(row), 1e-4
+        before, now, after = (_gaps(sky, some, at)[edge] for at in (jd - h, jd, jd + h))
+        return now, (after - before) / (2.0 * h)
+
+    far = met.jd + reach_days
+    ends = np.sort(np.stack([met.jd, far]), axis=0)
+    gap_far = _gaps(sky, met, far)[edge]
+    low, high = (gap_now, gap_far) if size and reach_days[0] > 0 else (gap_far, gap_now)
+    return refine(gap, Brackets(np.arange(size), ends[0], ends[1], low, high, ends.mean(axis=0)))
+
+
+def _reach_days(sky: Sky, met: Pairs) -> Floats:
+    """Return how long after (and before) the middle the discs are surely apart, shape (n,)."""
+    reach = np.full(met.jd.size, 0.02)
+    for _ in range(DOUBLINGS):
+        near = np.zeros(met.jd.size, dtype=np.bool_)
+        for side in (-1.0, 1.0):
+            at = (met.jd + side * reach).clip(sky.tracks.start_jd, sky.tracks.end_jd)
+            near |= _gaps(sky, met, at)[0] <= 0.0
+        if not near.any():
+            break
+        reach = np.where(near, 2.0 * reach, reach)
+    return reach
+
+
+def _gaps(sky: Sky, met: Pairs, jd: Floats) -> tuple[Floats, Floats]:
+    """Return separation less the sum, and less the difference, of the semidiameters, degrees, shape (n,)."""
+    apart = _separations(sky, met, jd)
+    one, two = semidiameter_deg(sky, met.first, jd), semidiameter_deg(sky, met.second, jd)
+    return apart - (one + two), apart - np.abs(one - two)
+
+
+def _separations(sky: Sky, met: Pairs, jd: Floats) -> Floats:
+    return separation_deg(sky.apparent(met.first, jd)[0], sky.apparent(met.second, jd)[0])

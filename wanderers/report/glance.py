@@ -1,0 +1,114 @@
+"""At a glance: the few facts of a span that most readers look for first."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final
+
+import polars as pl
+
+from wanderers.ephemeris.bodies import PLANETS, Body
+from wanderers.events.kinds import Kind
+from wanderers.report import facts, words
+
+CLOSE_DEG: Final = 1.0
+NONE_FOUND: Final = "none in this span"
+
+
+@dataclass(frozen=True, slots=True)
+class Glance:
+    """One line of the list.
+
+    Attributes:
+        label: what was looked for.
+        what: what was found, or that nothing was.
+        when: instant in UTC to the minute, empty when nothing was found.
+        figures: separation, elongation, magnitude in words.
+        caution: what must be said beside it.
+        event_id: the row it comes from.
+    """
+
+    label: str
+    what: str
+    when: str = ""
+    figures: str = ""
+    caution: str = ""
+    event_id: str = ""
+
+
+def at_a_glance(
+    events: pl.DataFrame, seasons: pl.DataFrame, jd_from: float, kinds: tuple[Kind, ...]
+) -> tuple[Glance, ...]:
+    """Return the list for the events and seasons of a span that begins at ``jd_from``.
+
+    Lines about kinds of events that were not asked for are left out.
+    """
+    return (
+        _turned_back(seasons, jd_from),
+        *(_line(first.title, events.filter(first.rule)) for first in FIRSTS if first.kind in kinds),
+        *([_closest(events)] if Kind.CONJUNCTION in kinds or Kind.APPULSE in kinds else []),
+    )
+
+
+@dataclass(frozen=True, slots=True)
+class First:
+    """A line that tells the earliest event that fits a rule."""
+
+    title: str
+    kind: Kind
+    rule: pl.Expr
+
+
+IS_PLANET: Final = pl.col("body").is_in([body.value for body in PLANETS])
+OTHER_IS_PLANET: Final = pl.col("other").is_in([body.value for body in PLANETS])
+IS_CLOSE: Final = (pl.col("kind") == Kind.CONJUNCTION) & (pl.col("separation_deg") < CLOSE_DEG)
+IS_INFERIOR: Final = (pl.col("kind") == Kind.SOLAR_CONJUNCTION) & (pl.col("detail") == "inferior")
+IS_OCCULTATION: Final = pl.col("kind") == Kind.OCCULTATION
+IS_MEETING: Final = pl.col("kind").is_in([Kind.CONJUNCTION, Kind.APPULSE])
+DARK: Final = pl.col("elongation_deg") - pl.col("separation_deg").fill_null(0.0) >= words.NEAR_SUN_DEG
+
+FIRSTS: Final = (
+    First("Next station", Kind.STATION, pl.col("kind") == Kind.STATION),
+    First("Next opposition", Kind.OPPOSITION, pl.col("kind") == Kind.OPPOSITION),
+    First("Next greatest elongation", Kind.GREATEST_ELONGATION, pl.col("kind") == Kind.GREATEST_ELONGATION),
+    First("Next inferior conjunction", Kind.SOLAR_CONJUNCTION, IS_INFERIOR),
+    First("Next conjunction under 1 degree", Kind.CONJUNCTION, IS_CLOSE),
+    First("Next of two planets under 1 degree", Kind.CONJUNCTION, IS_CLOSE & IS_PLANET & OTHER_IS_PLANET),
+    First("Next transit", Kind.TRANSIT, pl.col("kind") == Kind.TRANSIT),
+    First("Next occultation of a planet", Kind.OCCULTATION, IS_OCCULTATION & OTHER_IS_PLANET),
+)
+
+
+def _turned_back(seasons: pl.DataFrame, jd_from: float) -> Glance:
+    """Say which planets are retrograde when the span begins."""
+    now = seasons.filter(
+        (pl.col("station_retrograde_jd_tt") <= jd_from) & (pl.col("station_direct_jd_tt") > jd_from)
+    )
+    names = tuple(body.label for body in Body if body.value in now["body"].to_list())
+    return Glance("Retrograde as the span begins", facts.listed(names) or "no planet")
+
+
+def _closest(events: pl.DataFrame) -> Glance:
+    """Return the line for the closest meeting of two planets that the Sun's glare does not hide."""
+    met = events.filter(IS_MEETING & IS_PLANET & OTHER_IS_PLANET & DARK)
+    title = f"Closest pair of planets, {words.NEAR_SUN_DEG:.0f} degrees or more from the Sun"
+    return _line(title, met.sort("separation_deg", "jd_tt").head(1))
+
+
+def _line(title: str, found: pl.DataFrame) -> Glance:
+    if found.is_empty():
+        return Glance(title, NONE_FOUND)
+    event = found.row(0, named=True)
+    figures = (
+        f"{facts.angle(event['separation_deg'])} apart" if event["separation_deg"] is not None else "",
+        f"{event['elongation_deg']:.0f}° from the Sun" if event["elongation_deg"] is not None else "",
+        f"magnitude {facts.signed(event['magnitude'], 1)}" if event["magnitude"] is not None else "",
+    )
+    return Glance(
+        title,
+        words.summary(event),
+        facts.minute(event["utc"]),
+        ", ".join(filter(None, figures)),
+        facts.note(event),
+        event["event_id"],
+    )
