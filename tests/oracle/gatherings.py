@@ -19,7 +19,7 @@ from tests.oracle.search import refine
 
 STEP_DAYS = 0.02
 LIMIT_DEG = 30.0  # diameter
-SLACK_DEG = 1e-9  # bodies on the circle count as held
+SLACK_DEG = 1e-12  # bodies on the circle count as held
 
 
 def circle_diameters_deg(directions: Floats) -> tuple[Floats, Floats]:

@@ -14,7 +14,7 @@ from wanderers.ephemeris.bodies import BODIES, EQUATORIAL_RADIUS_KM, Body
 from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.magnitudes import Circumstances, apparent_magnitude, pole_latitudes_deg
 from wanderers.ephemeris.sky import SUN, Sky
-from wanderers.ephemeris.tracks import EARTH_POSITION, POSITION, SUN_DISTANCE
+from wanderers.ephemeris.tracks import EARTH_POSITION, POSITION
 
 TILTED: Final = (Body.SATURN, Body.URANUS)
 RADII_KM: Final = np.array([EQUATORIAL_RADIUS_KM[body] for body in BODIES])
@@ -79,7 +79,7 @@ def appearance(sky: Sky, body: Ints, jd: Floats) -> Appearance:
         vectors.latitude_deg(equator)[0],
         np.where(body == SUN, np.nan, elongation),
         distance,
-        _magnitudes(sky, body, jd, shape, phase_angle),
+        _magnitudes(body, jd, shape, phase_angle),
         diameter_arcsec(body, distance),
         np.cos(np.radians(phase_angle / 2.0)) ** 2,
         np.asarray(constellations.constellation_at(apparent[0]), dtype=np.int64),
@@ -108,7 +108,7 @@ def diameter_arcsec(body: Ints, distance_au: Floats) -> Floats:
 def magnitude(sky: Sky, body: Ints, jd: Floats) -> Floats:
     """Return apparent V magnitudes, one body an instant, shape (n,); NaN outside a formula's range."""
     shape = triangle(sky, body, jd)
-    return _magnitudes(sky, body, jd, shape, shape.phase_angle_deg)
+    return _magnitudes(body, jd, shape, shape.phase_angle_deg)
 
 
 def _without_aberration(position: Floats, velocity: Floats) -> Floats:
@@ -119,10 +119,10 @@ def _without_aberration(position: Floats, velocity: Floats) -> Floats:
     return np.asarray(direction * distance)
 
 
-def _magnitudes(sky: Sky, body: Ints, jd: Floats, shape: Triangle, phase_angle: Floats) -> Floats:
+def _magnitudes(body: Ints, jd: Floats, shape: Triangle, phase_angle: Floats) -> Floats:
     """Apply each planet's own formula to its own instants."""
     out = np.empty(jd.size)
-    sun_distance = sky.tracks.evaluate_each(body, jd, SUN_DISTANCE)[0, 0]
+    sun_distance = np.sqrt(np.einsum("in,in->n", shape.sun_to_body, shape.sun_to_body))
     earth_distance = np.sqrt(np.einsum("in,in->n", shape.earth_to_body, shape.earth_to_body))
     for number in np.unique(body).tolist():
         own = body == number

@@ -15,12 +15,12 @@ from jplephem.spk import SPK
 from skyfield.api import load
 
 from wanderers.ephemeris import chebyshev, frames, places
-from wanderers.ephemeris.bodies import NAIF_CHAINS, Body
+from wanderers.ephemeris.bodies import Body
 from wanderers.arrays import Floats
 from wanderers.ephemeris.chebyshev import Series
 from wanderers.ephemeris.spk_files import open_spk
 
-FORMAT_VERSION: Final = 1
+FORMAT_VERSION: Final = 2
 """Raise it whenever what a block holds changes: older files are then rebuilt."""
 
 ORIGIN_JD: Final = 2_287_184.5
@@ -133,8 +133,7 @@ def _body_series(
     segments = _segments(layout, index, usable)
     at = _as_tdb(*_instants(*segments[1:], layout.terms))
     observer = places.observer_at(spk, at)
-    sun, _ = places.barycentric(spk, NAIF_CHAINS[Body.SUN], at)
-    values = np.stack([places.geocentric_place(spk, body, observer, sun) for body in bodies])
+    values = np.stack([places.geocentric_place(spk, body, observer) for body in bodies])
     return _series(layout, segments, values)
 
 

@@ -69,18 +69,17 @@ def aberrated(direction: Floats, velocity: Floats) -> Floats:
     )
 
 
-def geocentric_place(spk: SPK, body: Body, observer: Observer, sun: Floats) -> Floats:
+def geocentric_place(spk: SPK, body: Body, observer: Observer) -> Floats:
     """Return what a track keeps of a body.
 
     Args:
         spk: the open kernel.
         body: which body.
         observer: the Earth at n instants.
-        sun: the Sun's barycentric position then, au, shape (3, n).
 
     Returns:
-        shape (5, n): the aberrated direction times the light-time distance (au, GCRS axes), the geometric
-        geocentric distance (au) and the geometric heliocentric distance (au).
+        shape (4, n): the aberrated direction times the light-time distance (au, GCRS axes), and the geometric
+        geocentric distance (au).
 
     Accuracy: one light-time step from a position and velocity leaves half the acceleration times the
     light-time squared, below 10 km for Mercury, hence below 1 m in the final position.
@@ -95,4 +94,4 @@ def geocentric_place(spk: SPK, body: Body, observer: Observer, sun: Floats) -> F
     seen = then - observer.position
     distance = length(seen)
     direction = aberrated(seen / distance, observer.velocity)
-    return np.vstack([direction * distance, length(relative), length(now - sun)])
+    return np.vstack([direction * distance, length(relative)])

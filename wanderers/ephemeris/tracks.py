@@ -16,7 +16,6 @@ from wanderers.ephemeris.chebyshev import Series
 
 POSITION: Final = slice(0, 3)
 EARTH_DISTANCE: Final = slice(3, 4)
-SUN_DISTANCE: Final = slice(4, 5)
 ROTATION: Final = slice(0, 9)
 OBLIQUITY: Final = slice(9, 10)
 EARTH_POSITION: Final = slice(10, 13)

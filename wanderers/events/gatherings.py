@@ -15,17 +15,18 @@ from wanderers.events.kinds import Batch, Kind, batch
 from wanderers.events.scene import STEP_DAYS, Scene
 
 FEWEST: Final = 3
-FINE_STEPS: Final = 16
-"""Samples in a step of the grid, wherever the bodies are near: three hours. The circle's diameter has
-corners where its support changes, so it is sampled closely instead of followed by its slope."""
+FINE_STEPS: Final = 8
+FINE_STEPS_WITH_MOON: Final = 48
+"""Samples in a step of the grid, wherever the bodies are near: six hours, an hour with the Moon. The circle's
+diameter has corners where its support changes, so it is sampled closely instead of followed by its slope."""
 
 MARGIN_DEG: Final = 5.0
 """How much wider than the limit two planets may stand at both ends of a step and yet meet it within."""
 MOON_MARGIN_DEG: Final = 30.0
 
 GOLDEN: Final = (np.sqrt(5.0) - 1.0) / 2.0
-GOLDEN_STEPS: Final = 34
-"""From three hours to a hundredth of a second."""
+GOLDEN_STEPS: Final = 32
+"""From twelve hours to a hundredth of a second."""
 
 
 def find_gatherings(scene: Scene) -> list[Batch]:
@@ -63,8 +64,9 @@ def _all_near(near: dict[tuple[int, int], Bools], subset: tuple[int, ...]) -> Bo
 def _tightest(scene: Scene, subset: tuple[int, ...], near: Bools) -> Batch:
     """Find the local minima of the diameter of one subset's circle."""
     word = "+".join(BODIES[body].value for body in subset)
-    jd = _fine_grid(scene.samples.jd, near)
-    lowest = _local_minima(jd, diameter_deg(scene.sky, subset, jd)) if jd.size else np.empty((2, 0))
+    pieces = FINE_STEPS_WITH_MOON if Body.MOON.order in subset else FINE_STEPS
+    jd = _fine_grid(scene.samples.jd, near, pieces)
+    lowest = _local_minima(jd, diameter_deg(scene.sky, subset, jd), STEP_DAYS / pieces) if jd.size else np.empty((2, 0))
     at = _golden(scene.sky, subset, *lowest)
     figure = diameter_deg(scene.sky, subset, at)
     keep = figure < scene.choice.limits.gathering_deg
@@ -79,19 +81,19 @@ def diameter_deg(sky: Sky, subset: tuple[int, ...], jd: Floats) -> Floats:
     return smallest_circles(np.stack([sky.apparent(np.full(jd.size, body), jd)[0] for body in subset]))[0]
 
 
-def _fine_grid(jd: Floats, near: Bools) -> Floats:
+def _fine_grid(jd: Floats, near: Bools, pieces: int) -> Floats:
     """Return fine samples of the steps marked, and of one step on each side of them, rising."""
     wide = near.copy()
     wide[1:] |= near[:-1]
     wide[:-1] |= near[1:]
     step = np.flatnonzero(wide)
-    parts = np.arange(FINE_STEPS) / FINE_STEPS
+    parts = np.arange(pieces) / pieces
     return np.asarray((jd[step, None] + np.diff(jd)[step, None] * parts).ravel())
 
 
-def _local_minima(jd: Floats, values: Floats) -> Floats:
+def _local_minima(jd: Floats, values: Floats, step_days: float) -> Floats:
     """Return the samples before and after every local minimum, shape (2, k)."""
-    together = np.diff(jd) < 1.5 * STEP_DAYS / FINE_STEPS
+    together = np.diff(jd) < 1.5 * step_days
     falls, rises = values[1:-1] <= values[:-2], values[1:-1] < values[2:]
     at = np.flatnonzero(falls & rises & together[:-1] & together[1:]) + 1
     return np.stack([jd[at - 1], jd[at + 1]])

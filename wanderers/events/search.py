@@ -19,10 +19,15 @@ from wanderers.arrays import Bools, Floats, Ints
 ValueAndSlope = Callable[[Ints, Floats], tuple[Floats, Floats]]
 """Takes function numbers and instants, shape (n,) each; returns value and slope per day, shape (n,) each."""
 
-TIME_TOLERANCE_DAYS: Final = 2e-9
-"""A fifth of a millisecond, a few times the spacing of double-precision Julian dates."""
+LAST_STEP_DAYS: Final = 2e-6
+"""A Newton step as short as this, a sixth of a second, is the last: it lands within its square, or, where
+the slope given is off by a thousandth, within two billionths of a day."""
+
+BRACKET_DAYS: Final = 1e-9
+"""Length at which a bracket that is only halved counts as its root: twice the spacing of Julian dates."""
 
 MOST_STEPS: Final = 60
+CUBIC_STEPS: Final = 6
 
 
 @dataclass(frozen=True, slots=True)
@@ -239,7 +244,8 @@ def refine(evaluate: ValueAndSlope, brackets: Brackets) -> Floats:
         target = np.where(safe, newton, (low[active] + high[active]) / 2.0)
         last_step[active] = target - at
         root[active] = target
-        done = (np.abs(target - at) <= TIME_TOLERANCE_DAYS) | (value == 0.0)
+        done = (safe & (np.abs(step) <= LAST_STEP_DAYS)) | (value == 0.0)
+        done |= high[active] - low[active] <= BRACKET_DAYS
         root[active] = np.where(value == 0.0, at, root[active])
         active = active[~done]
     return root
@@ -270,22 +276,24 @@ def cubic_root(
 ) -> Floats:
     """Return the offset at which the cubic through both ends' values and slopes is zero, shape (n,).
 
-    Falls back on the chord where the cubic's Newton iteration leaves the interval; the middle where the
-    ends agree in sign.
+    Newton steps from the chord's root, bisecting where one would leave the bracket. Where the ends agree in
+    sign there is no bracket, and any offset within the step may come out.
     """
     rise = right_value - left_value
     chord = np.divide(-left_value, rise, out=np.full_like(rise, 0.5), where=rise != 0.0)
-    chord = np.where((chord >= 0.0) & (chord <= 1.0), chord, 0.5)
+    s = np.where((chord >= 0.0) & (chord <= 1.0), chord, 0.5)
+    low, high = np.zeros_like(s), np.ones_like(s)
     a, b = step * left_slope, step * right_slope
     quadratic, cubic = 3.0 * rise - 2.0 * a - b, a + b - 2.0 * rise
-    s = chord
-    for _ in range(4):
+    positive_left = left_value >= 0.0
+    for _ in range(CUBIC_STEPS):
         value = left_value + s * (a + s * (quadratic + s * cubic))
         slope = a + s * (2.0 * quadratic + 3.0 * s * cubic)
-        s = np.clip(s - np.divide(value, slope, out=np.zeros_like(s), where=slope != 0.0), 0.0, 1.0)
-    value = left_value + s * (a + s * (quadratic + s * cubic))
-    better = np.abs(value) <= np.abs(left_value + chord * (a + chord * (quadratic + chord * cubic)))
-    return np.asarray(np.where(better, s, chord) * step)
+        beyond_low = (value >= 0.0) == positive_left
+        low, high = np.where(beyond_low, s, low), np.where(beyond_low, high, s)
+        newton = s - np.divide(value, slope, out=np.full_like(s, np.inf), where=slope != 0.0)
+        s = np.where((newton > low) & (newton < high), newton, (low + high) / 2.0)
+    return np.asarray(s * step)
 
 
 def _renumbered(brackets: Brackets, first_function: int) -> Brackets:

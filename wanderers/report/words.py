@@ -1,4 +1,4 @@
-"""Events in plain words: a headline, what exactly is meant by it, figures, cautions.
+"""Events in plain words: a headline, figures, contacts, how far the time can be trusted, cautions.
 
 Numbers are printed as coarsely as people read them, so that a text changes only when the facts do. Degree
 signs stand in headlines only; the figures below spell the unit out.
@@ -34,11 +34,6 @@ SUN_CAUTION: Final = (
     "eye only, never with optics. No sunglasses, smoked glass or eyepiece filters. Follow local rules."
 )
 
-QUANTITIES: Final = {
-    "ecliptic": "ecliptic longitude (true ecliptic and equinox of date)",
-    "equator": "right ascension (true equator and equinox of date)",
-    "j2000": "ecliptic longitude against the stars (fixed ecliptic of J2000)",
-}
 FRAME_LABELS: Final = {
     "ecliptic": "in longitude",
     "equator": "in right ascension",
@@ -55,11 +50,6 @@ def summary(event: Event) -> str:
     return _SUMMARIES[Kind(event["kind"])](event)
 
 
-def definition(event: Event) -> str:
-    """Return what exactly happens at the instant, and what is easily mistaken for it."""
-    return _DEFINITIONS[Kind(event["kind"])](event)
-
-
 def category(event: Event) -> str:
     """Return the kind as people write it."""
     return str(event["kind"]).replace("_", " ").capitalize()
@@ -71,9 +61,9 @@ def figures(event: Event) -> list[str]:
     if event["separation_deg"] is not None:
         size = "Diameter of the circle" if event["kind"] == Kind.GATHERING else "Separation"
         lines.append(f"{size}: {_long_angle(event['separation_deg'])}.")
-    seen = [text for cell, text in _FIGURES if event[cell] is not None and (text := text(event))]
+    seen = [print_figure(event) for column, print_figure in _FIGURES if event[column] is not None]
     if seen:
-        lines.append(f"{label(event['body'])}: {', '.join(seen)}.")
+        lines.append(f"{body_name(event)}: {', '.join(seen)}.")
     return lines
 
 
@@ -83,15 +73,20 @@ def cautions(event: Event) -> list[str]:
         return [SUN_CAUTION]
     lines = []
     elongation = event["elongation_deg"]
-    # Only the first body's elongation is known; the others are no nearer to the Sun than this.
-    nearest = None if elongation is None else elongation - (event["separation_deg"] or 0.0)
-    if nearest is not None and nearest < NEAR_SUN_DEG:
-        lines.append(NEAR_SUN_CAUTION)
     if elongation is not None and elongation < GLARE_DEG:
-        lines.insert(0, f"Not observable: only {elongation:.0f} degrees from the Sun.")
+        lines.append(f"{body_name(event)} not observable: only {elongation:.0f} degrees from the Sun.")
+    if near_the_sun(event):
+        lines.append(NEAR_SUN_CAUTION)
     if event["body"] == "moon" and event["other"] is not None:
-        lines.append("Seen from a place on the Earth, the Moon stands up to 1 degree from where it is given here.")
+        lines.append("From a place on the Earth the Moon is seen up to 1 degree from the place given here.")
     return lines
+
+
+def contacts(event: Event) -> list[str]:
+    """Return when the edges of two discs touch, to the minute, as far as they do."""
+    times = [(ordinal, event[f"contact{number}_utc"]) for number, ordinal in enumerate(_CONTACTS, start=1)]
+    known = [f"{ordinal} {minute(time)}" for ordinal, time in times if time is not None]
+    return [f"Contacts: {', '.join(known)} UTC."] if known else []
 
 
 def uncertainty(event: Event) -> str | None:
@@ -105,11 +100,41 @@ def uncertainty(event: Event) -> str | None:
     )
 
 
-def _name(event: Event) -> str:
+def near_the_sun(event: Event) -> bool:
+    """Return whether a body of an event may stand less than NEAR_SUN_DEG from the Sun.
+
+    The elongation told is that of the first body; the others may stand nearer by the whole separation.
+    """
+    elongation = event["elongation_deg"]
+    return elongation is not None and elongation - (event["separation_deg"] or 0.0) < NEAR_SUN_DEG
+
+
+def minute(instant: str) -> str:
+    """Return an ISO 8601 instant to the minute, ``2027-01-10 12:59``; rounded, but never into another day."""
+    day, _, clock = instant.removesuffix("Z").partition("T")
+    hours, minutes, seconds = clock.split(":")
+    whole = min(int(hours) * 60 + int(minutes) + (float(seconds) >= 30.0), 24 * 60 - 1)
+    return f"{day} {whole // 60:02d}:{whole % 60:02d}"
+
+
+def is_held_back(instant: str) -> bool:
+    """Return whether rounding an ISO 8601 instant to the minute would have changed its date."""
+    hours, minutes, seconds = instant.removesuffix("Z").partition("T")[2].split(":")
+    return (hours, minutes) == ("23", "59") and float(seconds) >= 30.0
+
+
+def listed(names: tuple[str, ...]) -> str:
+    """Return names as a list in a sentence: ``Mars, Jupiter and Saturn``."""
+    return " and ".join(filter(None, (", ".join(names[:-1]), *names[-1:])))
+
+
+def body_name(event: Event) -> str:
+    """Return the body's name."""
     return label(event["body"])
 
 
-def _pair(event: Event) -> str:
+def pair_names(event: Event) -> str:
+    """Return the names of the two bodies."""
     return f"{label(event['body'])} and {label(event['other'])}"
 
 
@@ -132,7 +157,9 @@ def _long_angle(angle_deg: float) -> str:
     """Print an angle in words."""
     if angle_deg >= 1.0:
         return f"{angle_deg:.1f} degrees"
-    return f"{angle_deg:.2f} degrees ({_small_angle(angle_deg)})" if angle_deg >= 0.095 else _small_angle(angle_deg)
+    if angle_deg >= 0.095:
+        return f"{angle_deg:.2f} degrees ({_small_angle(angle_deg)})"
+    return _small_angle(angle_deg)
 
 
 def _small_angle(angle_deg: float) -> str:
@@ -142,8 +169,8 @@ def _small_angle(angle_deg: float) -> str:
 
 def _seconds(seconds: float) -> str:
     """Print a length of time to two digits."""
-    value, unit = (seconds, "seconds") if abs(seconds) < 120.0 else (seconds / 60.0, "minutes")
-    return f"{float(f'{value:.2g}'):.0f} {unit}" if abs(value) >= 10.0 else f"{value:.2g} {unit}"
+    scale, unit = next((scale, unit) for scale, unit in _TIME_UNITS if abs(seconds) < 120.0 * scale)
+    return f"{float(f'{seconds / scale:.2g}'):g} {unit}"
 
 
 def _distance(event: Event) -> str:
@@ -154,11 +181,11 @@ def _distance(event: Event) -> str:
 
 
 def _elongation(event: Event) -> str:
-    return "" if event["body"] == "sun" else f"{event['elongation_deg']:.1f} degrees from the Sun"
+    return f"{event['elongation_deg']:.1f} degrees from the Sun"
 
 
 def _magnitude(event: Event) -> str:
-    return f"magnitude {event['magnitude']:.1f}"
+    return f"magnitude {round(event['magnitude'], 1) + 0.0:.1f}"  # never -0.0
 
 
 def _diameter(event: Event) -> str:
@@ -170,6 +197,8 @@ def _constellation(event: Event) -> str:
     return f"in the constellation {full_name(event['constellation'])}"
 
 
+_TIME_UNITS: Final = ((1.0, "seconds"), (60.0, "minutes"), (3_600.0, "hours"), (86_400.0, "days"))
+_CONTACTS: Final = ("first", "second", "third", "fourth")
 _FIGURES: Final[tuple[tuple[str, Callable[[Event], str]], ...]] = (
     ("constellation", _constellation),
     ("elongation_deg", _elongation),
@@ -180,56 +209,27 @@ _FIGURES: Final[tuple[tuple[str, Callable[[Event], str]], ...]] = (
 
 
 def _station(event: Event) -> str:
-    return f"{_name(event)} turns {event['detail']} {FRAME_LABELS[event['frame']]}"
-
-
-def _station_defined(event: Event) -> str:
-    way = "westward" if event["detail"] == "retrograde" else "eastward"
-    return (
-        f"The {QUANTITIES[event['frame']]} of {_name(event)} stops changing; from here on the planet moves "
-        f"{way}. Counted in another frame, the station falls hours or days away."
-    )
+    return f"{body_name(event)} turns {event['detail']} {FRAME_LABELS[event['frame']]}"
 
 
 def _conjunction(event: Event) -> str:
-    return f"{_pair(event)} {_apart(event)}, conjunction {FRAME_LABELS[event['frame']]}"
-
-
-def _conjunction_defined(event: Event) -> str:
-    return (
-        f"{_pair(event)} have equal {QUANTITIES[event['frame']]}. This is a conjunction "
-        f"{FRAME_LABELS[event['frame']]}: counted in another frame it falls at another time, and so does the "
-        "least separation."
-    )
-
-
-def _appulse_defined(event: Event) -> str:
-    alone = " No conjunction belongs to this approach." if event["detail"] == "quasi" else ""
-    return f"Least true separation of {_pair(event)} during this approach (appulse).{alone}"
+    return f"{pair_names(event)} {_apart(event)}, conjunction {FRAME_LABELS[event['frame']]}"
 
 
 def _solar_conjunction(event: Event) -> str:
     sort = f"at {event['detail']} conjunction" if event["detail"] else "in conjunction"
-    return f"{_name(event)} {sort} with the Sun"
+    return f"{body_name(event)} {sort} with the Sun"
 
 
-def _greatest_elongation_defined(event: Event) -> str:
-    sky = "evening" if event["detail"] == "east" else "morning"
-    return (
-        f"Largest true angle between {_name(event)} and the Sun, in the {sky} sky. The best {sky} to see it "
-        "depends on the season and the latitude."
-    )
+def _greatest_elongation(event: Event) -> str:
+    angle = _short_angle(event["elongation_deg"])
+    return f"{body_name(event)} {angle} from the Sun, greatest {_side(event)} elongation"
 
 
 def _distance_extremum(event: Event) -> str:
     nearest = "closest to" if event["kind"] == Kind.PERIGEE else "farthest from"
     figure = "" if event["distance_au"] is None else f", {_distance(event).removesuffix(' from the Earth')}"
-    return f"{_name(event)} {nearest} the Earth{figure}"
-
-
-def _distance_extremum_defined(event: Event) -> str:
-    least = "Least" if event["kind"] == Kind.PERIGEE else "Largest"
-    return f"{least} geometric distance between the centres of {_name(event)} and the Earth ({event['kind']})."
+    return f"{body_name(event)} {nearest} the Earth{figure}"
 
 
 def _hides(event: Event) -> bool:
@@ -240,29 +240,22 @@ def _hides(event: Event) -> bool:
 
 def _occultation(event: Event) -> str:
     if _hides(event):
-        return f"{_name(event)} passes in front of {label(event['other'])}"
-    return f"{_pair(event)}: one passes in front of the other"
+        return f"{body_name(event)} passes in front of {label(event['other'])}"
+    return f"{pair_names(event)}: one passes in front of the other"
 
 
-def _gathered(event: Event) -> str:
-    names = [label(name) for name in event["detail"].split("+")]
-    return f"{', '.join(names[:-1])} and {names[-1]}" if len(names) > 1 else names[0]
+def gathered_names(event: Event) -> str:
+    """Return the bodies of a gathering as people list them."""
+    return listed(tuple(label(body) for body in event["detail"].split("+")))
 
 
 def _gathering(event: Event) -> str:
-    return f"{_gathered(event)} within {_short_angle(event['separation_deg'])}"
-
-
-def _constellation_entry_defined(event: Event) -> str:
-    left = f" from {full_name(event['detail'])}" if event["detail"] else ""
-    return (
-        f"{_name(event)} crosses a boundary of the constellations{left}, as the IAU drew them. "
-        "Constellations are not the signs of the zodiac."
-    )
+    return f"{gathered_names(event)} within {_short_angle(event['separation_deg'])}"
 
 
 def _node(event: Event) -> str:
-    return f"{_name(event)} crosses the ecliptic {'northward' if event['detail'] == 'ascending' else 'southward'}"
+    way = "northward" if event["detail"] == "ascending" else "southward"
+    return f"{body_name(event)} crosses the ecliptic {way}"
 
 
 def _season(event: Event) -> str:
@@ -270,87 +263,40 @@ def _season(event: Event) -> str:
     return f"{month.capitalize()} {turn}"
 
 
-def _season_defined(event: Event) -> str:
-    degrees = {"equinox_march": 0, "solstice_june": 90, "equinox_september": 180, "solstice_december": 270}
-    return f"The Sun's apparent ecliptic longitude of date is {degrees[event['detail']]} degrees."
-
-
 def _phase(event: Event) -> str:
     word = event["detail"].replace("_", " ").capitalize()
     return f"{word} Moon" if event["detail"] in ("new", "full") else word
 
 
-def _phase_defined(event: Event) -> str:
-    degrees = {"new": 0, "first_quarter": 90, "full": 180, "last_quarter": 270}[event["detail"]]
-    return f"The Moon's apparent ecliptic longitude of date is {degrees} degrees ahead of the Sun's."
-
-
-def _always(text: str) -> Callable[[Event], str]:
+def _filled(text: str) -> Callable[[Event], str]:
     """Return a writer whose text needs only the names."""
 
     def write(event: Event) -> str:
         detail = (event["detail"] or "").capitalize()
-        return text.format(body=_name(event), detail=detail, side=_side(event), event=event)
+        return text.format(body=body_name(event), detail=detail, side=_side(event), event=event)
 
     return write
 
 
 _SUMMARIES: Final[dict[Kind, Callable[[Event], str]]] = {
     Kind.STATION: _station,
-    Kind.OPPOSITION: _always("{body} at opposition to the Sun"),
+    Kind.OPPOSITION: _filled("{body} at opposition to the Sun"),
     Kind.SOLAR_CONJUNCTION: _solar_conjunction,
-    Kind.QUADRATURE: _always("{body} at {side} quadrature"),
-    Kind.GREATEST_ELONGATION: lambda e: f"{_name(e)} at greatest {_side(e)} elongation, {_short_angle(e['elongation_deg'])}",
+    Kind.QUADRATURE: _filled("{body} at {side} quadrature"),
+    Kind.GREATEST_ELONGATION: _greatest_elongation,
     Kind.PERIGEE: _distance_extremum,
     Kind.APOGEE: _distance_extremum,
-    Kind.PERIHELION: _always("{body} at perihelion, nearest to the Sun"),
-    Kind.APHELION: _always("{body} at aphelion, farthest from the Sun"),
-    Kind.GREATEST_BRILLIANCY: lambda e: f"{_name(e)} at greatest brilliancy, {_magnitude(e)}",
+    Kind.PERIHELION: _filled("{body} at perihelion, nearest to the Sun"),
+    Kind.APHELION: _filled("{body} at aphelion, farthest from the Sun"),
+    Kind.GREATEST_BRILLIANCY: lambda e: f"{body_name(e)} at greatest brilliancy, {_magnitude(e)}",
     Kind.CONJUNCTION: _conjunction,
-    Kind.APPULSE: lambda e: f"{_pair(e)} closest, {_apart(e)}",
+    Kind.APPULSE: lambda e: f"{pair_names(e)} closest, {_apart(e)}",
     Kind.OCCULTATION: _occultation,
-    Kind.TRANSIT: _always("{body} crosses the Sun's disc (transit)"),
+    Kind.TRANSIT: _filled("{body} crosses the Sun's disc (transit)"),
     Kind.GATHERING: _gathering,
-    Kind.CONSTELLATION_ENTRY: lambda e: f"{_name(e)} enters {full_name(e['constellation'])}",
+    Kind.CONSTELLATION_ENTRY: lambda e: f"{body_name(e)} enters {full_name(e['constellation'])}",
     Kind.NODE: _node,
     Kind.SEASON_POINT: _season,
-    Kind.RING_PLANE_CROSSING: _always("{body}'s ring plane passes through the {detail}"),
+    Kind.RING_PLANE_CROSSING: _filled("{body}'s ring plane passes through the {detail}"),
     Kind.MOON_PHASE: _phase,
-}
-
-_DEFINITIONS: Final[dict[Kind, Callable[[Event], str]]] = {
-    Kind.STATION: _station_defined,
-    Kind.OPPOSITION: _always(
-        "Apparent ecliptic longitudes of {body} and the Sun differ by 180 degrees. Neither the day of least "
-        "distance nor exactly that of greatest brightness."
-    ),
-    Kind.SOLAR_CONJUNCTION: _always("{body} and the Sun have equal apparent ecliptic longitude of date."),
-    Kind.QUADRATURE: _always("{body} is 90 degrees from the Sun in ecliptic longitude of date, on its {side} side."),
-    Kind.GREATEST_ELONGATION: _greatest_elongation_defined,
-    Kind.PERIGEE: _distance_extremum_defined,
-    Kind.APOGEE: _distance_extremum_defined,
-    Kind.PERIHELION: _always("Least distance of {body} from the Sun on this orbit."),
-    Kind.APHELION: _always("Largest distance of {body} from the Sun on this orbit."),
-    Kind.GREATEST_BRILLIANCY: _always(
-        "Brightest between greatest elongation and inferior conjunction, by a model of its phases. The "
-        "brightness stays within a few hundredths of a magnitude for two weeks."
-    ),
-    Kind.CONJUNCTION: _conjunction_defined,
-    Kind.APPULSE: _appulse_defined,
-    Kind.OCCULTATION: _always(
-        "Least separation while the two discs overlap as seen from the Earth's centre. From a place on the "
-        "Earth it may be seen at another time, or not at all."
-    ),
-    Kind.TRANSIT: _always(
-        "Least separation of {body} from the middle of the Sun's disc, as seen from the Earth's centre. From a "
-        "place on the Earth the contacts differ by minutes."
-    ),
-    Kind.GATHERING: lambda e: f"Moment when the circle that holds {_gathered(e)} is smallest.",
-    Kind.CONSTELLATION_ENTRY: _constellation_entry_defined,
-    Kind.NODE: _always("Apparent ecliptic latitude of date of {body} is zero ({event[detail]} node)."),
-    Kind.SEASON_POINT: _season_defined,
-    Kind.RING_PLANE_CROSSING: _always(
-        "The plane of the rings of {body} passes through the {detail}: the rings are edge-on or unlit."
-    ),
-    Kind.MOON_PHASE: _phase_defined,
 }

@@ -1,0 +1,272 @@
+"""Event tables as iCalendar files (RFC 5545 and RFC 7986).
+
+Every entry stands for an instant in UTC. Calendar programs show an entry without an end as they please, some
+as an hour, so each lasts a nominal quarter of an hour and says so. The same table gives the same octets.
+"""
+
+from __future__ import annotations
+
+import datetime as dt
+from collections.abc import Iterable
+from dataclasses import dataclass
+from typing import Final
+
+import polars as pl
+from icalendar import Alarm, Calendar, Event, vDuration, vText
+
+from wanderers import __version__
+from wanderers.ephemeris.bodies import Body
+from wanderers.ephemeris.kernels import Kernel
+from wanderers.errors import SpanError
+from wanderers.events.kinds import Kind
+from wanderers.report import words
+from wanderers.report.calendar_entries import PROVENANCE, UID_ENDING, Entry, escaped, in_order, read_entry
+from wanderers.report.calendar_update import PRODID, Change, Span, merged, read_calendar
+from wanderers.report.definitions import definition
+from wanderers.report.tables import counted, label
+
+FIRST_STAMP: Final = dt.datetime(2000, 1, 1, 12, tzinfo=dt.UTC)
+"""DTSTAMP of every entry that was never changed: a constant, so that equal tables give equal files."""
+NOMINAL_LENGTH: Final = dt.timedelta(minutes=15)
+REFRESH: Final = dt.timedelta(days=1)
+"""How often subscribers may look for a new issue: a hint."""
+CHECKSUM_DIGITS: Final = 12
+MANY_EVENTS: Final = 1000
+"""Entries in one file above which calendar programs are known to give up. Common practice, no source."""
+WIDELY_SHOWN_YEARS: Final = (1970, 2100)
+"""Outside them many calendar programs fail. Common practice, no source."""
+POSSIBLE_YEARS: Final = (1, 9999)
+"""RFC 5545, 3.3.4: a year has four digits; year 0 is none of the calendar's."""
+PARTS: Final = ("body", "kind", "year")
+"""What a calendar can be split by."""
+
+
+@dataclass(frozen=True, slots=True)
+class Style:
+    """How a calendar is made up.
+
+    Attributes:
+        name: its title.
+        kernel: what its events were computed from.
+        alarms_minutes: how long before each event an alarm is shown, as many as wanted.
+    """
+
+    name: str
+    kernel: Kernel
+    alarms_minutes: tuple[int, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Issue:
+    """A calendar file, and what changed in it since the previous issue."""
+
+    content: bytes
+    changes: list[Change]
+
+
+class _Text(vText):
+    """Text that is escaped exactly: the library turns a backslash before N into a line end."""
+
+    def to_ical(self) -> bytes:
+        """Return the raw value."""
+        return escaped(str(self)).encode()
+
+
+def calendar_bytes(
+    events: pl.DataFrame, *, name: str, kernel: Kernel, previous: bytes | None = None
+) -> bytes:
+    """Return an event table as an iCalendar file.
+
+    Args:
+        events: columns of ``schema.EVENT_COLUMNS``.
+        name: title of the calendar.
+        kernel: what the events were computed from.
+        previous: an earlier issue to bring up to date: see ``reissued``. Published entries between the first
+            and the last of the events that are no longer among them are cancelled.
+
+    Raises:
+        SpanError: an event outside the years 1 to 9999.
+        CalendarFileError: ``previous`` is no calendar of this program.
+    """
+    style = Style(name, kernel)
+    if previous is None:
+        return issued(events, style)
+    return reissued(events, style, previous, span_of(events)).content
+
+
+def issued(events: pl.DataFrame, style: Style) -> bytes:
+    """Return a calendar of its first issue."""
+    return _file(style.name, in_order(entries(events, style)))
+
+
+def reissued(
+    events: pl.DataFrame,
+    style: Style,
+    previous: bytes,
+    span: Span,
+    *,
+    stamp: dt.datetime | None = None,
+    source: str = "the previous calendar",
+) -> Issue:
+    """Return the next issue of a calendar; where nothing changed, the same octets.
+
+    Args:
+        events: what holds now, all of it inside the span.
+        style: an empty name keeps the published one.
+        previous: the last issue.
+        span: in it, what is no longer among the events is cancelled.
+        stamp: instant of this issue; None takes a second after the last one.
+        source: what messages call the previous calendar.
+
+    Raises:
+        SpanError: an event outside the years 1 to 9999.
+        CalendarFileError: ``previous`` is no calendar of this program.
+    """
+    published = read_calendar(previous, source)
+    now = merged(published, entries(events, style), span, stamp)
+    return Issue(_file(style.name or published.name, now.entries), now.changes)
+
+
+def entries(events: pl.DataFrame, style: Style) -> list[Entry]:
+    """Return the entry of every event, in the table's order.
+
+    Raises:
+        SpanError: an event outside the years 1 to 9999.
+    """
+    require_possible_years(events["utc"])
+    return [_entry(event, style) for event in events.iter_rows(named=True)]
+
+
+def require_possible_years(utc: Iterable[str]) -> None:
+    """Make sure that instants can be written in a calendar.
+
+    Raises:
+        SpanError: one lies outside the years 1 to 9999.
+    """
+    for instant in utc:
+        if not instant[:1].isdigit() or instant.startswith("0000"):
+            raise SpanError(
+                f"{instant.partition('T')[0]} cannot stand in a calendar, which holds the years 0001 to 9999 "
+                "only: choose other dates, or write a table with wanderers almanac --format csv"
+            )
+
+
+def warnings_about(events: pl.DataFrame) -> list[str]:
+    """Return what subscribers may meet with, one line each."""
+    lines = []
+    years = events["utc"].str.slice(0, 4).cast(pl.Int64)
+    first, last = WIDELY_SHOWN_YEARS
+    outside = int(((years < first) | (years > last)).sum())
+    if outside:
+        lines.append(
+            f"{counted(outside, 'event')} outside the years {first} to {last}, where many calendar programs "
+            "fail: a table (wanderers almanac --format csv) is safer"
+        )
+    if events.height > MANY_EVENTS:
+        lines.append(
+            f"{events.height} events in one calendar: above {MANY_EVENTS} many programs fail to import it; "
+            "use --split year, or fewer kinds or bodies"
+        )
+    if events.is_empty():
+        lines.append("no event was found: the calendar is empty, and some programs refuse it")
+    return lines
+
+
+def split(events: pl.DataFrame, part: str) -> dict[str, tuple[str, pl.DataFrame]]:
+    """Cut a table up so that each event lies in exactly one part.
+
+    Args:
+        events: an event table.
+        part: one of PARTS; ``body`` is the first body of a pair.
+
+    Returns:
+        By the stem of a file name: what a title calls the part, and its events. Ordered as bodies, kinds and
+        years are.
+    """
+    key = events["utc"].str.slice(0, 4) if part == "year" else events[part]
+    orders: dict[str, list[str]] = {"body": list(Body), "kind": list(Kind)}
+    order = orders.get(part) or key.unique().sort().to_list()
+    found = {str(name): events.filter(key == str(name)) for name in order}
+    return {name: (part_title(name), table) for name, table in found.items() if not table.is_empty()}
+
+
+def part_title(name: str) -> str:
+    """Return what a title calls a part."""
+    return label(name.replace("_", " "))
+
+
+def span_of(events: pl.DataFrame) -> Span:
+    """Return the span from the first day to the last of a table, whole days; empty for an empty table."""
+    if events.is_empty():
+        return FIRST_STAMP, FIRST_STAMP
+    require_possible_years(events["utc"])
+    first, last = (dt.datetime.fromisoformat(day[:10]).replace(tzinfo=dt.UTC) for day in _ends(events["utc"]))
+    # The last day of the year 9999 has no next.
+    return first, last + min(dt.timedelta(days=1), dt.datetime.max.replace(tzinfo=dt.UTC) - last)
+
+
+def _ends(utc: pl.Series) -> tuple[str, str]:
+    return str(utc.min()), str(utc.max())
+
+
+def _entry(event: words.Event, style: Style) -> Entry:
+    """Return the entry of one event."""
+    shown = words.minute(event["utc"])
+    component = Event()
+    component.add("UID", f"{event['event_id']}{UID_ENDING}")
+    component.add("DTSTAMP", FIRST_STAMP)
+    component.add("SEQUENCE", 0)
+    component.add("DTSTART", dt.datetime.fromisoformat(f"{shown}:00+00:00"))
+    component.add("DURATION", NOMINAL_LENGTH)
+    component.add("STATUS", "CONFIRMED")
+    component.add("TRANSP", "TRANSPARENT")
+    component.add("CATEGORIES", _Text(words.category(event)))
+    component.add("SUMMARY", _Text(words.summary(event)))
+    component.add("DESCRIPTION", _Text("\n".join(_description(event, shown, style.kernel))))
+    for minutes in style.alarms_minutes:
+        component.add_component(_alarm(words.summary(event), minutes))
+    return read_entry(component.to_ical(sorted=False))
+
+
+def _description(event: words.Event, shown: str, kernel: Kernel) -> list[str]:
+    """Return the lines of an entry's text."""
+    doubt = words.uncertainty(event)
+    return [
+        definition(event),
+        *words.figures(event),
+        f"Time: {shown} UTC, the same instant for the whole Earth, seen from the Earth's centre.",
+        *([_held_back(shown)] if words.is_held_back(event["utc"]) else []),
+        *words.contacts(event),
+        *([doubt] if doubt else []),
+        *words.cautions(event),
+        f"Lasts {NOMINAL_LENGTH.seconds // 60} minutes here only to be shown; the event is the beginning.",
+        f"{PROVENANCE}{kernel.name} (SHA-256 {kernel.sha256[:CHECKSUM_DIGITS]}) by wanderers {__version__}.",
+    ]
+
+
+def _held_back(shown: str) -> str:
+    return f"Less than half a minute before midnight: given as {shown[11:]} so that the date stays right."
+
+
+def _alarm(text: str, minutes: int) -> Alarm:
+    """Return an alarm that is shown; other actions are not for a public calendar. RFC 5545, 3.6.6."""
+    alarm = Alarm()
+    alarm.add("ACTION", "DISPLAY")
+    alarm.add("TRIGGER", dt.timedelta(minutes=-minutes))
+    alarm.add("DESCRIPTION", _Text(text))
+    return alarm
+
+
+def _file(name: str, ordered: Iterable[Entry]) -> bytes:
+    """Return a calendar file around its entries."""
+    title = _Text(" ".join(name.split()))
+    calendar = Calendar()
+    calendar.add("PRODID", _Text(PRODID))
+    calendar.add("VERSION", "2.0")
+    calendar.add("CALSCALE", "GREGORIAN")
+    calendar.add("NAME", title)
+    calendar.add("X-WR-CALNAME", title)
+    calendar.add("REFRESH-INTERVAL", vDuration(REFRESH), parameters={"VALUE": "DURATION"})
+    calendar.add("X-PUBLISHED-TTL", vDuration(REFRESH))
+    head, end, after = calendar.to_ical(sorted=False).partition(b"END:VCALENDAR")
+    return b"".join([head, *(entry.octets for entry in ordered), end, after])

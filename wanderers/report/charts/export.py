@@ -1,0 +1,60 @@
+"""Charts as files: PNG, SVG and PDF that come out the same, byte for byte, whenever they are made."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from pathlib import Path
+from typing import Any, BinaryIO, Final, Literal
+
+from matplotlib.figure import Figure
+
+from wanderers.files import write_atomically
+from wanderers.report.charts.style import DPI, LIGHT, Style, in_force
+
+Format = Literal["png", "svg", "pdf"]
+
+_OPTIONS: Final[dict[Format, dict[str, Any]]] = {
+    "png": {"dpi": DPI, "metadata": {"Software": None}},
+    "svg": {"metadata": {"Date": None, "Creator": None}},
+    "pdf": {"metadata": {"CreationDate": None, "Creator": None, "Producer": None}},
+}
+"""No file tells when or with which version of a library it was made."""
+
+
+def save(
+    figure: Figure,
+    stem: str,
+    folder: Path,
+    *,
+    formats: Sequence[Format] = ("png", "svg"),
+    style: Style = LIGHT,
+) -> dict[str, Path]:
+    """Write a chart under one name in several formats, each complete or not at all.
+
+    Args:
+        figure: the chart.
+        stem: name of the files without their ending.
+        folder: where to; it exists.
+        formats: any of png (1600 dots wide), svg (text stays text) and pdf (fonts embedded).
+        style: what the chart was drawn with.
+
+    Returns:
+        the paths by format.
+
+    Raises:
+        OSError: a file cannot be written.
+    """
+    paths = {kind: folder / f"{stem}.{kind}" for kind in formats}
+    with in_force(style):
+        for kind, path in paths.items():
+            write_atomically(path, _writer(figure, kind))
+    return {str(kind): path for kind, path in paths.items()}
+
+
+def _writer(figure: Figure, kind: Format) -> Callable[[BinaryIO], None]:
+    """Return what writes a figure into an open file."""
+
+    def write(file: BinaryIO) -> None:
+        figure.savefig(file, format=kind, facecolor=figure.get_facecolor(), **_OPTIONS[kind])
+
+    return write

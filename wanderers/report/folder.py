@@ -1,0 +1,190 @@
+"""The report folder: everything is built in a hidden folder beside it and renamed into place at the end."""
+
+from __future__ import annotations
+
+import json
+import os
+import secrets
+import shutil
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any, Final
+
+import polars as pl
+
+from wanderers import __version__
+from wanderers.errors import OutputError
+from wanderers.files import reported_as_output_error, require_writable
+from wanderers.report import calendars, facts
+from wanderers.report.contents import Contents, Progress
+from wanderers.report.page import page_of, span_texts
+from wanderers.report.page_data import packed, table_data
+from wanderers.report.pictures import Picture, draw
+from wanderers.report.render import rendered
+
+PAGE: Final = "index.html"
+MANIFEST: Final = "report.json"
+"""Lists the files of a report; by it a folder is known as one."""
+MADE_BY: Final = "wanderers report"
+CALENDAR: Final = "events.ics"
+LITTER: Final = frozenset({".DS_Store", "Thumbs.db", "desktop.ini"})
+"""Files that desktops leave in any folder they show."""
+KEPT_OF_NAME: Final = 40
+
+
+def require_replaceable(folder: Path) -> None:
+    """Make sure, before long work starts, that a report can be put there.
+
+    Raises:
+        OutputError: the place cannot be written, or holds anything that is not a report of this program.
+    """
+    require_writable(folder, folder=True)
+    require_writable(folder.parent, folder=True)
+    with reported_as_output_error(folder):
+        if folder.is_dir():
+            _require_report(folder)
+
+
+def _require_report(folder: Path) -> None:
+    """Refuse to replace a folder that holds what no report put there."""
+    present = {path.relative_to(folder).as_posix() for path in folder.rglob("*") if not path.is_dir()}
+    foreign = sorted(name for name in present - _listed(folder) if Path(name).name not in LITTER)
+    if foreign:
+        some = ", ".join(foreign[:3]) + (f" and {len(foreign) - 3} more" if len(foreign) > 3 else "")
+        raise OutputError(
+            f"{folder} holds files that are not of a report ({some}): move them away, or choose another --out"
+        )
+
+
+def _listed(folder: Path) -> set[str]:
+    """Return the files that a report's own list names; none where there is no such list."""
+    try:
+        manifest = json.loads((folder / MANIFEST).read_text(encoding="utf-8"))
+    except (OSError, ValueError):
+        return set()
+    if not isinstance(manifest, dict) or manifest.get("made_by") != MADE_BY:
+        return set()
+    return {*map(str, manifest.get("files", ())), MANIFEST}
+
+
+def write_report(contents: Contents, folder: Path, progress: Progress = lambda words: None) -> None:
+    """Write the report folder of a span; an older report there is replaced as a whole.
+
+    Args:
+        contents: its tables.
+        folder: where it shall stand; folders above it are made.
+        progress: told what is being done.
+
+    Raises:
+        OutputError: it cannot be written, or is in the way; nothing half-written stays.
+    """
+    require_replaceable(folder)
+    final = Path(os.path.realpath(folder))
+    with reported_as_output_error(folder), _built_beside(final) as building:
+        tables = _write_tables(contents, building)
+        calendar = _write_calendar(contents, building)
+        progress("drawing")
+        pictures = draw(contents, building / "pictures", progress)
+        progress("composing the page")
+        files = (*tables, (CALENDAR, "the events as a calendar, iCalendar (RFC 5545)"))
+        page = page_of(contents, pictures, final.name, files)
+        html = rendered(page, table_data(contents.events), packed(calendar))
+        (building / PAGE).write_text(html, encoding="utf-8")
+        _write_manifest(contents, building)
+
+
+@contextmanager
+def _built_beside(final: Path) -> Iterator[Path]:
+    """Give a fresh hidden folder that takes the final name when all went well, and vanishes otherwise."""
+    final.parent.mkdir(parents=True, exist_ok=True)
+    building = _hidden(final)
+    building.mkdir()
+    try:
+        yield building
+        _put_in_place(building, final)
+    finally:
+        shutil.rmtree(building, ignore_errors=True)
+
+
+def _put_in_place(building: Path, final: Path) -> None:
+    """Rename a finished folder; what stood there goes only after that, or comes back."""
+    if not final.exists():
+        building.rename(final)
+        return
+    _require_report(final)  # something may have been put there meanwhile
+    older = _hidden(final)
+    final.rename(older)
+    try:
+        building.rename(final)
+    except BaseException:
+        older.rename(final)
+        raise
+    shutil.rmtree(older, ignore_errors=True)
+
+
+def _hidden(final: Path) -> Path:
+    return final.parent / f".{final.name[:KEPT_OF_NAME]}.{secrets.token_hex(8)}.tmp"
+
+
+@dataclass(frozen=True, slots=True)
+class TableFile:
+    """A table to be written: stem of its file, what it holds, its rows."""
+
+    stem: str
+    holds: str
+    table: pl.DataFrame
+
+
+def _write_tables(contents: Contents, folder: Path) -> tuple[tuple[str, str], ...]:
+    """Write every table as CSV and Parquet; return the files' names and what they hold."""
+    lead = contents.request.frames[0].value
+    tables = (
+        TableFile("events", "every event of the span, in full precision", contents.events),
+        TableFile("seasons", "the retrograde seasons that reach into the span", contents.seasons),
+        *(
+            TableFile(f"track_{body.value}", f"positions of {body.label} at regular steps, frame {lead}", track)
+            for body, track in contents.tracks.items()
+        ),
+    )
+    for one in tables:
+        one.table.write_csv(folder / f"{one.stem}.csv")
+        one.table.write_parquet(folder / f"{one.stem}.parquet")
+    return tuple((f"{one.stem}.{kind}", one.holds) for one in tables for kind in ("csv", "parquet"))
+
+
+def _write_calendar(contents: Contents, folder: Path) -> bytes:
+    """Write the calendar of those events whose years a calendar can hold."""
+    events = contents.events.filter(pl.col("utc").str.contains(r"^\d{4}-") & ~pl.col("utc").str.starts_with("0000"))
+    first, last = span_texts(contents.request)
+    content = calendars.calendar_bytes(events, name=f"Wandering planets {first} to {last}", kernel=contents.kernel)
+    (folder / CALENDAR).write_bytes(content)
+    return content
+
+
+def _write_manifest(contents: Contents, folder: Path) -> None:
+    """Write the list of files, with what they were made from."""
+    request, kernel = contents.request, contents.kernel
+    first, last = span_texts(request)
+    files = sorted(path.relative_to(folder).as_posix() for path in folder.rglob("*") if path.is_file())
+    manifest: dict[str, Any] = {
+        "made_by": MADE_BY,
+        "version": __version__,
+        "from": first,
+        "to": last,
+        "scale": request.scale,
+        "bodies": request.bodies,
+        "kinds": request.kinds,
+        "frames": request.frames,
+        "kernel": kernel.name,
+        "kernel_sha256": kernel.sha256,
+        "files": files,
+    }
+    (folder / MANIFEST).write_text(json.dumps(manifest, indent=1) + "\n", encoding="utf-8")
+
+
+def stem_of(contents_request_texts: tuple[str, str], extras: tuple[str, ...] = ()) -> str:
+    """Return a readable folder name made of the span and of what else was chosen."""
+    first, last = (text.replace(":", "") for text in contents_request_texts)
+    return "_".join((f"{first}_to_{last}", *extras))

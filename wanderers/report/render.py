@@ -1,0 +1,71 @@
+"""A page model printed as one HTML file that holds everything it needs and asks nothing of a network."""
+
+from __future__ import annotations
+
+import base64
+import hashlib
+from dataclasses import fields
+from importlib import resources
+from typing import Any, Final
+
+from jinja2 import Environment, PackageLoader, StrictUndefined
+from markupsafe import Markup
+
+from wanderers.report.page import Page
+
+HEADINGS: Final = (
+    ("time", "Time (UTC)"),
+    ("what", "Event"),
+    ("constellation", "In"),
+    ("separation", "Separation"),
+    ("elongation", "From the Sun"),
+    ("magnitude", "Mag"),
+    ("distance", "Distance, au"),
+    ("diameter", "Size"),
+    ("note", "Note"),
+)
+"""Columns of the page's event table: what the page's program calls them, and their titles."""
+
+
+def rendered(page: Page, data: dict[str, Any], calendar: str) -> str:
+    """Return the page as HTML.
+
+    Args:
+        page: the model.
+        data: the event table as ``page_data.table_data`` gives it.
+        calendar: the calendar file as ``page_data.packed`` gives it.
+    """
+    program = f"\n{_packaged('page.js')}"
+    template = _environment().get_template("page.html.j2")
+    return template.render(
+        {name.name: getattr(page, name.name) for name in fields(page)},
+        headings=HEADINGS,
+        data=data | {"count": page.event_count, "span": page.span, "stem": page.stem},
+        calendar=calendar,
+        style=Markup(_packaged("page.css")),
+        program=Markup(program),
+        program_hash=f"sha256-{base64.b64encode(hashlib.sha256(program.encode()).digest()).decode()}",
+    )
+
+
+def _environment() -> Environment:
+    """Return the settings of the template; whatever it is given is escaped."""
+    environment = Environment(
+        loader=PackageLoader("wanderers.report"),
+        autoescape=True,
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+        keep_trailing_newline=True,
+    )
+    environment.policies["json.dumps_kwargs"] = {
+        "separators": (",", ":"),
+        "ensure_ascii": False,
+        "allow_nan": False,
+    }
+    return environment
+
+
+def _packaged(name: str) -> str:
+    """Return a file that lies beside the template."""
+    return resources.files("wanderers.report").joinpath("templates", name).read_text(encoding="utf-8")

@@ -1,0 +1,386 @@
+"use strict";
+// The report page's own program: filters, sorts and saves the event table, changes the look. It keeps what
+// was chosen in the address after "#", so that an address, once copied, shows the same selection again.
+// It reads the tables embedded in the page and asks nothing of any network.
+
+const ROWS_PER_SLICE = 100;
+const ROWS_ON_PAPER = 3000;
+const MANY_FOR_A_CALENDAR = 1000;
+const FIELDS = ["from", "to", "text", "separation", "elongation", "magnitude"];
+
+const data = JSON.parse(document.getElementById("data").textContent);
+const find = (selector) => document.querySelector(selector);
+const findAll = (selector) => [...document.querySelectorAll(selector)];
+
+// ---- The table: columns of values; a row is a number -------------------------------------------------
+
+/** Returns a function from row number to value for a column in either of its forms. */
+function reader(column) {
+  return Array.isArray(column) ? (row) => column[row] : (row) => column.words[column.at[row]];
+}
+
+const names = Object.keys(data.columns);
+const cell = Object.fromEntries(names.map((name) => [name, reader(data.columns[name])]));
+const what = reader(data.words.what);
+const note = reader(data.words.note);
+const constellation = (row) => data.constellations[cell.constellation(row)] ?? "";
+const rowCount = data.count;
+const allRows = Array.from({ length: rowCount }, (_, row) => row);
+
+/** Returns milliseconds of a date such as 2027, 2027-03, -0500-01-01 or 2027-03-15T12:00:00Z; NaN if it is none. */
+function instant(text) {
+  const form = /^([+-]?\d{4,6})(?:-(\d\d)(?:-(\d\d)(?:[T ](\d\d):(\d\d)(?::(\d\d(?:\.\d+)?))?Z?)?)?)?$/;
+  const parts = form.exec(text.trim().replace("\u2212", "-"));
+  if (!parts) return NaN;
+  const [year, month, day, hour, minute, second] = parts.slice(1).map((part, i) => Number(part ?? (i === 1 || i === 2 ? 1 : 0)));
+  const date = new Date(0);
+  date.setUTCFullYear(year, month - 1, day);
+  if (date.getUTCMonth() !== month - 1 || date.getUTCDate() !== day || hour > 23 || minute > 59) return NaN;
+  return date.getTime() + ((hour * 60 + minute) * 60 + second) * 1000;
+}
+
+const time = allRows.map((row) => instant(cell.utc(row)));
+const searched = allRows.map((row) =>
+  [what(row), constellation(row), cell.kind(row), cell.detail(row), cell.utc(row), note(row)].join(" ").toLowerCase());
+
+// ---- What was chosen ---------------------------------------------------------------------------------
+
+const state = { body: new Set(), kind: new Set(), sort: "time", falling: false, slice: 0, look: "auto", at: "" };
+for (const field of FIELDS) state[field] = "";
+let selection = allRows;
+
+const sortKeys = {
+  time: (row) => time[row],
+  what,
+  constellation,
+  separation: cell.separation_deg,
+  elongation: cell.elongation_deg,
+  magnitude: cell.magnitude,
+  distance: cell.distance_au,
+  diameter: cell.diameter_arcsec,
+};
+
+/** Returns the filters in force, each with the words that name it and a test of a row. */
+function filters() {
+  const limit = (field, column, fits, words) => {
+    const bound = Number(state[field].replace(",", ".").replace("\u2212", "-"));
+    if (state[field] === "" || Number.isNaN(bound)) return null;
+    return { words: `${words} ${state[field]}`, test: (row) => column(row) !== null && fits(column(row), bound) };
+  };
+  const date = (field, fits, words) => {
+    const bound = instant(state[field]);
+    return Number.isNaN(bound) ? null : { words: `${words} ${state[field]}`, test: (row) => fits(time[row], bound) };
+  };
+  const ticked = (field, test) =>
+    state[field].size === 0 ? null : { words: `${field} ${[...state[field]].join(" or ").replaceAll("_", " ")}`, test };
+  const sought = state.text.toLowerCase().split(/\s+/).filter(Boolean);
+  return [
+    ticked("body", (row) => bodiesOf(row).some((name) => state.body.has(name))),
+    ticked("kind", (row) => state.kind.has(cell.kind(row))),
+    date("from", (at, bound) => at >= bound, "from"),
+    date("to", (at, bound) => at < bound, "before"),
+    sought.length === 0 ? null : { words: `containing “${state.text}”`, test: (row) => sought.every((word) => searched[row].includes(word)) },
+    limit("separation", cell.separation_deg, (value, bound) => value <= bound, "separation at most"),
+    limit("elongation", cell.elongation_deg, (value, bound) => value >= bound, "degrees from the Sun at least"),
+    limit("magnitude", cell.magnitude, (value, bound) => value <= bound, "magnitude at most"),
+  ].filter(Boolean);
+}
+
+/** Returns the bodies of a row; a gathering names them in its detail. */
+function bodiesOf(row) {
+  const gathered = cell.kind(row) === "gathering" ? cell.detail(row).split("+") : [];
+  return [cell.body(row), cell.other(row), ...gathered];
+}
+
+/** Applies the filters one after the other, and tells how many rows each of them left out. */
+function select() {
+  const removed = [];
+  selection = allRows;
+  for (const filter of filters()) {
+    const before = selection.length;
+    selection = selection.filter(filter.test);
+    removed.push(`${filter.words}: ${before - selection.length}`);
+  }
+  selection = sorted(selection);
+  state.slice = Math.max(0, Math.min(state.slice, Math.ceil(selection.length / ROWS_PER_SLICE) - 1));
+  find("#removed").textContent = removed.length ? `Left out by ${removed.join("; ")}.` : "";
+}
+
+/** Returns rows in the order chosen; rows without a value come last, equal ones in order of time. */
+function sorted(rows) {
+  const key = sortKeys[state.sort];
+  const way = state.falling ? -1 : 1;
+  const known = rows.filter((row) => key(row) !== null && key(row) !== "");
+  const unknown = rows.filter((row) => key(row) === null || key(row) === "");
+  const compare = (a, b) => (key(a) < key(b) ? -way : key(a) > key(b) ? way : a - b);
+  return [...known.sort(compare), ...unknown];
+}
+
+// ---- Printing rows -----------------------------------------------------------------------------------
+
+const fixed = (value, decimals) => (value === null ? "" : value.toFixed(decimals).replace("-", "\u2212"));
+
+/** Prints an angle: degrees, below one arcminutes, below one of those arcseconds. */
+function angle(degrees) {
+  if (degrees === null) return "";
+  if (degrees >= 0.9995) return `${degrees.toFixed(1)}°`;
+  return degrees * 60 >= 0.9995 ? `${(degrees * 60).toFixed(0)}′` : `${(degrees * 3600).toFixed(0)}″`;
+}
+
+/** Prints an instant to the minute, rounded but never into another day. */
+function minute(utc) {
+  const [day, clock] = utc.replace("Z", "").split("T");
+  const [hours, minutes, seconds] = clock.split(":").map(Number);
+  const whole = Math.min(hours * 60 + minutes + (seconds >= 30 ? 1 : 0), 24 * 60 - 1);
+  return `${day} ${String(Math.floor(whole / 60)).padStart(2, "0")}:${String(whole % 60).padStart(2, "0")}`;
+}
+
+const printed = [
+  { style: "when", text: (row) => minute(cell.utc(row)) },
+  { style: "what", text: what },
+  { label: "In", text: constellation },
+  { style: "figure", label: "Separation", text: (row) => angle(cell.separation_deg(row)) },
+  { style: "figure", label: "From the Sun", text: (row) => (cell.elongation_deg(row) === null ? "" : `${cell.elongation_deg(row).toFixed(0)}°`) },
+  { style: "figure", label: "Magnitude", text: (row) => fixed(cell.magnitude(row), 1) },
+  { style: "figure", label: "Distance, au", text: (row) => fixed(cell.distance_au(row), cell.body(row) === "moon" ? 5 : 3) },
+  { style: "figure", label: "Size", text: (row) => (cell.diameter_arcsec(row) === null ? "" : `${cell.diameter_arcsec(row).toFixed(1)}″`) },
+  { style: "notes", text: note },
+];
+
+function element(tag, text, style) {
+  const made = document.createElement(tag);
+  if (text) made.textContent = text;
+  if (style) made.className = style;
+  return made;
+}
+
+/** Returns one table row. */
+function tableRow(row) {
+  const line = element("tr");
+  line.setAttribute("role", "row");
+  line.dataset.id = cell.event_id(row);
+  for (const column of printed) {
+    const text = column.text(row);
+    const box = element("td", column.style === "notes" ? "" : text, column.style);
+    box.setAttribute("role", "cell");
+    if (column.label) box.dataset.label = column.label;
+    if (column.style === "notes" && text) box.append(element("span", text, "note"));
+    line.append(box);
+  }
+  return line;
+}
+
+/** Fills the table with rows from..to of the selection. */
+function fill(from, to) {
+  const lines = document.createDocumentFragment();
+  for (const row of selection.slice(from, to)) lines.append(tableRow(row));
+  find("#table tbody").replaceChildren(lines);
+}
+
+/** Shows the slice of the selection that is turned to, and says what it is a slice of. */
+function show() {
+  const from = state.slice * ROWS_PER_SLICE;
+  const to = Math.min(from + ROWS_PER_SLICE, selection.length);
+  fill(from, to);
+  find("#count").textContent = `${selection.length} of ${rowCount} events`;
+  find("#claim").textContent = claim();
+  const place = selection.length === 0 ? "Nothing fits these filters" : `${from + 1} to ${to} of ${selection.length}`;
+  for (const box of findAll(".pager .place")) box.textContent = place;
+  for (const button of findAll(".pager button")) {
+    const back = button.dataset.go === "first" || button.dataset.go === "previous";
+    button.disabled = back ? state.slice === 0 : to >= selection.length;
+  }
+  for (const head of findAll("#table th[data-key]")) {
+    if (head.dataset.key === state.sort) head.setAttribute("aria-sort", state.falling ? "descending" : "ascending");
+    else head.removeAttribute("aria-sort");
+  }
+}
+
+/** Says, in one line with their number, under which limits the rows shown were found. */
+function claim() {
+  const limits = filters().map((filter) => filter.words);
+  return [`${selection.length} of ${rowCount} events`, data.span, "geocentric", ...limits].join(" · ");
+}
+
+// ---- The address -------------------------------------------------------------------------------------
+
+/** Writes what was chosen after "#". */
+function writeAddress() {
+  const chosen = new URLSearchParams();
+  for (const field of ["body", "kind"]) if (state[field].size) chosen.set(field, [...state[field]].join(","));
+  for (const field of FIELDS) if (state[field]) chosen.set(field, state[field]);
+  if (state.sort !== "time" || state.falling) chosen.set("sort", (state.falling ? "-" : "") + state.sort);
+  if (state.slice) chosen.set("slice", state.slice + 1);
+  if (state.look !== "auto") chosen.set("look", state.look);
+  if (state.at) chosen.set("at", state.at);
+  const text = chosen.toString().replaceAll("%2C", ",");
+  history.replaceState(null, "", text ? `#${text}` : location.pathname + location.search);
+}
+
+/** Reads what was chosen from the address; a bare "#mars" is a place on the page and chooses nothing. */
+function readAddress() {
+  const text = location.hash.slice(1);
+  const chosen = new URLSearchParams(text.includes("=") ? text : "");
+  for (const field of ["body", "kind"]) {
+    const known = new Set(findAll(`input[name="${field}"]`).map((box) => box.value));
+    state[field] = new Set((chosen.get(field) ?? "").split(",").filter((value) => known.has(value)));
+  }
+  for (const field of FIELDS) state[field] = chosen.get(field) ?? "";
+  const sort = (chosen.get("sort") ?? "").replace(/^-/, "");
+  state.sort = sort in sortKeys ? sort : "time";
+  state.falling = (chosen.get("sort") ?? "").startsWith("-");
+  state.slice = Math.max(0, (Number.parseInt(chosen.get("slice") ?? "1", 10) || 1) - 1);
+  state.look = findAll('input[name="look"]').some((box) => box.value === chosen.get("look")) ? chosen.get("look") : "auto";
+  state.at = text.includes("=") ? chosen.get("at") ?? "" : text;
+}
+
+/** Puts what was chosen into the controls. */
+function showControls() {
+  for (const field of ["body", "kind"]) for (const box of findAll(`input[name="${field}"]`)) box.checked = state[field].has(box.value);
+  for (const field of FIELDS) find(`input[name="${field}"]`).value = state[field];
+  for (const box of findAll('input[name="look"]')) box.checked = box.value === state.look;
+  document.documentElement.dataset.look = state.look;
+  markBadFields();
+}
+
+/** Marks the fields whose text is no date or number; such a field filters nothing. */
+function markBadFields() {
+  const isNumber = (text) => !Number.isNaN(Number(text.replace(",", ".").replace("\u2212", "-")));
+  for (const field of FIELDS.filter((name) => name !== "text")) {
+    const good = state[field] === "" || (field === "from" || field === "to" ? !Number.isNaN(instant(state[field])) : isNumber(state[field]));
+    find(`input[name="${field}"]`).setAttribute("aria-invalid", String(!good));
+  }
+}
+
+/** Goes to a part of the page, keyboard focus included. */
+function goTo(place) {
+  const part = document.getElementById(place);
+  if (!part) return;
+  part.scrollIntoView();
+  part.focus({ preventScroll: true });
+}
+
+/** Shows what the address asks for. */
+function follow() {
+  readAddress();
+  showControls();
+  select();
+  show();
+  goTo(state.at);
+}
+
+/** Takes over a change of filters: begins again at the first slice. */
+function refresh() {
+  state.slice = 0;
+  markBadFields();
+  select();
+  show();
+  writeAddress();
+}
+
+// ---- Saving the selection ----------------------------------------------------------------------------
+
+/** Hands a text to the browser as a file. */
+function save(text, name, type) {
+  const link = element("a");
+  link.href = URL.createObjectURL(new Blob([text], { type }));
+  link.download = name;
+  link.click();
+  setTimeout(() => URL.revokeObjectURL(link.href), 10000);
+}
+
+/** Returns the selection as CSV: the columns of events.csv, in the order shown. */
+function selectionAsCsv() {
+  const quoted = (value) => (/[",\r\n]/.test(value) ? `"${value.replaceAll('"', '""')}"` : value);
+  const line = (row) => names.map((name) => quoted(String(cell[name](row) ?? ""))).join(",");
+  return [names.join(","), ...selection.map(line), ""].join("\n");
+}
+
+/** Returns the report's whole calendar as text. */
+async function wholeCalendar() {
+  const packed = Uint8Array.from(atob(find("#calendar").textContent.trim()), (letter) => letter.charCodeAt(0));
+  return new Response(new Blob([packed]).stream().pipeThrough(new DecompressionStream("gzip"))).text();
+}
+
+/** Returns the selection as a calendar: the very entries of the report's calendar file, fewer of them. */
+async function selectionAsCalendar() {
+  const [head, ...rest] = (await wholeCalendar()).split("BEGIN:VEVENT\r\n");
+  const foot = "END:VCALENDAR\r\n";
+  const entryOf = new Map(rest.map((text) => {
+    const entry = text.replace(foot, "");
+    return [/^UID:([^@\r\n]+)/m.exec(entry.replaceAll("\r\n ", ""))[1], entry];
+  }));
+  const entries = [...selection].sort((a, b) => a - b).map((row) => entryOf.get(cell.event_id(row))).filter(Boolean);
+  return head + entries.map((entry) => `BEGIN:VEVENT\r\n${entry}`).join("") + foot;
+}
+
+async function saveCalendar() {
+  save(await selectionAsCalendar(), `${data.stem}_selection.ics`, "text/calendar");
+  if (selection.length > MANY_FOR_A_CALENDAR) {
+    find("#count").textContent = `${selection.length} events saved: many calendar programs choke on more than ${MANY_FOR_A_CALENDAR}, better narrow the filters.`;
+  }
+}
+
+// ---- Controls ----------------------------------------------------------------------------------------
+
+function listen() {
+  const form = find("form.filters");
+  form.addEventListener("submit", (event) => event.preventDefault());
+  form.addEventListener("input", (event) => {
+    const { name, value, checked, type } = event.target;
+    if (type !== "checkbox") state[name] = value.trim();
+    else if (checked) state[name].add(value);
+    else state[name].delete(value);
+    refresh();
+  });
+  find("#clear").addEventListener("click", () => {
+    for (const field of ["body", "kind"]) state[field].clear();
+    for (const field of FIELDS) state[field] = "";
+    showControls();
+    refresh();
+  });
+  find("#save-csv").addEventListener("click", () => save(selectionAsCsv(), `${data.stem}_selection.csv`, "text/csv"));
+  find("#save-ics").addEventListener("click", saveCalendar);
+  find("#table thead").addEventListener("click", sortByHeading);
+  for (const button of findAll(".pager button")) button.addEventListener("click", turnTo);
+  for (const box of findAll('input[name="look"]')) box.addEventListener("change", changeLook);
+  document.addEventListener("click", goByLink);
+  addEventListener("hashchange", follow);
+  addEventListener("beforeprint", () => fill(0, ROWS_ON_PAPER));
+  addEventListener("afterprint", show);
+}
+
+function sortByHeading(event) {
+  const head = event.target.closest("button")?.closest("th");
+  if (!head) return;
+  state.falling = state.sort === head.dataset.key && !state.falling;
+  state.sort = head.dataset.key;
+  refresh();
+}
+
+function turnTo(event) {
+  const last = Math.ceil(selection.length / ROWS_PER_SLICE) - 1;
+  state.slice = { first: 0, previous: state.slice - 1, next: state.slice + 1, last }[event.target.dataset.go];
+  show();
+  writeAddress();
+}
+
+function changeLook(event) {
+  state.look = event.target.value;
+  document.documentElement.dataset.look = state.look;
+  writeAddress();
+}
+
+/** Follows a link to a part of the page without losing the filter that the address holds. */
+function goByLink(event) {
+  const address = event.target.closest('a[href^="#"]')?.getAttribute("href") ?? "";
+  if (address.length < 2 || address.includes("=")) return;
+  event.preventDefault();
+  state.at = address.slice(1);
+  writeAddress();
+  goTo(state.at);
+}
+
+document.documentElement.dataset.program = "";
+listen();
+follow();
