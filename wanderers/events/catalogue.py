@@ -209,14 +209,14 @@ def _with_meetings(named: list[Found]) -> list[Found]:
         return named
     (appulse,) = appulses
     batches = [one.batch for one in conjunctions]
-    rounds = meetings.inner_clusters(batches, appulse.batch, [one.rounds for one in (*conjunctions, appulse)])
+    laps = [identity.encounters(batch, stars_met()) for batch in (*batches, appulse.batch)]
+    laps = meetings.inner_clusters(batches, appulse.batch, laps)
     marked = replace(appulse, batch=meetings.marked_quasi(batches, appulse.batch))
-    marked = marked.chosen(marked.batch.detail != meetings.FARTHEST)
-    near = appulse.batch.detail != meetings.FARTHEST
     met = [
-        replace(one, meeting=meetings.meetings_of(one.batch, laps))
-        for one, laps in zip((*conjunctions, marked), (*rounds[:-1], rounds[-1][near]), strict=True)
+        replace(one, meeting=meetings.meetings_of(one.batch, numbers, appulse.batch))
+        for one, numbers in zip((*conjunctions, marked), laps, strict=True)
     ]
+    met[-1] = met[-1].chosen(marked.batch.detail != meetings.FARTHEST)
     return [one for one in named if one.batch.kind not in MET] + met
 
 

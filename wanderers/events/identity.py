@@ -9,7 +9,7 @@ import numpy as np
 
 from wanderers.arrays import Floats, Ints
 from wanderers.ephemeris import vectors
-from wanderers.ephemeris.bodies import Body
+from wanderers.ephemeris.bodies import INNER, Body
 from wanderers.ephemeris.frames import ecliptic_of_j2000
 from wanderers.ephemeris.sky import FIRST_STAR
 from wanderers.ephemeris.stars import StarCatalogue
@@ -17,6 +17,7 @@ from wanderers.events import cycles
 from wanderers.events.kinds import Batch, Kind
 
 MOON: Final = Body.MOON.order
+_INNER: Final = [body.order for body in INNER]
 
 
 def round_numbers(found: Batch, catalogue: StarCatalogue) -> Ints:
@@ -93,8 +94,25 @@ def _node(found: Batch, _: StarCatalogue) -> Ints:
     return np.where(ascending, _nearest(phase), _between(phase))
 
 
+def _approach_year(found: Batch, catalogue: StarCatalogue) -> Ints:
+    """Return the number of the year in which two bodies come together, shape (n,).
+
+    Slow bodies near each other for decades approach once a year, as the Earth swings by: the year is
+    counted by synodic rounds, of the second body, or of the first where the second is a star. Its ends are
+    put where no approach is: with an inner planet, which stays by the Sun, at opposition; else at
+    conjunction with the Sun. Where the first body itself laps the second within a year, laps will do.
+    """
+    star = found.other >= FIRST_STAR
+    slower = np.where(star, found.body, found.other)
+    phase = cycles.synodic_phase(slower, found.jd)
+    inner = np.isin(found.body, _INNER)
+    years = np.where(inner, np.floor(phase), np.round(phase)).astype(np.int64)
+    laps = (found.body == MOON) | (star & inner) | np.isin(found.other, _INNER)
+    return np.where(laps, encounters(found, catalogue), years)
+
+
 def encounters(found: Batch, catalogue: StarCatalogue) -> Ints:
-    """Return the number of the encounter of two bodies, shape (n,)."""
+    """Return the number of the encounter of two bodies, counted by laps, shape (n,)."""
     return _nearest(
         cycles.encounter_phase(found.body, found.other, found.jd, _star_longitudes(catalogue, found.other))
     )
@@ -141,9 +159,9 @@ _ROUND_OF: Final[dict[Kind, Callable[[Batch, StarCatalogue], Ints]]] = {
     Kind.PERIHELION: _perihelion,
     Kind.APHELION: _aphelion,
     Kind.GREATEST_BRILLIANCY: _synodic,
-    Kind.CONJUNCTION: encounters,
-    Kind.APPULSE: encounters,
-    Kind.OCCULTATION: encounters,
+    Kind.CONJUNCTION: _approach_year,
+    Kind.APPULSE: _approach_year,
+    Kind.OCCULTATION: _approach_year,
     Kind.TRANSIT: _synodic,
     Kind.GATHERING: _day,
     Kind.CONSTELLATION_ENTRY: _constellation,

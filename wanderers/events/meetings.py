@@ -6,8 +6,8 @@ ascension, and all their least separations that fall into one lap (counted by me
 Mercury and Venus never lap each other; their conjunctions and approaches within 10 degrees are one meeting
 while no more than 45 days pass from one to the next.
 
-Conjunctions are numbered within a meeting, frame by frame, least separations likewise. The greatest
-separations part one approach from the next: a least separation with no conjunction of either frame between
+Conjunctions are numbered within a meeting, frame by frame; so are the least separations to which one
+belongs. The greatest separations part one approach from the next: a least separation with no conjunction of either frame between
 the greatest separations on both sides of it is ``quasi``.
 """
 
@@ -21,7 +21,7 @@ import numpy as np
 from wanderers.arrays import Bools, Floats, Ints
 from wanderers.ephemeris.bodies import Body
 from wanderers.events.approaches import APPULSE_DETAILS
-from wanderers.events.kinds import Batch
+from wanderers.events.kinds import Batch, Kind
 
 FARTHEST: Final = APPULSE_DETAILS.index("farthest")
 QUASI: Final = APPULSE_DETAILS.index("quasi")
@@ -31,25 +31,48 @@ INNER_REACH_DEG: Final = 10.0
 
 @dataclass(frozen=True, slots=True)
 class Meeting:
-    """Which meeting each event of a batch belongs to: its number, the event's part and how many parts."""
+    """Which meeting each event of a batch belongs to: shape (n,) each.
+
+    Attributes:
+        number: of the meeting among those of its pair.
+        part: 1 for the meeting's first event of this kind and frame, ...
+        parts: how many there are.
+        approach: number of the stretch between two greatest separations in which the event falls.
+    """
 
     number: Ints
     part: Ints
     parts: Ints
+    approach: Ints
 
     def chosen(self, keep: Bools) -> Meeting:
         """Return the entries where ``keep`` is true."""
-        return Meeting(self.number[keep], self.part[keep], self.parts[keep])
+        return Meeting(self.number[keep], self.part[keep], self.parts[keep], self.approach[keep])
 
 
-def meetings_of(batch: Batch, rounds: Ints) -> Meeting:
+def meetings_of(batch: Batch, laps: Ints, appulse: Batch) -> Meeting:
     """Number the parts of every meeting in one batch of conjunctions or of least separations.
 
     Args:
         batch: events of one kind and frame, every meeting whole.
-        rounds: the number of the lap of each; for Mercury with Venus, of the cluster.
+        laps: the number of the lap of each; for Mercury with Venus, of the cluster.
+        appulse: least and greatest separations of all pairs.
+
+    Returns:
+        the meetings; part and parts are 0 for least separations to which no conjunction belongs.
     """
-    keys = np.stack([batch.body, batch.other, rounds])
+    approach = _approach_keys(batch, appulse)
+    counted = np.ones(batch.jd.size, dtype=np.bool_)
+    if batch.kind is Kind.APPULSE:
+        counted = batch.detail == 0
+    part, parts = np.zeros_like(laps), np.zeros_like(laps)
+    part[counted], parts[counted] = _counted(batch.chosen(counted), laps[counted])
+    return Meeting(laps, part, parts, approach)
+
+
+def _counted(batch: Batch, laps: Ints) -> tuple[Ints, Ints]:
+    """Return each event's place in its meeting, from 1, and the number of events of the meeting."""
+    keys = np.stack([batch.body, batch.other, laps])
     order = np.lexsort((batch.jd, *keys))
     placed = keys[:, order]
     starts = np.ones(batch.jd.size, dtype=np.bool_)
@@ -59,7 +82,7 @@ def meetings_of(batch: Batch, rounds: Ints) -> Meeting:
     part, parts = np.empty_like(position), np.empty_like(position)
     part[order] = position - position[starts][group] + 1
     parts[order] = np.bincount(group, minlength=1)[group]
-    return Meeting(rounds, part, parts)
+    return part, parts
 
 
 def inner_clusters(conjunctions: list[Batch], appulse: Batch, rounds: list[Ints]) -> list[Ints]:

@@ -34,7 +34,7 @@ PRODID: Final = "-//wanderers//events of the planets//EN"
 ADVICE: Final = "give a calendar that this program wrote, or write a new one without --update"
 _HALF_MINUTE: Final = dt.timedelta(seconds=30)
 
-Span = tuple[dt.datetime, dt.datetime]
+UtcSpan = tuple[dt.datetime, dt.datetime]
 """First instant and end of a half-open span, UTC."""
 
 
@@ -137,7 +137,7 @@ def _require_sound(entries: Sequence[Entry], source: str) -> None:
 
 
 def merged(
-    published: Published, entries: Sequence[Entry], span: Span, stamp: dt.datetime | None = None
+    published: Published, entries: Sequence[Entry], span: UtcSpan, stamp: dt.datetime | None = None
 ) -> Merged:
     """Bring published entries up to date.
 
@@ -164,7 +164,7 @@ def merged(
 
 
 def _settled(
-    old: Entry, new: Entry | None, span: Span, stamp: dt.datetime | None
+    old: Entry, new: Entry | None, span: UtcSpan, stamp: dt.datetime | None
 ) -> tuple[Entry, Change | None]:
     """Decide what becomes of a published entry, given what it is now."""
     if new is None:
@@ -179,7 +179,7 @@ def _settled(
     return next_issue, Change(what, new.start, new.title, minutes)
 
 
-def _surely_inside(start: dt.datetime, span: Span) -> bool:
+def _surely_inside(start: dt.datetime, span: UtcSpan) -> bool:
     """Tell whether the instant behind a start lies in a span: starts are rounded, but within their day."""
     clock = (start.hour, start.minute)
     before = dt.timedelta() if clock == (0, 0) else _HALF_MINUTE

@@ -15,15 +15,13 @@ import polars as pl
 from icalendar import Alarm, Calendar, Event, vDuration, vText
 
 from wanderers import __version__
-from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.kernels import Kernel
 from wanderers.errors import SpanError
-from wanderers.events.kinds import Kind
 from wanderers.report import words
-from wanderers.report.calendar_entries import PROVENANCE, UID_ENDING, Entry, escaped, in_order, read_entry
-from wanderers.report.calendar_update import PRODID, Change, Span, merged, read_calendar
+from wanderers.report.calendar_entries import PROVENANCE, UID_ENDING, Entry, escaped, read_entry
+from wanderers.report.calendar_update import PRODID, Change, Published, UtcSpan, merged, read_calendar
 from wanderers.report.definitions import definition
-from wanderers.report.tables import counted, label
+from wanderers.report.tables import counted
 
 FIRST_STAMP: Final = dt.datetime(2000, 1, 1, 12, tzinfo=dt.UTC)
 """DTSTAMP of every entry that was never changed: a constant, so that equal tables give equal files."""
@@ -37,8 +35,6 @@ WIDELY_SHOWN_YEARS: Final = (1970, 2100)
 """Outside them many calendar programs fail. Common practice, no source."""
 POSSIBLE_YEARS: Final = (1, 9999)
 """RFC 5545, 3.3.4: a year has four digits; year 0 is none of the calendar's."""
-PARTS: Final = ("body", "kind", "year")
-"""What a calendar can be split by."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -58,10 +54,17 @@ class Style:
 
 @dataclass(frozen=True, slots=True)
 class Issue:
-    """A calendar file, and what changed in it since the previous issue."""
+    """A calendar file.
+
+    Attributes:
+        content: its octets.
+        changes: what changed in it since the previous issue.
+        unchanged: how many entries stayed as they were.
+    """
 
     content: bytes
     changes: list[Change]
+    unchanged: int
 
 
 class _Text(vText):
@@ -81,50 +84,41 @@ def calendar_bytes(
         events: columns of ``schema.EVENT_COLUMNS``.
         name: title of the calendar.
         kernel: what the events were computed from.
-        previous: an earlier issue to bring up to date: see ``reissued``. Published entries between the first
+        previous: an earlier issue to bring up to date: see ``issue``. Published entries between the first
             and the last of the events that are no longer among them are cancelled.
 
     Raises:
         SpanError: an event outside the years 1 to 9999.
         CalendarFileError: ``previous`` is no calendar of this program.
     """
-    style = Style(name, kernel)
-    if previous is None:
-        return issued(events, style)
-    return reissued(events, style, previous, span_of(events)).content
+    published = None if previous is None else read_calendar(previous)
+    return issue(events, Style(name, kernel), published=published).content
 
 
-def issued(events: pl.DataFrame, style: Style) -> bytes:
-    """Return a calendar of its first issue."""
-    return _file(style.name, in_order(entries(events, style)))
-
-
-def reissued(
+def issue(
     events: pl.DataFrame,
     style: Style,
-    previous: bytes,
-    span: Span,
     *,
+    published: Published | None = None,
+    span: UtcSpan | None = None,
     stamp: dt.datetime | None = None,
-    source: str = "the previous calendar",
 ) -> Issue:
-    """Return the next issue of a calendar; where nothing changed, the same octets.
+    """Return a calendar, or the next issue of one; where nothing changed, the same octets.
 
     Args:
         events: what holds now, all of it inside the span.
-        style: an empty name keeps the published one.
-        previous: the last issue.
-        span: in it, what is no longer among the events is cancelled.
+        style: title, kernel and alarms.
+        published: the last issue; None for a new calendar.
+        span: published entries in it that are no longer among the events are cancelled; None is the span from
+            the first day of the events to the last.
         stamp: instant of this issue; None takes a second after the last one.
-        source: what messages call the previous calendar.
 
     Raises:
         SpanError: an event outside the years 1 to 9999.
-        CalendarFileError: ``previous`` is no calendar of this program.
     """
-    published = read_calendar(previous, source)
-    now = merged(published, entries(events, style), span, stamp)
-    return Issue(_file(style.name or published.name, now.entries), now.changes)
+    known = published or Published(style.name, ())
+    now = merged(known, entries(events, style), span or span_of(events), stamp)
+    return Issue(_file(style.name, now.entries), now.changes, len(now.entries) - len(now.changes))
 
 
 def entries(events: pl.DataFrame, style: Style) -> list[Entry]:
@@ -172,30 +166,7 @@ def warnings_about(events: pl.DataFrame) -> list[str]:
     return lines
 
 
-def split(events: pl.DataFrame, part: str) -> dict[str, tuple[str, pl.DataFrame]]:
-    """Cut a table up so that each event lies in exactly one part.
-
-    Args:
-        events: an event table.
-        part: one of PARTS; ``body`` is the first body of a pair.
-
-    Returns:
-        By the stem of a file name: what a title calls the part, and its events. Ordered as bodies, kinds and
-        years are.
-    """
-    key = events["utc"].str.slice(0, 4) if part == "year" else events[part]
-    orders: dict[str, list[str]] = {"body": list(Body), "kind": list(Kind)}
-    order = orders.get(part) or key.unique().sort().to_list()
-    found = {str(name): events.filter(key == str(name)) for name in order}
-    return {name: (part_title(name), table) for name, table in found.items() if not table.is_empty()}
-
-
-def part_title(name: str) -> str:
-    """Return what a title calls a part."""
-    return label(name.replace("_", " "))
-
-
-def span_of(events: pl.DataFrame) -> Span:
+def span_of(events: pl.DataFrame) -> UtcSpan:
     """Return the span from the first day to the last of a table, whole days; empty for an empty table."""
     if events.is_empty():
         return FIRST_STAMP, FIRST_STAMP

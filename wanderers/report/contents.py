@@ -8,7 +8,9 @@ from typing import Any, Final
 
 import polars as pl
 
-from wanderers.ephemeris.bodies import PLANETS, Body
+from wanderers.ephemeris import timescales
+from wanderers.ephemeris.bodies import BODIES, PLANETS, Body
+from wanderers.ephemeris.dates import iso_strings
 from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.kernels import Kernel
 from wanderers.ephemeris.store import TrackStore
@@ -31,6 +33,7 @@ PATHS_AT_MOST: Final = 120
 PATH_ROWS: Final = 480
 PATH_MARGIN: Final = 0.08
 """Part of a season's length that its path shows before the first pass and after the last."""
+NAMES_IN_STEM: Final = 3
 HALF_RUN: Final = 0.6
 """Stands for an unknown first or last mark: that part of the retrograde stretch beyond a station."""
 
@@ -60,6 +63,29 @@ class Request:
         """The planets among the bodies wanted."""
         return tuple(body for body in self.bodies if body in PLANETS)
 
+    @property
+    def ends(self) -> tuple[str, str]:
+        """The ends of the span in the scale it was given in, midnights as bare dates."""
+        jd = [self.jd_from, self.jd_to]
+        first, last = iso_strings(timescales.jd_utc_from_tt(jd) if self.scale == "utc" else jd).tolist()
+        return _shortened(first), _shortened(last)
+
+    @property
+    def stem(self) -> str:
+        """A readable name made of the span and of what else was chosen."""
+        first, last = (end.replace(":", "") for end in self.ends)
+        chosen = (
+            (self.bodies, len(BODIES), "bodies"),
+            (self.kinds, len(Kind), "kinds"),
+            (self.frames if self.frames != (Frame.ECLIPTIC,) else (), 0, "frames"),
+        )
+        extras = [
+            "+".join(names) if len(names) <= NAMES_IN_STEM else f"{len(names)}-{noun}"
+            for names, of, noun in chosen
+            if names and len(names) != of
+        ]
+        return "_".join((f"{first}_to_{last}", *extras, *(["tt"] if self.scale == "tt" else [])))
+
 
 @dataclass(frozen=True, slots=True)
 class Contents:
@@ -70,7 +96,8 @@ class Contents:
         kernel: what it was computed from.
         events: ``schema.EVENT_COLUMNS``.
         seasons: ``schema.SEASON_COLUMNS``: those whose retrograde stretch reaches into the span.
-        tracks: ``schema.TRACK_COLUMNS`` over the span, by planet.
+        tracks: ``schema.TRACK_COLUMNS`` over the span in the leading frame, by planet.
+        longitudes: the same on the ecliptic of date, the Sun with them; empty when no planet is wanted.
         paths: ``schema.TRACK_COLUMNS`` over a whole season in its own frame, by ``season_id``; the leading
             frame's seasons, PATHS_AT_MOST of them.
     """
@@ -80,6 +107,7 @@ class Contents:
     events: pl.DataFrame
     seasons: pl.DataFrame
     tracks: dict[Body, pl.DataFrame]
+    longitudes: dict[Body, pl.DataFrame]
     paths: dict[str, pl.DataFrame]
 
 
@@ -102,12 +130,24 @@ def gather(store: TrackStore, request: Request, progress: Progress = lambda word
     progress("computing tracks")
     step = track_step_days(request.jd_to - request.jd_from)
     lead = request.frames[0]
-    tracks = {
-        body: time_series(store, body, request.jd_from, request.jd_to, step, lead) for body in planets
+
+    def track(body: Body, frame: Frame) -> pl.DataFrame:
+        return time_series(store, body, request.jd_from, request.jd_to, step, frame)
+
+    tracks = {body: track(body, lead) for body in planets}
+    compared = (Body.SUN, *planets) if planets else ()
+    longitudes = {
+        body: tracks[body] if lead is Frame.ECLIPTIC and body in tracks else track(body, Frame.ECLIPTIC)
+        for body in compared
     }
     drawn = found.filter(pl.col("frame") == lead.value).head(PATHS_AT_MOST)
     paths = {season["season_id"]: path_of(store, season, lead) for season in drawn.iter_rows(named=True)}
-    return Contents(request, store.kernel, events, found, tracks, paths)
+    return Contents(request, store.kernel, events, found, tracks, longitudes, paths)
+
+
+def _shortened(instant: str) -> str:
+    """Return an ISO 8601 instant without the zeros at its end."""
+    return instant.removesuffix(".000").removesuffix(":00").removesuffix("T00:00")
 
 
 def track_step_days(span_days: float) -> float:

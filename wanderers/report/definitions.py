@@ -68,17 +68,18 @@ def _distance_extremum_defined(event: Event) -> str:
 
 
 def _constellation_entry_defined(event: Event) -> str:
-    left = f" from {full_name(event['detail'])}" if event["detail"] else ""
+    left = f"from {full_name(event['detail'])} " if event["detail"] else ""
+    entered = full_name(event["constellation"])
     return (
-        f"{_the(event)} crosses a boundary of the constellations{left}, as the IAU drew them. "
+        f"{_the(event)} crosses {left}into {entered}, by the boundaries of the IAU. "
         "Constellations are not the signs of the zodiac."
     )
 
 
 def _ring_plane_defined(event: Event) -> str:
     seen = "seen edge-on" if event["detail"] == "earth" else "lit edge-on"
-    body = event["detail"].capitalize()
-    return f"The plane of {body_name(event)}'s rings passes through the centre of the {body}: they are {seen}."
+    crossed = event["detail"].capitalize()
+    return f"The plane of {body_name(event)}'s rings passes through the {crossed}: they are {seen}."
 
 
 def _season_defined(event: Event) -> str:

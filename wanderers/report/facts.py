@@ -110,6 +110,11 @@ def spoken_day(instant: str | None) -> str:
     return f"{date.day} {MONTHS[date.month - 1]} {date.year}"
 
 
+def spoken_month(instant: str | None) -> str:
+    """Return the month of an ISO 8601 instant in words, ``January 2027``."""
+    return spoken_day(instant).partition(" ")[2] or day(instant)
+
+
 MONTHS: Final = (
     "January", "February", "March", "April", "May", "June",
     "July", "August", "September", "October", "November", "December",

@@ -6,7 +6,7 @@ import json
 import os
 import secrets
 import shutil
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass
 from pathlib import Path
@@ -19,7 +19,7 @@ from wanderers.errors import OutputError
 from wanderers.files import reported_as_output_error, require_writable
 from wanderers.report import calendars, facts
 from wanderers.report.contents import Contents, Progress
-from wanderers.report.page import page_of, span_texts
+from wanderers.report.page import page_of
 from wanderers.report.page_data import packed, table_data
 from wanderers.report.pictures import Picture, draw
 from wanderers.report.render import rendered
@@ -157,7 +157,7 @@ def _write_tables(contents: Contents, folder: Path) -> tuple[tuple[str, str], ..
 def _write_calendar(contents: Contents, folder: Path) -> bytes:
     """Write the calendar of those events whose years a calendar can hold."""
     events = contents.events.filter(pl.col("utc").str.contains(r"^\d{4}-") & ~pl.col("utc").str.starts_with("0000"))
-    first, last = span_texts(contents.request)
+    first, last = contents.request.ends
     content = calendars.calendar_bytes(events, name=f"Wandering planets {first} to {last}", kernel=contents.kernel)
     (folder / CALENDAR).write_bytes(content)
     return content
@@ -166,7 +166,7 @@ def _write_calendar(contents: Contents, folder: Path) -> bytes:
 def _write_manifest(contents: Contents, folder: Path) -> None:
     """Write the list of files, with what they were made from."""
     request, kernel = contents.request, contents.kernel
-    first, last = span_texts(request)
+    first, last = request.ends
     files = sorted(path.relative_to(folder).as_posix() for path in folder.rglob("*") if path.is_file())
     manifest: dict[str, Any] = {
         "made_by": MADE_BY,
@@ -182,9 +182,3 @@ def _write_manifest(contents: Contents, folder: Path) -> None:
         "files": files,
     }
     (folder / MANIFEST).write_text(json.dumps(manifest, indent=1) + "\n", encoding="utf-8")
-
-
-def stem_of(contents_request_texts: tuple[str, str], extras: tuple[str, ...] = ()) -> str:
-    """Return a readable folder name made of the span and of what else was chosen."""
-    first, last = (text.replace(":", "") for text in contents_request_texts)
-    return "_".join((f"{first}_to_{last}", *extras))

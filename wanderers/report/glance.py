@@ -100,8 +100,7 @@ def _line(title: str, found: pl.DataFrame) -> Glance:
         return Glance(title, NONE_FOUND)
     event = found.row(0, named=True)
     figures = (
-        f"{facts.angle(event['separation_deg'])} apart" if event["separation_deg"] is not None else "",
-        f"{event['elongation_deg']:.0f}° from the Sun" if event["elongation_deg"] is not None else "",
+        f"{event['elongation_deg']:.1f}° from the Sun" if event["elongation_deg"] is not None else "",
         f"magnitude {facts.signed(event['magnitude'], 1)}" if event["magnitude"] is not None else "",
     )
     return Glance(

@@ -2,21 +2,21 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import Any, Final
+from typing import Final
 
 import polars as pl
 
 from wanderers import __version__
 from wanderers.ephemeris import timescales
 from wanderers.ephemeris.bodies import BODIES, Body
-from wanderers.ephemeris.dates import iso_strings
 from wanderers.ephemeris.frames import Frame
 from wanderers.events.kinds import Kind
 from wanderers.report import facts
-from wanderers.report.contents import Contents, Request
+from wanderers.report.contents import Contents
 from wanderers.report.glance import Glance, at_a_glance
+from wanderers.report.glossary import glossary
 from wanderers.report.planets import PlanetSection, planet_sections
 from wanderers.report.pictures import Picture
 
@@ -48,7 +48,12 @@ class Page:
         title: of the page.
         lead: what it is and for whom, one sentence.
         stem: of the files that the page lets people save.
+        first: beginning of the span.
+        last: its end.
         span: the span in words.
+        basis: the settings every reader should know: terms and words.
+        generator: program and version.
+        kernel_line: kernel and checksum in one line.
         provenance: terms and what they stand for: kernel, checksum, version, frame, time scale, ...
         overview: the picture of all longitudes, None where no planet was asked for.
         glance: the list at the top.
@@ -56,6 +61,7 @@ class Page:
         bodies: tick boxes of the body filter.
         kinds: tick boxes of the kind filter.
         event_count: rows of the event table.
+        glossary: terms and their meanings.
         caution: what holds for the whole page.
         files: names of the data files beside the page, and what they hold.
     """
@@ -63,7 +69,12 @@ class Page:
     title: str
     lead: str
     stem: str
+    first: str
+    last: str
     span: str
+    basis: tuple[tuple[str, str], ...]
+    generator: str
+    kernel_line: str
     provenance: tuple[tuple[str, str], ...]
     overview: Picture | None
     glance: tuple[Glance, ...]
@@ -71,6 +82,7 @@ class Page:
     bodies: tuple[Choice, ...]
     kinds: tuple[Choice, ...]
     event_count: int
+    glossary: tuple[tuple[str, str], ...]
     caution: str
     files: tuple[tuple[str, str], ...]
 
@@ -87,7 +99,7 @@ def page_of(
         files: names of the files beside the page, and what they hold.
     """
     request = contents.request
-    first, last = span_texts(request)
+    first, last = request.ends
     span = f"{first} to {last} {SCALE_WORDS[request.scale]}"
     overviews = [picture for picture in pictures if picture.body is None]
     return Page(
@@ -97,7 +109,12 @@ def page_of(
             f"the Earth: {READERS}."
         ),
         stem=stem,
+        first=first,
+        last=last,
         span=span,
+        basis=basis(contents),
+        generator=f"wanderers {__version__}",
+        kernel_line=f"kernel {contents.kernel.name}, SHA-256 {contents.kernel.sha256}",
         provenance=provenance(contents),
         overview=overviews[0] if overviews else None,
         glance=at_a_glance(contents.events, contents.seasons, request.jd_from, request.kinds),
@@ -105,25 +122,30 @@ def page_of(
         bodies=body_choices(contents.events),
         kinds=kind_choices(contents.events),
         event_count=contents.events.height,
+        glossary=glossary(kind for kind in Kind if kind.value in set(contents.events["kind"])),
         caution=facts.PAGE_CAUTION,
         files=tuple(files),
     )
 
 
-def span_texts(request: Request) -> tuple[str, str]:
-    """Return the ends of the span in the scale it was given in, midnights as bare dates."""
-    jd = [request.jd_from, request.jd_to]
-    shown = timescales.jd_utc_from_tt(jd) if request.scale == "utc" else jd
-    first, last = (
-        text.removesuffix(".000").removesuffix(":00").removesuffix("T00:00") for text in iso_strings(shown).tolist()
+def basis(contents: Contents) -> tuple[tuple[str, str], ...]:
+    """Return the settings that every reader should know before the first figure."""
+    request = contents.request
+    first, last = request.ends
+    return (
+        ("Span", f"{first} to {last} {SCALE_WORDS[request.scale]}"),
+        ("Frame", ", ".join(frame.value for frame in request.frames)),
+        ("Seen from", "the centre of the Earth"),
+        ("Times", "UTC"),
+        ("Kernel", contents.kernel.name),
+        ("Events", f"{contents.events.height}"),
     )
-    return first, last
 
 
 def provenance(contents: Contents) -> tuple[tuple[str, str], ...]:
     """Return what another editor needs to explain a difference: sources, versions, frames, scales."""
     request, kernel = contents.request, contents.kernel
-    first, last = span_texts(request)
+    first, last = request.ends
     wanted = [
         ("Bodies", [body.label for body in request.bodies], len(BODIES)),
         ("Kinds of events", [kind_label(kind) for kind in request.kinds], len(Kind)),
@@ -156,8 +178,3 @@ def kind_choices(events: pl.DataFrame) -> tuple[Choice, ...]:
     """Return the kinds that occur in an event table, in the order of documentation."""
     present = set(events["kind"])
     return tuple(Choice(kind.value, kind_label(kind)) for kind in Kind if kind.value in present)
-
-
-def as_mapping(page: Page) -> Mapping[str, Any]:
-    """Return the page for a template."""
-    return {name: getattr(page, name) for name in page.__slots__}

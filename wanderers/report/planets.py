@@ -50,7 +50,8 @@ class SeasonSheet:
 
     Attributes:
         season_id: the row it comes from.
-        title: its name.
+        name: the month of its middle.
+        title: from turn to turn.
         marks: the five dates: words and day, empty where unknown.
         cells: the row of the season table, without the marks.
         facts: figures of spoken size, each with the column it was read from.
@@ -59,6 +60,7 @@ class SeasonSheet:
     """
 
     season_id: str
+    name: str
     title: str
     marks: tuple[tuple[str, str], ...]
     cells: tuple[tuple[str, str], ...]
@@ -132,7 +134,7 @@ def event_row(event: facts.Row) -> EventRow:
         what=words.summary(event),
         constellation=facts.constellation(event["constellation"]),
         separation=facts.angle(event["separation_deg"]),
-        elongation="" if elongation is None else f"{elongation:.0f}°",
+        elongation="" if elongation is None else f"{elongation:.1f}°",
         magnitude=facts.signed(event["magnitude"], 1),
         note=facts.note(event),
     )
@@ -160,6 +162,7 @@ def season_sheet(season: facts.Row, path: pl.DataFrame | None, picture: Picture 
     inner = season["body"] in INNER
     return SeasonSheet(
         season_id=season["season_id"],
+        name=facts.spoken_month(season["middle_utc"] or start),
         title=f"{facts.spoken_day(start)} to {facts.spoken_day(end)}, {words.FRAME_LABELS[season['frame']]}",
         marks=_marks(season),
         cells=_cells(season),

@@ -11,18 +11,18 @@ from typing import Any, Final
 from jinja2 import Environment, PackageLoader, StrictUndefined
 from markupsafe import Markup
 
+from wanderers.constants import AU_KM
 from wanderers.report.page import Page
 
 HEADINGS: Final = (
     ("time", "Time (UTC)"),
     ("what", "Event"),
     ("constellation", "In"),
-    ("separation", "Separation"),
+    ("separation", "Apart"),
     ("elongation", "From the Sun"),
     ("magnitude", "Mag"),
-    ("distance", "Distance, au"),
+    ("distance", "Distance"),
     ("diameter", "Size"),
-    ("note", "Note"),
 )
 """Columns of the page's event table: what the page's program calls them, and their titles."""
 
@@ -40,7 +40,7 @@ def rendered(page: Page, data: dict[str, Any], calendar: str) -> str:
     return template.render(
         {name.name: getattr(page, name.name) for name in fields(page)},
         headings=HEADINGS,
-        data=data | {"count": page.event_count, "span": page.span, "stem": page.stem},
+        data=data | {"count": page.event_count, "span": page.span, "stem": page.stem, "au_km": AU_KM},
         calendar=calendar,
         style=Markup(_packaged("page.css")),
         program=Markup(program),

@@ -273,7 +273,7 @@ def _filled(text: str) -> Callable[[Event], str]:
 
     def write(event: Event) -> str:
         detail = (event["detail"] or "").capitalize()
-        return text.format(body=body_name(event), detail=detail, side=_side(event), event=event)
+        return text.format(body=body_name(event), detail=detail, side=_side(event))
 
     return write
 

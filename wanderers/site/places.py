@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 import re
 from collections.abc import Sequence
 from dataclasses import dataclass, field
@@ -99,8 +98,10 @@ class Site:
             raise SiteError(
                 f"elevation {self.elevation_m:g} m is not within {LOWEST_M:.0f} to {HIGHEST_M:.0f}: {ACCEPTED_PLACE}"
             )
-        wrapped = 180.0 - math.fmod(540.0 - self.longitude_deg, 360.0)
-        object.__setattr__(self, "longitude_deg", wrapped if wrapped <= 180.0 else wrapped - 360.0)
+        if self.longitude_deg > 180.0:
+            object.__setattr__(self, "longitude_deg", self.longitude_deg - 360.0)
+        elif self.longitude_deg == -180.0:
+            object.__setattr__(self, "longitude_deg", 180.0)
 
 
 def looks_like_coordinates(text: str) -> bool:

@@ -138,16 +138,21 @@ def mark_words(season: Season, mark: str) -> str:
     }[mark]
 
 
-def key_handles(body: Body, style: Style, *, middle: str, fills: bool) -> list[Line2D | Patch]:
-    """Return what a key explains: the heavy line and the marks; with ``fills`` also the shadings."""
+def frame_look(style: Style) -> dict[str, Any]:
+    """Return how the frame round a threefold span is drawn."""
+    return {"edgecolor": style.quiet_ink, "linewidth": 0.9, "linestyle": (0, (4.0, 2.5))}
+
+
+def key_handles(body: Body, style: Style, *, middle: str, framed: bool) -> list[Line2D | Patch]:
+    """Return what a key explains: the heavy line and the marks; with ``framed`` the threefold span's frame too."""
     handles: list[Line2D | Patch] = [
         Line2D([], [], **style.back_line(body), label="retrograde"),
         Line2D([], [], **mark_look("station_retrograde", style), label="turns retrograde"),
         Line2D([], [], **mark_look("middle", style), label=middle),
         Line2D([], [], **mark_look("station_direct", style), label="turns direct"),
     ]
-    if fills:
-        handles.append(Patch(facecolor=style.back_fill, label="days of retrograde motion"))
+    if framed:
+        handles.append(Patch(facecolor="none", **frame_look(style), label="longitudes covered three times"))
     return handles
 
 

@@ -24,8 +24,11 @@ CLOSE_DEG: Final = 1.0
 NAMED: Final = 8
 """How many of the closest conjunctions are named, as far as there is room."""
 
+LONG_RUN: Final = 0.12
+"""Part of the span that a line must run from edge to edge of the circle to be named on its way."""
+
 STRIP_IN: Final = 1.25
-NAMES_IN: Final = 1.05
+NAMES_IN: Final = 1.5
 MOST_RANGE_DEG: Final = 300.0
 
 
@@ -33,7 +36,7 @@ def draw_overview(tracks: Tracks, events: pl.DataFrame, *, style: Style = LIGHT)
     """Return the chart of all planets; arguments as for ``plot_overview``."""
     with in_force(style):
         figure = new_figure(8.2, style)
-        ax = axes_at(figure, 0.62 + STRIP_IN, NAMES_IN, 1.05, 0.85)
+        ax = axes_at(figure, 0.85 + STRIP_IN, NAMES_IN, 1.05, 0.85)
         plot_overview(tracks, events, ax, style=style)
         low, high = ax.get_xlim()
         write_title(
@@ -73,7 +76,7 @@ def plot_overview(tracks: Tracks, events: pl.DataFrame, ax: Axes, *, style: Styl
     tidy(ax, style, grid="x")
     _draw_constellations(ax, cut, 0.5 * (low + high), style)
     _name_lines(ax, tracks, cut, style)
-    _name_meetings(ax, meetings, np.stack([x, y], axis=1), style)
+    _name_inside(ax, meetings, np.stack([x, y], axis=1), _rounds(tracks, times, cut), style)
     return ax
 
 
@@ -229,24 +232,49 @@ def _name_lines(ax: Axes, tracks: Tracks, cut: float, style: Style) -> None:
         )
 
 
-def _name_meetings(ax: Axes, meetings: pl.DataFrame, places: Floats, style: Style) -> None:
-    """Name the closest conjunctions beside their dots."""
+def _name_inside(
+    ax: Axes, meetings: pl.DataFrame, places: Floats, rounds: list[tuple[Body, Floats]], style: Style
+) -> None:
+    """Name the closest conjunctions beside their dots, and the lines that have left the circle's edge."""
     nearest = np.argsort(curves.column(meetings, "separation_deg"), kind="stable")[:NAMED]
     dots = ax.transData.transform(places) if places.size else np.zeros((0, 2))
-    look = {
-        "fontsize": style.small_pt,
-        "color": style.ink,
-        "linespacing": 1.05,
-        "bbox": {"boxstyle": "square,pad=0.12", "facecolor": style.paper, "edgecolor": "none", "alpha": 0.85},
-    }
+    look = style.note()
     wanted = []
     for number in nearest.tolist():
-        row = meetings.row(number, named=True)
-        when = timeaxis.day_text(float(timeaxis.utc_days(row["jd_tt"])), year=False)
-        text = f"{Body(row['body']).label}–{Body(row['other']).label}\n{when}, {row['separation_deg']:.1f}°"
+        text = _meeting_text(meetings.row(number, named=True))
         wanted.append(labels.label_at(ax, text, tuple(dots[number]), (135.0, 315.0), look, nearest_pt=4.0))
-    rings = labels.boxes_around(dots, (10.0, 10.0))
+    wanted += [_round_label(ax, body, ax.transData.transform(run), style) for body, run in rounds]
+    rings = labels.boxes_around(dots, (14.0, 14.0))
     labels.write_labels(ax, wanted, labels.ground_of(ax, _line_dots(ax), rings))
+
+
+def _meeting_text(event: dict[str, Any]) -> str:
+    when = timeaxis.day_text(float(timeaxis.utc_days(event["jd_tt"])), year=False)
+    pair = f"{Body(event['body']).label}–{Body(event['other']).label}"
+    return f"{pair}\n{when}, {event['separation_deg']:.1f}°"
+
+
+def _rounds(tracks: Tracks, times: Mapping[Body, Floats], cut: float) -> list[tuple[Body, Floats]]:
+    """Return the long runs of lines from edge to edge of the circle, shape (n, 2) each, the last ones left out."""
+    found = []
+    for body, track in tracks.items():
+        longitude = curves.cut_at(track["longitude_deg"].to_numpy(), cut)
+        line = np.column_stack([times[body], longitude])
+        runs = np.split(line, np.flatnonzero(np.abs(np.diff(longitude)) > 180.0) + 1)
+        found += [(body, run) for run in runs[:-1] if len(run) > LONG_RUN * len(line)]
+    return found
+
+
+def _round_label(ax: Axes, body: Body, run: Floats, style: Style) -> labels.Label:
+    """Return the name of a line, to stand close beside it anywhere along its way."""
+    look = style.note(color=style.colours[body], weight="bold")
+    size = labels.measure(ax, body.label, look)
+    unit = labels.dots_per_pt(ax)
+    anchors = run[(len(run) * np.linspace(0.1, 0.9, 17)).astype(np.int64)]
+    parts = [labels.around(tuple(anchor), size, (135.0, 315.0), unit) for anchor in anchors]
+    centres, costs = (np.concatenate(half) for half in zip(*parts, strict=True))
+    middle = tuple(run[len(run) // 2])
+    return labels.Label(body.label, middle, centres, costs, size, look, leads=False, dearest=18.0)
 
 
 def _line_dots(ax: Axes) -> Floats:

@@ -72,7 +72,6 @@ class Style:
         quiet_ink: less important text; at least 4.5:1 on paper.
         rule: grids and boundaries.
         back_fill: where a planet runs backwards.
-        threefold_fill: the stretch of longitude that is covered three times.
         colours: one a body.
         type_pt: size of ordinary type.
         small_pt: size of the smallest type.
@@ -87,7 +86,6 @@ class Style:
     quiet_ink: str
     rule: str
     back_fill: str
-    threefold_fill: str
     colours: Mapping[Body, str] = field(default_factory=lambda: _DAY_COLOURS)
     type_pt: float = 11.0
     small_pt: float = 10.0
@@ -105,6 +103,11 @@ class Style:
             "dash_capstyle": "butt",
         }
 
+    def note(self, **more: Any) -> dict[str, Any]:
+        """Return how a note within a chart is written: small, on a little paper of its own."""
+        paper = {"boxstyle": "square,pad=0.08", "facecolor": self.paper, "edgecolor": "none", "alpha": 0.8}
+        return {"fontsize": self.small_pt, "color": self.ink, "linespacing": 1.05, "bbox": paper} | more
+
     def back_line(self, body: Body) -> dict[str, Any]:
         """Return how the line of a body is drawn where it runs backwards: heavy and unbroken."""
         return {"color": self.colours[body], "linewidth": self.back_line_pt, "solid_capstyle": "butt"}
@@ -116,8 +119,7 @@ LIGHT: Final = Style(
     ink="#1a1a1a",
     quiet_ink="#5a5a5a",
     rule="#c4c4c4",
-    back_fill="#e4e4e4",
-    threefold_fill="#f1f1f1",
+    back_fill="#ebebeb",
 )
 """For screens and paper."""
 
@@ -127,8 +129,7 @@ NIGHT: Final = Style(
     ink="#f0442e",
     quiet_ink="#d93d29",
     rule="#6b1d13",
-    back_fill="#38100a",
-    threefold_fill="#1f0905",
+    back_fill="#2b0c07",
     colours=MappingProxyType(dict.fromkeys(BODIES, _NIGHT_RED)),
 )
 """For screens beside a telescope: red on black, so that eyes stay used to the dark."""

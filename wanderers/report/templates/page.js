@@ -118,7 +118,7 @@ function sorted(rows) {
 
 // ---- Printing rows -----------------------------------------------------------------------------------
 
-const fixed = (value, decimals) => (value === null ? "" : value.toFixed(decimals).replace("-", "\u2212"));
+const fixed = (value, decimals, unit = "") => (value === null ? "" : value.toFixed(decimals).replace("-", "\u2212") + unit);
 
 /** Prints an angle: degrees, below one arcminutes, below one of those arcseconds. */
 function angle(degrees) {
@@ -135,16 +135,29 @@ function minute(utc) {
   return `${day} ${String(Math.floor(whole / 60)).padStart(2, "0")}:${String(whole % 60).padStart(2, "0")}`;
 }
 
+/** Prints an apparent size: arcseconds, large ones in arcminutes. */
+function size(arcsec) {
+  if (arcsec === null) return "";
+  return arcsec >= 120 ? `${(arcsec / 60).toFixed(1)}′` : `${arcsec.toFixed(1)}″`;
+}
+
+/** Prints a distance from the Earth; the Moon's in kilometres. */
+function distance(row) {
+  const au = cell.distance_au(row);
+  if (au === null) return "";
+  if (cell.body(row) !== "moon") return `${au.toFixed(3)} au`;
+  return `${Math.round((au * data.au_km) / 100) * 100} km`.replace(/(\d{3}) km/, " $1 km");
+}
+
 const printed = [
   { style: "when", text: (row) => minute(cell.utc(row)) },
-  { style: "what", text: what },
+  { style: "what", text: what, below: note },
   { label: "In", text: constellation },
-  { style: "figure", label: "Separation", text: (row) => angle(cell.separation_deg(row)) },
-  { style: "figure", label: "From the Sun", text: (row) => (cell.elongation_deg(row) === null ? "" : `${cell.elongation_deg(row).toFixed(0)}°`) },
+  { style: "figure", label: "Apart", text: (row) => angle(cell.separation_deg(row)) },
+  { style: "figure", label: "From the Sun", text: (row) => fixed(cell.elongation_deg(row), 1, "°") },
   { style: "figure", label: "Magnitude", text: (row) => fixed(cell.magnitude(row), 1) },
-  { style: "figure", label: "Distance, au", text: (row) => fixed(cell.distance_au(row), cell.body(row) === "moon" ? 5 : 3) },
-  { style: "figure", label: "Size", text: (row) => (cell.diameter_arcsec(row) === null ? "" : `${cell.diameter_arcsec(row).toFixed(1)}″`) },
-  { style: "notes", text: note },
+  { style: "figure", label: "Distance", text: distance },
+  { style: "figure", label: "Size", text: (row) => size(cell.diameter_arcsec(row)) },
 ];
 
 function element(tag, text, style) {
@@ -160,11 +173,11 @@ function tableRow(row) {
   line.setAttribute("role", "row");
   line.dataset.id = cell.event_id(row);
   for (const column of printed) {
-    const text = column.text(row);
-    const box = element("td", column.style === "notes" ? "" : text, column.style);
+    const box = element("td", column.text(row), column.style);
     box.setAttribute("role", "cell");
     if (column.label) box.dataset.label = column.label;
-    if (column.style === "notes" && text) box.append(element("span", text, "note"));
+    const below = column.below?.(row);
+    if (below) box.append(element("span", below, "note"));
     line.append(box);
   }
   return line;
@@ -194,6 +207,12 @@ function show() {
     if (head.dataset.key === state.sort) head.setAttribute("aria-sort", state.falling ? "descending" : "ascending");
     else head.removeAttribute("aria-sort");
   }
+}
+
+/** Shows on paper what the screen shows in parts: the whole selection, and what is folded up. */
+function showOnPaper() {
+  fill(0, ROWS_ON_PAPER);
+  for (const folded of findAll("details")) folded.open = true;
 }
 
 /** Says, in one line with their number, under which limits the rows shown were found. */
@@ -346,7 +365,7 @@ function listen() {
   for (const box of findAll('input[name="look"]')) box.addEventListener("change", changeLook);
   document.addEventListener("click", goByLink);
   addEventListener("hashchange", follow);
-  addEventListener("beforeprint", () => fill(0, ROWS_ON_PAPER));
+  addEventListener("beforeprint", showOnPaper);
   addEventListener("afterprint", show);
 }
 

@@ -1,0 +1,166 @@
+"""The ledger: found events as rows of numbers and names, described but not yet printed."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from concurrent.futures import ThreadPoolExecutor
+from typing import Final
+
+import numpy as np
+import polars as pl
+
+from wanderers.arrays import Floats, Ints
+from wanderers.ephemeris import constellations
+from wanderers.ephemeris.appearance import appearance
+from wanderers.ephemeris.blocks import block_start_jd
+from wanderers.ephemeris.bodies import BODIES
+from wanderers.ephemeris.store import TrackStore
+from wanderers.ephemeris.vectors import separation_deg
+from wanderers.events.catalogue import Found, sky_of, stars_met
+from wanderers.events.kinds import NOBODY, Kind
+
+NOT_ENTERED: Final = -1
+CONTACTS: Final = (1, 2, 3, 4)
+UNNAMEABLE: Final = r"[^a-z0-9+_-]+"
+"""What does not belong in a name of an event: blanks and accents of star names."""
+
+Arrays = dict[str, np.ndarray]
+
+
+def ledger(store: TrackStore, found: Sequence[Found]) -> pl.DataFrame:
+    """Return found events as rows, in order of time; None-like values are null.
+
+    Besides columns of the event table there are ``round``, ``ordinal`` and ``approach`` (what names are made
+    of), ``figure_deg`` (what the finder measured), the contacts as Julian dates, and the target numbers.
+    """
+    entries = pl.concat([_entries(one) for one in found]).sort("jd_tt", "event_id")
+    return entries.with_columns(**_appearance_columns(store, entries))
+
+
+def target_names() -> tuple[str, ...]:
+    """Return the names of all targets by number: bodies, then stars."""
+    return tuple(body.value for body in BODIES) + stars_met().name
+
+
+def _entries(found: Found) -> pl.DataFrame:
+    """Turn one batch into rows of a ledger: what is known before anything is looked up."""
+    batch = found.batch
+    names = pl.Series(target_names())
+    none = np.full(batch.jd.size, np.nan)
+    other = pl.Series(np.where(batch.other == NOBODY, 0, batch.other))
+    alone = pl.Series(batch.other == NOBODY)
+    contacts = np.full((batch.jd.size, 4), np.nan) if batch.contacts_jd is None else batch.contacts_jd
+    entries = pl.DataFrame(
+        {
+            "kind": pl.repeat(batch.kind.value, batch.jd.size, eager=True),
+            "detail": pl.Series([word or None for word in batch.details], dtype=pl.String).gather(batch.detail),
+            "body": names.gather(batch.body),
+            "other": names.gather(other).zip_with(~alone, pl.Series([None], dtype=pl.String)),
+            "frame": pl.repeat(
+                batch.frame.value if batch.frame else None, batch.jd.size, eager=True, dtype=pl.String
+            ),
+            "jd_tt": batch.jd,
+            "figure_deg": none if batch.figure_deg is None else batch.figure_deg,
+            "round": found.rounds,
+            "ordinal": found.ordinals,
+            "approach": np.zeros_like(found.rounds) if found.meeting is None else found.meeting.approach,
+            "entered": np.full(batch.jd.size, NOT_ENTERED) if batch.entered is None else batch.entered,
+            "body_number": batch.body,
+            "other_number": batch.other,
+        }
+        | {f"contact{number}_jd_tt": contacts[:, number - 1] for number in CONTACTS}
+    )
+    return entries.with_columns(event_id=_event_id(batch.kind), **_meeting_columns(found))
+
+
+def event_ids(found: Found) -> pl.Series:
+    """Return the names of a batch's events."""
+    return _entries(found)["event_id"]
+
+
+def _meeting_columns(found: Found) -> dict[str, pl.Expr | pl.Series]:
+    """Name the meeting an event belongs to and its part of it."""
+    if found.meeting is None:
+        nothing = pl.lit(None, dtype=pl.String)
+        return {"meeting_id": nothing, "meeting_part": nothing}
+    number, part, parts = (
+        pl.Series(values) for values in (found.meeting.number, found.meeting.part, found.meeting.parts)
+    )
+    pair = pl.concat_str(pl.col("body"), pl.lit("-"), pl.col("other")).str.to_lowercase()
+    return {
+        "meeting_id": pl.concat_str(pair.str.replace_all(UNNAMEABLE, "_"), pl.lit("-m"), number),
+        "meeting_part": pl.when(parts > 0).then(pl.concat_str(part, pl.lit(" of "), parts)),
+    }
+
+
+def _event_id(kind: Kind) -> pl.Expr:
+    """Compose the name of an event from what never changes about it."""
+    detail = pl.lit(None, dtype=pl.String) if kind is Kind.APPULSE else pl.col("detail")
+    parts = [pl.col("kind"), pl.col("frame"), pl.col("body"), pl.col("other"), detail]
+    named = pl.concat_str(parts, separator="-", ignore_nulls=True).str.to_lowercase()
+    count = pl.concat_str(pl.lit("-c"), pl.col("round"), pl.lit("-"), pl.col("ordinal"))
+    return named.str.replace_all(UNNAMEABLE, "_") + count
+
+
+def _appearance_columns(store: TrackStore, ledger: pl.DataFrame) -> dict[str, pl.Series]:
+    """Look up place, brightness and size of every event's body, block by block."""
+    jd = ledger["jd_tt"].to_numpy()
+    body, other = ledger["body_number"].to_numpy(), ledger["other_number"].to_numpy()
+
+    def look_up(some: slice) -> Arrays:
+        return _looked_up(store, body[some], other[some], jd[some])
+
+    joined = by_block(store, jd, look_up)
+    entered = ledger["entered"].to_numpy()
+    stood_in = np.where(entered == NOT_ENTERED, joined.pop("constellation"), entered)
+    constellation = pl.Series(constellations.ABBREVIATIONS).gather(stood_in)
+    by_finder = ledger["kind"].is_in([Kind.GATHERING.value, Kind.TRANSIT.value])
+    columns = {name: pl.Series(values, nan_to_null=True) for name, values in joined.items()}
+    columns["separation_deg"] = ledger["figure_deg"].zip_with(by_finder, columns["separation_deg"])
+    return columns | {"constellation": constellation}
+
+
+def by_block(store: TrackStore, jd: Floats, look_up: Callable[[slice], Arrays]) -> Arrays:
+    """Apply a function to the events of each block of tracks, on all cores, and join what it returns.
+
+    Args:
+        store: the tracks.
+        jd: TT Julian dates, rising, shape (n,).
+        look_up: takes a slice of the events, returns arrays of its length.
+    """
+    if jd.size == 0:
+        return look_up(slice(0, 0))
+    indices = store.block_indices(float(jd[0]), float(jd[-1]))
+    inner = np.searchsorted(jd, [block_start_jd(index) for index in indices[1:]]).tolist()
+    edges = sorted({0, *inner, jd.size})
+    with ThreadPoolExecutor() as pool:
+        parts = list(pool.map(look_up, map(slice, edges[:-1], edges[1:])))
+    return {name: np.concatenate([part[name] for part in parts]) for name in parts[0]}
+
+
+def _looked_up(store: TrackStore, body: Ints, other: Ints, jd: Floats) -> dict[str, np.ndarray]:
+    """Describe the bodies of one block's events."""
+    if jd.size == 0:
+        jd, body, other = np.array([store.span_jd[0]]), np.zeros(1, np.int64), np.zeros(1, np.int64)
+        return {name: values[:0] for name, values in _looked_up(store, body, other, jd).items()}
+    sky = sky_of(store, float(jd[0]), float(jd[-1]))
+    seen = appearance(sky, body, jd)
+    apart = np.full(jd.size, np.nan)
+    pair = other != NOBODY
+    apart[pair] = separation_deg(
+        sky.apparent(body[pair], jd[pair])[0], sky.apparent(other[pair], jd[pair])[0]
+    )
+    return {
+        "longitude_deg": seen.longitude_deg,
+        "latitude_deg": seen.latitude_deg,
+        "ra_deg": seen.ra_deg,
+        "dec_deg": seen.dec_deg,
+        "separation_deg": apart,
+        "elongation_deg": seen.elongation_deg,
+        "distance_au": seen.distance_au,
+        "magnitude": seen.magnitude,
+        "diameter_arcsec": seen.diameter_arcsec,
+        "constellation": seen.constellation,
+    }
+
+
