@@ -80,7 +80,7 @@ def command(ctx: click.Context, *, kernel: Path | None, cache: Path | None, form
     """  # noqa: D301  (click takes the backspace itself as a mark)
     if ctx.invoked_subcommand is not None:
         given = {"cache": cache, "form": form}
-        ctx.default_map = dict.fromkeys(ctx.command.commands, given)  # type: ignore[attr-defined]
+        ctx.default_map = dict.fromkeys(command.commands, given)
         return
     folder = cache or kernels.default_cache_dir()
     path = kernels.find_kernel(kernel, folder, os.environ)

@@ -19,6 +19,7 @@ COMMANDS: Final = {
     "seasons": "Print the retrograde seasons of a span, one row each.",
     "track": "Print a body's positions at regular steps.",
     "calendar": "Write events as an iCalendar file.",
+    "gatherings": "Find several bodies within a small circle, over centuries.",
     "kernels": "Say which kernel is used; check one, add one.",
 }
 """Commands and their one-line help, so that the list prints without loading any of them."""

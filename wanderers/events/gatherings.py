@@ -14,7 +14,6 @@ from wanderers.events.circles import smallest_circles
 from wanderers.events.kinds import Batch, Kind, batch
 from wanderers.events.scene import STEP_DAYS, Scene
 
-FEWEST: Final = 3
 FINE_STEPS: Final = 8
 FINE_STEPS_WITH_MOON: Final = 48
 """Samples in a step of the grid, wherever the bodies are near: six hours, an hour with the Moon. The circle's
@@ -37,7 +36,7 @@ def find_gatherings(scene: Scene) -> list[Batch]:
     bodies = scene.held(scene.choice.among(NAKED_EYE_PLANETS if scene.choice.bodies == BODIES else BODIES))
     subsets = [
         subset
-        for size in range(FEWEST, bodies.size + 1)
+        for size in range(scene.choice.fewest_gathered, bodies.size + 1)
         for subset in combinations(bodies.tolist(), size)
     ]
     near = _near_pairs(scene, bodies.tolist())

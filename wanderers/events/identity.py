@@ -44,7 +44,11 @@ def ordinals(found: Batch, rounds: Ints) -> Ints:
 
 def _told_apart(found: Batch) -> Ints:
     """Return the detail where it is part of an event's identity; a quasi appulse is still that appulse."""
-    return found.detail // 2 if found.kind is Kind.APPULSE else found.detail
+    if found.kind is Kind.APPULSE:
+        return found.detail // 2
+    if found.entered is not None:
+        return found.detail * 100 + found.entered
+    return found.detail
 
 
 def _nearest(phase: Floats) -> Ints:
@@ -139,8 +143,11 @@ def _season(found: Batch, _: StarCatalogue) -> Ints:
 
 
 def _constellation(found: Batch, _: StarCatalogue) -> Ints:
+    """Count rounds among the constellations; slow planets, years at a boundary, by synodic rounds."""
     longitude = np.zeros(0) if found.figure_deg is None else found.figure_deg
-    return cycles.constellation_round(found.body, found.jd, longitude)
+    rounds = cycles.constellation_round(found.body, found.jd, longitude)
+    years = _nearest(cycles.synodic_phase(found.body, found.jd))
+    return np.where(found.body >= Body.JUPITER.order, years, rounds)
 
 
 def _day(found: Batch, _: StarCatalogue) -> Ints:

@@ -96,10 +96,21 @@ def _meeting_columns(found: Found) -> dict[str, pl.Expr | pl.Series]:
 def _event_id(kind: Kind) -> pl.Expr:
     """Compose the name of an event from what never changes about it."""
     detail = pl.lit(None, dtype=pl.String) if kind is Kind.APPULSE else pl.col("detail")
-    parts = [pl.col("kind"), pl.col("frame"), pl.col("body"), pl.col("other"), detail]
+    names = pl.col("kind"), pl.col("frame"), pl.col("body"), pl.col("other")
+    if kind is Kind.GATHERING:
+        names = (pl.col("kind"),)
+    if kind is Kind.CONSTELLATION_ENTRY:
+        detail = pl.concat_str(detail, pl.lit("-"), _constellation_names("entered"))
+    parts = [*names, detail]
     named = pl.concat_str(parts, separator="-", ignore_nulls=True).str.to_lowercase()
     count = pl.concat_str(pl.lit("-c"), pl.col("round"), pl.lit("-"), pl.col("ordinal"))
     return named.str.replace_all(UNNAMEABLE, "_") + count
+
+
+def _constellation_names(column: str) -> pl.Expr:
+    """Return the abbreviations that a column of indices stands for, null where it is NOT_ENTERED."""
+    names = dict(enumerate(constellations.ABBREVIATIONS))
+    return pl.col(column).replace_strict(names, default=None, return_dtype=pl.String)
 
 
 def _appearance_columns(store: TrackStore, ledger: pl.DataFrame) -> dict[str, pl.Series]:

@@ -51,11 +51,13 @@ class Choice:
             they meet to each other.
         stars_for: bodies whose meetings with stars are wanted.
         limits: see :class:`Limits`.
+        fewest_gathered: fewest bodies that make a gathering.
     """
 
     bodies: tuple[Body, ...] = BODIES
     stars_for: tuple[Body, ...] = BODIES[1:]
     limits: Limits = field(default_factory=Limits)
+    fewest_gathered: int = 3
 
     def among(self, allowed: Sequence[Body]) -> Ints:
         """Return the target numbers of the chosen bodies among some, in written order."""

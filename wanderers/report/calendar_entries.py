@@ -122,7 +122,8 @@ def unfolded(text: str) -> list[str]:
 
 def escaped(text: str) -> str:
     r"""Return the raw TEXT value of a text: ``\`` ``;`` ``,`` and line ends escaped, controls dropped."""
-    allowed = re.sub(r"[\x00-\x08\x0b-\x1f\x7f]", "", re.sub(r"\r\n?", "\n", text))
+    one_line_end = re.sub("\r\n?|[\x85\u2028\u2029]", "\n", text)
+    allowed = re.sub("[\x00-\x08\x0b-\x1f\x7f-\x9f\ud800-\udfff]", "", one_line_end)
     return re.sub(r"([\\;,])", r"\\\1", allowed).replace("\n", r"\n")
 
 

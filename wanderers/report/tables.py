@@ -42,9 +42,25 @@ def almanac_heading(table: pl.DataFrame, kernel: str) -> str:
     )
 
 
+def side_by_side_heading(table: pl.DataFrame, kernel: str) -> str:
+    """Say what a table of definitions side by side is."""
+    return (
+        f"{counted(table.height, 'row')}, a station or an approach each, geocentric, from {kernel}: "
+        "hours by which each other definition's instant is later than the one in longitude"
+    )
+
+
 def seasons_heading(table: pl.DataFrame, kernel: str) -> str:
     """Say what a season table is."""
     return f"{counted(table.height, 'retrograde season')}, geocentric, from {kernel}; dates in UTC"
+
+
+def gatherings_heading(table: pl.DataFrame, kernel: str) -> str:
+    """Say what a table of gatherings is."""
+    return (
+        f"{counted(table.height, 'gathering')}, geocentric, from {kernel}; times in UTC; Circle is the diameter "
+        "of the smallest circle, Arc the stretch of longitude, Sun the least elongation, in degrees"
+    )
 
 
 def track_heading(table: pl.DataFrame, body: Body, kernel: str) -> str:
@@ -62,8 +78,12 @@ Column = tuple[str, Callable[[pl.DataFrame], list[str]], bool]
 
 def _layout(table: pl.DataFrame) -> list[Column]:
     """Return title, cells and whether the column is numeric, for the kind of table this is."""
+    if "least_elongation_deg" in table.columns:
+        return GATHERINGS + (STANDING if "better_before_utc" in table.columns else [])
+    if "least_separation_utc" in table.columns:
+        return SIDE_BY_SIDE
     if schema.conforms(table, schema.EVENT_COLUMNS):
-        return EVENTS
+        return EVENTS if "better_before_utc" not in table.columns else [*EVENTS[:4], *STANDING]
     if schema.conforms(table, schema.SEASON_COLUMNS):
         return SEASONS
     if schema.conforms(table, schema.TRACK_COLUMNS):
@@ -149,6 +169,42 @@ EVENTS: Final[list[Column]] = [
     ("Separation", _fixed("separation_deg", 2), True),
     ("Elongation", _fixed("elongation_deg", 1), True),
     ("Mag", _fixed("magnitude", 1), True),
+]
+
+STANDING: Final[list[Column]] = [
+    ("Better before", _texts("better_before_utc", _day), False),
+    ("Better after", _texts("better_after_utc", _day), False),
+]
+
+GATHERINGS: Final[list[Column]] = [
+    ("UTC", _texts("utc", _minute), False),
+    ("What", lambda table: [detail.replace("+", ", ") for detail in table["detail"]], False),
+    ("In", _texts("constellation", str), False),
+    ("Circle", _fixed("separation_deg", 2), True),
+    ("Arc", _fixed("longitude_arc_deg", 2), True),
+    ("Sun", _fixed("least_elongation_deg", 0), True),
+]
+
+
+def _compared(table: pl.DataFrame) -> list[str]:
+    return [
+        f"{label(row['body'])} turns {row['detail']}" if row["kind"] == "station" else f"{label(row['body'])} – {label(row['other'])}"
+        for row in table.iter_rows(named=True)
+    ]
+
+
+def _later(name: str) -> Callable[[pl.DataFrame], list[str]]:
+    """Return a function that prints how much later a definition's instant is, in hours."""
+    return _texts(name, lambda hours: f"{hours:+.1f} h".replace("-", "−"))
+
+
+SIDE_BY_SIDE: Final[list[Column]] = [
+    ("What", _compared, False),
+    ("In longitude, UTC", _texts("longitude_utc", _minute), False),
+    ("In RA", _later("right_ascension_minus_longitude_hours"), True),
+    ("J2000", _later("j2000_minus_longitude_hours"), True),
+    ("Closest", _later("least_separation_minus_longitude_hours"), True),
+    ("Least sep.", _fixed("least_separation_deg", 2), True),
 ]
 
 SEASONS: Final[list[Column]] = [

@@ -229,14 +229,14 @@ def _set_heights(ax: Axes, longitude: Floats, cut: float | None) -> None:
         low, high = (float(longitude.min()), float(longitude.max())) if longitude.size else (0.0, 1.0)
         room = 0.10 * max(high - low, 1.0)
         ax.set_ylim(low - room, high + room)
-        _degree_ticks(ax, 8)
+        _degree_ticks(ax, 9)
     ax.set_ylabel("ecliptic longitude (degrees)")
 
 
 def _degree_ticks(ax: Axes, most: int) -> None:
     """Put ticks at round longitudes, written from 0 to 360."""
     low, high = ax.get_ylim()
-    steps = np.array([0.5, 1.0, 2.0, 5.0, 10.0, 15.0, 30.0, 60.0, 90.0])
+    steps = np.array([0.5, 1.0, 2.0, 5.0, 10.0, 20.0, 30.0, 60.0, 90.0])
     step = float(steps[np.argmax((high - low) / steps <= most)])
     at = np.arange(np.ceil(low / step) * step, high, step)
     decimals = 0 if step >= 1.0 else 1

@@ -187,7 +187,7 @@ def _minor(division: Division) -> Division | None:
         ("year", 5): 8,
         ("year", 10): 8,
         ("day", 5): 0,
-        ("day", 10): 0,
+        ("day", 10): 2,
     }
     number = finer.get((division.unit, division.every))
     return None if number is None else DIVISIONS[number]
