@@ -20,7 +20,7 @@ from wanderers.arrays import Floats
 from wanderers.ephemeris.chebyshev import Series
 from wanderers.ephemeris.spk_files import open_spk
 
-FORMAT_VERSION: Final = 2
+FORMAT_VERSION: Final = 3
 """Raise it whenever what a block holds changes: older files are then rebuilt."""
 
 ORIGIN_JD: Final = 2_287_184.5
@@ -123,7 +123,7 @@ def _series(layout: Layout, segments: tuple[int, Floats, Floats], values: Floats
     """Fit values at the nodes, shape (functions, components, segments * terms)."""
     first, middle, half = segments
     shaped = values.reshape(*values.shape[:2], middle.size, layout.terms)
-    coefficients = np.ascontiguousarray(chebyshev.fit(shaped).transpose(0, 2, 1, 3))
+    coefficients = np.ascontiguousarray(chebyshev.fit(shaped).transpose(1, 3, 0, 2))
     return Series(ORIGIN_JD, layout.segment_days, first, middle, half, coefficients)
 
 

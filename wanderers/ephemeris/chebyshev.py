@@ -10,7 +10,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from wanderers.arrays import Floats, Ints
+from wanderers.arrays import Bools, Floats, Ints
 
 
 def nodes(count: int) -> Floats:
@@ -53,6 +53,25 @@ def basis(x: Floats, count: int, order: int = 0) -> Floats:
 
 
 @dataclass(frozen=True, slots=True)
+class Located:
+    """Instants prepared for evaluation, which several series cut alike can share.
+
+    Attributes:
+        segment: row of each instant's segment, shape (n,).
+        half_days: half the length of that segment, shape (n,).
+        polynomials: Chebyshev polynomials there, shape (order + 1, terms, n).
+    """
+
+    segment: Ints
+    half_days: Floats
+    polynomials: Floats
+
+    def chosen(self, keep: Bools) -> Located:
+        """Return the instants where ``keep`` is true."""
+        return Located(self.segment[keep], self.half_days[keep], self.polynomials[..., keep])
+
+
+@dataclass(frozen=True, slots=True)
 class Series:
     """Several functions of time on one row of equal segments.
 
@@ -62,7 +81,8 @@ class Series:
         first_segment: number of the first segment held.
         middle_jd: shape (segments,), middle of what each segment was fitted on.
         half_days: shape (segments,), half its length; shorter than nominal where a kernel ends.
-        coefficients: shape (functions, segments, components, terms).
+        coefficients: shape (components, terms, functions, segments): what one evaluation gathers lies apart
+            by whole rows, so that arithmetic runs along instants.
     """
 
     origin_jd: float
@@ -87,7 +107,21 @@ class Series:
         number = np.floor((jd - self.origin_jd) / self.segment_days).astype(np.int64) - self.first_segment
         return np.clip(number, 0, self.middle_jd.size - 1)
 
-    def evaluate(self, function: Ints | int, jd: Floats, components: slice, order: int = 0) -> Floats:
+    def locate(self, jd: Floats, order: int = 0) -> Located:
+        """Prepare instants, shape (n,), at which this or a like-cut series of no more terms is evaluated."""
+        segment = self.segment_of(jd)
+        half = self.half_days[segment]
+        x = (jd - self.middle_jd[segment]) / half
+        return Located(segment, half, basis(x, self.coefficients.shape[1], order))
+
+    def evaluate(
+        self,
+        function: Ints | int,
+        jd: Floats,
+        components: slice,
+        order: int = 0,
+        located: Located | None = None,
+    ) -> Floats:
         """Evaluate at scattered instants.
 
         Args:
@@ -95,18 +129,18 @@ class Series:
             jd: shape (n,), within the span held.
             components: which components.
             order: highest derivative, 0 to 2, per day.
+            located: the instants prepared to that order or beyond, if they already are.
 
         Returns:
             shape (order + 1, components, n).
         """
-        segment = self.segment_of(jd)
-        half = self.half_days[segment]
-        terms = self.coefficients.shape[-1]
-        polynomials = basis((jd - self.middle_jd[segment]) / half, terms, order)
-        chosen = self.coefficients[:, :, components][function, segment]
-        out = np.einsum("nck,dkn->dcn", chosen, polynomials)
+        at = self.locate(jd, order) if located is None else located
+        _, terms, functions, segments = self.coefficients.shape
+        rows = self.coefficients[components].reshape(-1, terms, functions * segments)
+        chosen = np.take(rows, function * segments + at.segment, axis=2)
+        out = np.einsum("ckn,dkn->dcn", chosen, at.polynomials[: order + 1, :terms])
         for d in range(1, order + 1):
-            out[d] /= half**d
+            out[d] /= at.half_days**d
         return np.asarray(out)
 
     def evaluate_grid(self, functions: Ints, jd: Floats, components: slice, order: int = 0) -> Floats:
@@ -121,15 +155,14 @@ class Series:
         segment = self.segment_of(jd)
         first, last = int(segment[0]), int(segment[-1])
         x = (jd - self.middle_jd[segment]) / self.half_days[segment]
-        terms = self.coefficients.shape[-1]
-        polynomials = basis(x, terms, order)
+        polynomials = basis(x, self.coefficients.shape[1], order)
         scale = self.half_days[segment]
-        chosen = self.coefficients[functions, first : last + 1, components]
+        chosen = self.coefficients[components][:, :, functions, first : last + 1]
         starts = np.searchsorted(segment, np.arange(first, last + 2))
         width = int(np.max(np.diff(starts)))
         padded = np.minimum(starts[:-1, None] + np.arange(width), jd.size - 1)
         per_segment = polynomials[:, :, padded]  # (order + 1, terms, segments, width)
-        products = np.einsum("fsck,dksw->fdcsw", chosen, per_segment, optimize=True)
+        products = np.einsum("ckfs,dksw->fdcsw", chosen, per_segment, optimize=True)
         keep = starts[:-1, None] + np.arange(width) < starts[1:, None]
         out = products[..., keep]
         for d in range(1, order + 1):
@@ -160,5 +193,5 @@ def joined(parts: list[Series]) -> Series:
         head.first_segment,
         np.concatenate([part.middle_jd for part in parts]),
         np.concatenate([part.half_days for part in parts]),
-        np.concatenate([part.coefficients for part in parts], axis=1),
+        np.concatenate([part.coefficients for part in parts], axis=3),
     )

@@ -12,7 +12,7 @@ from wanderers.ephemeris import chebyshev
 from wanderers.ephemeris.blocks import Block
 from wanderers.ephemeris.bodies import Body
 from wanderers.arrays import Floats, Ints
-from wanderers.ephemeris.chebyshev import Series
+from wanderers.ephemeris.chebyshev import Located, Series
 
 POSITION: Final = slice(0, 3)
 EARTH_DISTANCE: Final = slice(3, 4)
@@ -54,7 +54,18 @@ class Tracks:
         series, row = self._series_of(body)
         return np.asarray(series.evaluate_grid(np.array([row]), jd, components, order)[0])
 
-    def evaluate_each(self, rows: Ints, jd: Floats, components: slice, order: int = 0) -> Floats:
+    def locate(self, jd: Floats, order: int = 0) -> Located:
+        """Prepare instants for every track but the Moon's: the observer's has the most terms."""
+        return self.observer.locate(jd, order)
+
+    def evaluate_each(
+        self,
+        rows: Ints,
+        jd: Floats,
+        components: slice,
+        order: int = 0,
+        located: Located | None = None,
+    ) -> Floats:
         """Evaluate one body an instant.
 
         Args:
@@ -62,6 +73,7 @@ class Tracks:
             jd: shape (n,).
             components: which components.
             order: highest derivative.
+            located: the instants prepared by :meth:`locate`, if they already are.
 
         Returns:
             shape (order + 1, components, n).
@@ -69,12 +81,14 @@ class Tracks:
         is_moon = rows == Body.MOON.order
         functions = self._function_of_order()[rows]
         if not is_moon.any():
-            return self.planets.evaluate(functions, jd, components, order)
+            return self.planets.evaluate(functions, jd, components, order, located)
         out = np.empty((order + 1, components.stop - components.start, jd.size))
         moon, _ = self._series_of(Body.MOON)
         out[..., is_moon] = moon.evaluate(0, jd[is_moon], components, order)
         others = ~is_moon
-        out[..., others] = self.planets.evaluate(functions[others], jd[others], components, order)
+        if others.any():
+            some = None if located is None else located.chosen(others)
+            out[..., others] = self.planets.evaluate(functions[others], jd[others], components, order, some)
         return out
 
     def _series_of(self, body: Body) -> tuple[Series, int]:

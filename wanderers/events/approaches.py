@@ -82,7 +82,8 @@ def _greatest_elongations(scene: Scene, met: Pairs) -> Batch:
 
 def separation_of(scene: Scene, first: Ints, second: Ints, jd: Floats) -> Floats:
     """Return the apparent separation of two targets an instant, degrees, shape (n,)."""
-    return separation_deg(scene.sky.apparent(first, jd)[0], scene.sky.apparent(second, jd)[0])
+    one, two = scene.sky.pair(first, second, jd)
+    return separation_deg(one[0], two[0])
 
 
 def chord_extrema(scene: Scene, pairs: Ints, within_deg: Floats) -> Roots:
@@ -104,9 +105,7 @@ def chord_extrema(scene: Scene, pairs: Ints, within_deg: Floats) -> Roots:
     usable: Bools = near[:, :-1] | near[:, 1:]
 
     def rate(row: Ints, jd: Floats) -> tuple[Floats, Floats]:
-        one = scene.sky.apparent(pairs[0][row], jd, order=2)
-        two = scene.sky.apparent(pairs[1][row], jd, order=2)
-        value, slope, _ = closing(one, two)
+        value, slope, _ = closing(*scene.sky.pair(pairs[0][row], pairs[1][row], jd, order=2))
         return value, slope
 
     return find_roots(rate, scene.samples.jd, values, slopes, usable=usable)

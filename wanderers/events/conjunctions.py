@@ -32,10 +32,9 @@ def _conjunctions_in(scene: Scene, pairs: Ints, frame: Frame) -> Batch:
     slopes = longitudes[a, 1] - longitudes[b, 1]
 
     def ahead(row: Ints, jd: Floats) -> tuple[Floats, Floats]:
-        one = scene.sky.longitude_deg(first[row], jd, frame, order=1)
-        two = scene.sky.longitude_deg(second[row], jd, frame, order=1)
-        return wrapped_deg(one[0] - two[0]), one[1] - two[1]
+        return scene.sky.lead_deg(first[row], second[row], jd, frame)
 
-    roots = find_roots(ahead, scene.samples.jd, values, slopes, period=360.0)
+    bends = longitudes[a, 2] - longitudes[b, 2]
+    roots = find_roots(ahead, scene.samples.jd, values, slopes, period=360.0, bends=bends)
     row = roots.function
     return batch(Kind.CONJUNCTION, frame, roots.jd, first[row], other=second[row])

@@ -43,36 +43,48 @@ class Circles:
 def find_constellation_entries(scene: Scene) -> list[Batch]:
     """Find where Sun, Moon and planets pass from one constellation into another."""
     bodies = scene.held(scene.choice.among(BODIES))
+    if bodies.size == 0:
+        return []
+    placed = [_placed(scene.samples.directions[body]) for body in bodies.tolist()]
     right_ascensions, declinations = constellations.boundary_lines()
-    found = [
-        _entries(scene, body, circles)
-        for body in bodies.tolist()
-        for circles in (Circles(0, right_ascensions), Circles(1, declinations))
+    return [
+        _entries(scene, bodies, placed, Circles(0, right_ascensions)),
+        _entries(scene, bodies, placed, Circles(1, declinations)),
     ]
-    return [one for one in found if one.jd.size] or [_as_batch(scene, 0, np.empty(0), np.empty((2, 0), np.int64))]
 
 
-def _entries(scene: Scene, body: int, circles: Circles) -> Batch:
-    """Find one body's entries across one family of circles."""
-    jd = scene.samples.jd
-    placed = _placed(scene.samples.directions[body])
-    if circles.axis == 0:
-        placed[0, 0] = np.degrees(np.unwrap(np.radians(placed[0, 0])))
-        circles = _on_every_turn(circles, placed[0, 0])
-    found = level_crossings(jd, placed[circles.axis, 0], placed[circles.axis, 1], circles.levels_deg)
-    found = Candidates(_real(found.crossing, circles, jd, placed), found.turning)
+def _entries(scene: Scene, bodies: Ints, placed: list[Floats], circles: Circles) -> Batch:
+    """Find entries across one family of circles; function number = body's place * circles + circle."""
+    count = circles.levels_deg.size
+    found = [
+        _candidates(scene.samples.jd, one, circles).renumbered(place * count)
+        for place, one in enumerate(placed)
+    ]
 
     def beyond(row: Ints, at: Floats) -> tuple[Floats, Floats]:
-        value, slope = _placed(scene.sky.apparent(np.full(at.size, body), at, order=1))[circles.axis]
-        return vectors.wrapped_deg(value - circles.levels_deg[row]), slope
+        value, slope = _placed(scene.sky.apparent(bodies[row // count], at, order=1))[circles.axis]
+        return vectors.wrapped_deg(value - circles.levels_deg[row % count]), slope
 
-    roots = solve(beyond, [found])
-    at = _placed(scene.sky.apparent(np.full(roots.jd.size, body), roots.jd, order=1))[:, 0]
-    level = circles.levels_deg[roots.function]
+    roots = solve(beyond, found)
+    body, level = bodies[roots.function // count], circles.levels_deg[roots.function % count]
+    at = _placed(scene.sky.apparent(body, roots.jd, order=1))[:, 0]
     lower, upper = _sides(circles, level, at[1 - circles.axis])
     sides = np.where(roots.rising, [lower, upper], [upper, lower])
     changes = sides[0] != sides[1]
-    return _as_batch(scene, body, roots.jd[changes], sides[:, changes])
+    return _as_batch(scene, body[changes], roots.jd[changes], sides[:, changes])
+
+
+def _candidates(jd: Floats, placed: Floats, circles: Circles) -> Candidates:
+    """Bracket one body's crossings of one family of circles, where these part constellations."""
+    value, count = placed[circles.axis, 0], circles.levels_deg.size
+    family = circles
+    if circles.axis == 0:
+        value = np.degrees(np.unwrap(np.radians(value)))
+        family = _on_every_turn(circles, value)
+    found = level_crossings(jd, value, placed[circles.axis, 1], family.levels_deg)
+    crossing = replace(found.crossing, function=found.crossing.function % count)
+    turning = replace(found.turning, function=found.turning.function % count)
+    return Candidates(_real(crossing, circles, jd, placed), turning)
 
 
 def _on_every_turn(circles: Circles, right_ascension_deg: Floats) -> Circles:
@@ -82,18 +94,16 @@ def _on_every_turn(circles: Circles, right_ascension_deg: Floats) -> Circles:
     return Circles(circles.axis, (turns[:, None] + circles.levels_deg).ravel())
 
 
-def _as_batch(scene: Scene, body: int, jd: Floats, sides: Ints) -> Batch:
+def _as_batch(scene: Scene, body: Ints, jd: Floats, sides: Ints) -> Batch:
     """Compose entries; ``sides`` holds the constellations left and entered, shape (2, n)."""
-    target = np.full(jd.size, body)
-    longitude = scene.sky.longitude_deg(target, jd, Frame.ECLIPTIC)[0] if jd.size else jd
     entries = batch(
         Kind.CONSTELLATION_ENTRY,
         None,
         jd,
-        target,
+        body,
         detail=sides[0].astype(np.int64),
         details=constellations.ABBREVIATIONS,
-        figure_deg=longitude,
+        figure_deg=scene.sky.longitude_deg(body, jd, Frame.ECLIPTIC)[0],
     )
     return replace(entries, entered=sides[1].astype(np.int64))
 
@@ -116,26 +126,24 @@ def _sides(circles: Circles, level: Floats, other: Floats) -> tuple[Ints, Ints]:
 def _real(brackets: Brackets, circles: Circles, jd: Floats, placed: Floats) -> Brackets:
     """Keep the brackets near which the circle parts two constellations."""
     other = _interpolated(jd, placed[1 - circles.axis], brackets.guess)
-    levels, parted = _parted(circles.axis)
-    level = np.searchsorted(levels, circles.levels_deg[brackets.function] % 360.0 if circles.axis == 0 else circles.levels_deg[brackets.function])
-    keep: Bools = parted[np.minimum(level, levels.size - 1), _bin(other)]
+    keep: Bools = _parted(circles.axis)[brackets.function, _bin(other)]
     return Brackets(*(getattr(brackets, name)[keep] for name in brackets.__slots__))
 
 
 @cache
-def _parted(axis: int) -> tuple[Floats, Bools]:
-    """Return the circles of an axis, and in which bins along each it comes near to parting constellations."""
+def _parted(axis: int) -> Bools:
+    """Return, for the circles of an axis, in which bins along each it comes near to parting constellations."""
     levels = constellations.boundary_lines()[axis]
     parted = np.zeros((levels.size, round(540.0 / BIN_DEG)), dtype=np.bool_)
     for piece in constellations.boundary_segments():
         fixed, ends = piece[[axis, axis + 2]], np.sort(piece[[1 - axis, 3 - axis]])
-        level = np.flatnonzero(np.abs(levels - fixed[0] % 360.0 if axis == 0 else levels - fixed[0]) < ACROSS_DEG)
+        level = np.flatnonzero(np.abs(vectors.wrapped_deg(levels - fixed[0])) < ACROSS_DEG)
         if fixed[0] == fixed[1] and level.size:
             low, high = _bin(ends + DOUBTS_DEG[axis] * np.array([-1.0, 1.0]))
             parted[level, max(low, 0) : high + 1] = True
             if axis == 1:
                 _mark_across_zero(parted, int(level[0]), int(low), int(high))
-    return levels, parted
+    return parted
 
 
 def _mark_across_zero(parted: Bools, level: int, low: int, high: int) -> None:

@@ -23,6 +23,13 @@ from wanderers.events.search import Brackets, refine
 OCCULTATION_DETAILS: Final = ("planet", "star", "moon")
 TRANSIT_DETAILS: Final = ("mercury", "venus")
 DOUBLINGS: Final = 12
+SLOPE_STEP_DAYS: Final = 1e-4
+
+EDGE_OF: Final = np.array([0, 1, 1, 0])
+"""By contact: 0 where the outer edges touch, 1 where one disc is just inside the other."""
+
+SIDE_OF: Final = np.array([-1.0, -1.0, 1.0, 1.0])
+"""By contact: before or after the least separation."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,8 +40,8 @@ class Pairs:
     second: Ints
     jd: Floats
 
-    def chosen(self, keep: Bools) -> Pairs:
-        """Return the pairs where ``keep`` is true."""
+    def chosen(self, keep: Bools | Ints) -> Pairs:
+        """Return the pairs where ``keep`` is true, or of those rows."""
         return Pairs(self.first[keep], self.second[keep], self.jd[keep])
 
 
@@ -49,8 +56,7 @@ def semidiameter_deg(sky: Sky, target: Ints, jd: Floats) -> Floats:
 
 def overlapping(sky: Sky, pairs: Pairs) -> Bools:
     """Return whose discs overlap at the least separation."""
-    gap, _ = _gaps(sky, pairs, pairs.jd)
-    return np.asarray(gap < 0.0)
+    return np.asarray(_gaps(sky, pairs, pairs.jd)[0] < 0.0)
 
 
 def occultations(sky: Sky, pairs: Pairs) -> Batch:
@@ -93,30 +99,32 @@ def transits(sky: Sky, pairs: Pairs) -> Batch:
 
 def contacts(sky: Sky, met: Pairs) -> Floats:
     """Return the four contacts of overlapping discs, shape (n, 4), NaN where one disc stays outside."""
-    outer, inner = _gaps(sky, met, met.jd)
+    now = _gaps(sky, met, met.jd)
     reach = _reach_days(sky, met)
-    out = np.full((met.jd.size, 4), np.nan)
-    inside = inner < 0.0
-    for column, side, edge, there in ((0, -1, 0, outer < 0.0), (1, -1, 1, inside), (2, 1, 1, inside), (3, 1, 0, outer < 0.0)):
-        out[there, column] = _contact(sky, met.chosen(there), reach[there] * side, edge)
-    return out
-
-
-def _contact(sky: Sky, met: Pairs, reach_days: Floats, edge: int) -> Floats:
-    """Return the instant at which one edge is passed, before (negative reach) or after the middle."""
-    size = met.jd.size
-    gap_now = _gaps(sky, met, met.jd)[edge]
+    pair, contact = np.nonzero(np.stack([now[EDGE_OF[number]] < 0.0 for number in range(4)], axis=1))
+    edge, side = EDGE_OF[contact], SIDE_OF[contact]
+    far = (met.jd[pair] + side * reach[pair]).clip(sky.tracks.start_jd, sky.tracks.end_jd)
 
     def gap(row: Ints, jd: Floats) -> tuple[Floats, Floats]:
-        some, h = met.chosen(row), 1e-4
-        before, now, after = (_gaps(sky, some, at)[edge] for at in (jd - h, jd, jd + h))
-        return now, (after - before) / (2.0 * h)
+        some, h = met.chosen(pair[row]), SLOPE_STEP_DAYS
+        before, at, after = (_gaps(sky, some, jd + days) for days in (-h, 0.0, h))
+        own = edge[row], np.arange(jd.size)
+        return at[own], (after[own] - before[own]) / (2.0 * h)
 
-    far = met.jd + reach_days
-    ends = np.sort(np.stack([met.jd, far]), axis=0)
-    gap_far = _gaps(sky, met, far)[edge]
-    low, high = (gap_now, gap_far) if size and reach_days[0] > 0 else (gap_far, gap_now)
-    return refine(gap, Brackets(np.arange(size), ends[0], ends[1], low, high, ends.mean(axis=0)))
+    gap_now = now[edge, pair]
+    gap_far = _gaps(sky, met.chosen(pair), far)[edge, np.arange(pair.size)]
+    later = side > 0
+    brackets = Brackets(
+        np.arange(pair.size),
+        np.minimum(met.jd[pair], far),
+        np.maximum(met.jd[pair], far),
+        np.where(later, gap_now, gap_far),
+        np.where(later, gap_far, gap_now),
+        (met.jd[pair] + far) / 2.0,
+    )
+    out = np.full((met.jd.size, 4), np.nan)
+    out[pair, contact] = refine(gap, brackets)
+    return out
 
 
 def _reach_days(sky: Sky, met: Pairs) -> Floats:
@@ -133,12 +141,13 @@ def _reach_days(sky: Sky, met: Pairs) -> Floats:
     return reach
 
 
-def _gaps(sky: Sky, met: Pairs, jd: Floats) -> tuple[Floats, Floats]:
-    """Return separation less the sum, and less the difference, of the semidiameters, degrees, shape (n,)."""
+def _gaps(sky: Sky, met: Pairs, jd: Floats) -> Floats:
+    """Return separation less the sum, and less the difference, of the semidiameters, degrees, shape (2, n)."""
     apart = _separations(sky, met, jd)
     one, two = semidiameter_deg(sky, met.first, jd), semidiameter_deg(sky, met.second, jd)
-    return apart - (one + two), apart - np.abs(one - two)
+    return np.stack([apart - (one + two), apart - np.abs(one - two)])
 
 
 def _separations(sky: Sky, met: Pairs, jd: Floats) -> Floats:
-    return separation_deg(sky.apparent(met.first, jd)[0], sky.apparent(met.second, jd)[0])
+    one, two = sky.pair(met.first, met.second, jd)
+    return separation_deg(one[0], two[0])

@@ -10,11 +10,12 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
-from typing import Final
+from typing import Final, TypeVar
 
 import numpy as np
 
 from wanderers.arrays import Bools, Floats, Ints
+from wanderers.events.hermite import hermite_root
 
 ValueAndSlope = Callable[[Ints, Floats], tuple[Floats, Floats]]
 """Takes function numbers and instants, shape (n,) each; returns value and slope per day, shape (n,) each."""
@@ -27,7 +28,8 @@ BRACKET_DAYS: Final = 1e-9
 """Length at which a bracket that is only halved counts as its root: twice the spacing of Julian dates."""
 
 MOST_STEPS: Final = 60
-CUBIC_STEPS: Final = 6
+TANGENT_SLACK: Final = 1e-3
+"""By how much, relatively, the tangents' reach may be short: slopes may be off by as much."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,6 +42,23 @@ class Brackets:
     left_value: Floats
     right_value: Floats
     guess: Floats
+
+
+@dataclass(frozen=True, slots=True)
+class Turns:
+    """Intervals at whose ends a function has one sign, heading for zero and away again, shape (n,) each."""
+
+    function: Ints
+    left: Floats
+    right: Floats
+    left_value: Floats
+    right_value: Floats
+    left_slope: Floats
+    right_slope: Floats
+
+    def chosen(self, keep: Bools) -> Turns:
+        """Return the intervals where ``keep`` is true."""
+        return Turns(*(getattr(self, name)[keep] for name in self.__slots__))
 
 
 @dataclass(frozen=True, slots=True)
@@ -62,11 +81,18 @@ class Candidates:
 
     Attributes:
         crossing: brackets of a root each.
-        turning: intervals at whose ends a function has one sign, heading for zero and away again.
+        turning: where two more might be.
     """
 
     crossing: Brackets
-    turning: Brackets
+    turning: Turns
+
+    def renumbered(self, first_function: int) -> Candidates:
+        """Return the same candidates with their functions counted from another number."""
+        return Candidates(
+            replace(self.crossing, function=self.crossing.function + first_function),
+            replace(self.turning, function=self.turning.function + first_function),
+        )
 
 
 def find_roots(
@@ -77,6 +103,7 @@ def find_roots(
     *,
     period: float | None = None,
     usable: Bools | None = None,
+    bends: Floats | None = None,
 ) -> Roots:
     """Find every root of several functions sampled on one grid.
 
@@ -87,11 +114,12 @@ def find_roots(
         slopes: their rates per day, shape (functions, n).
         period: for angles wrapped to plus or minus half a period: the jump that is no root.
         usable: shape (functions, n - 1), the intervals to look into; all when None.
+        bends: second derivatives per day squared, shape (functions, n), for better first guesses.
 
     Returns:
         all roots between the first and last sample. Complete if no function turns twice within one step.
     """
-    return solve(evaluate, [candidates(jd, values, slopes, period=period, usable=usable)])
+    return solve(evaluate, [candidates(jd, values, slopes, period=period, usable=usable, bends=bends)])
 
 
 def candidates(
@@ -101,6 +129,7 @@ def candidates(
     *,
     period: float | None = None,
     usable: Bools | None = None,
+    bends: Floats | None = None,
     first_function: int = 0,
 ) -> Candidates:
     """Bracket what :func:`solve` refines; arguments as for :func:`find_roots`.
@@ -111,14 +140,15 @@ def candidates(
         slopes: their rates.
         period: of wrapped angles.
         usable: the intervals to look into.
+        bends: second derivatives.
         first_function: number of the function in the first row.
     """
     usable = np.ones((values.shape[0], jd.size - 1), dtype=np.bool_) if usable is None else usable
     if period is not None:
         usable = usable & (np.abs(np.diff(values, axis=1)) < period / 2.0)
-    crossing = sign_changes(jd, values, slopes, usable)
+    crossing = sign_changes(jd, values, slopes, usable, bends)
     turning = turns_toward_zero(jd, values, slopes, usable)
-    return Candidates(_renumbered(crossing, first_function), _renumbered(turning, first_function))
+    return Candidates(crossing, turning).renumbered(first_function)
 
 
 def solve(evaluate: ValueAndSlope, found: Sequence[Candidates]) -> Roots:
@@ -144,78 +174,131 @@ def level_crossings(jd: Floats, values: Floats, slopes: Floats, levels: Floats) 
         candidates whose function is the number of the level, and whose values are counted from it.
     """
     cell = np.searchsorted(levels, values, side="right")
-    crossing = _level_brackets(jd, values, slopes, levels, (cell[:-1], cell[1:]))
-    turns = slopes[:-1] * slopes[1:] < 0.0
-    extreme = _tangents_meet(jd, values, slopes)
-    beyond = np.searchsorted(levels, np.where(turns, extreme, values[1:]), side="right")
-    high = slopes[:-1] > 0.0
-    nearest = np.where(high, np.maximum(cell[:-1], cell[1:]), np.minimum(cell[:-1], cell[1:]))
-    spans = (np.where(turns, nearest, 0), np.where(turns, beyond, 0))
-    return Candidates(crossing, _level_brackets(jd, values, slopes, levels, spans))
-
-
-def _tangents_meet(jd: Floats, values: Floats, slopes: Floats) -> Floats:
-    """Return where the tangents at neighbouring samples meet, shape (n - 1,): no turn between goes beyond."""
-    bend = slopes[:-1] - slopes[1:]
-    rise = values[1:] - values[:-1] - slopes[1:] * np.diff(jd)
-    offset = np.divide(rise, bend, out=np.zeros_like(rise), where=bend != 0.0)
-    return np.asarray(values[:-1] + slopes[:-1] * offset)
-
-
-def _level_brackets(
-    jd: Floats, values: Floats, slopes: Floats, levels: Floats, cells: tuple[Ints, Ints]
-) -> Brackets:
-    """Return one bracket for every level between two cells of each interval."""
-    low, high = np.minimum(*cells), np.maximum(*cells)
-    count = high - low
-    column = np.repeat(np.arange(count.size), count)
-    first = np.cumsum(count) - count
-    level = np.arange(column.size) - np.repeat(first, count) + np.repeat(low, count)
-    left_value, right_value = values[column] - levels[level], values[column + 1] - levels[level]
+    column, level = _levels_between(cell[:-1], cell[1:])
+    ends = [np.stack([values[at] - levels[level], slopes[at]]) for at in (column, column + 1)]
     left, right = jd[column], jd[column + 1]
-    ends = (left_value, right_value, slopes[column], slopes[column + 1])
-    return Brackets(level, left, right, left_value, right_value, left + cubic_root(*ends, right - left))
+    guess = left + hermite_root(*ends, right - left)
+    crossing = Brackets(level, left, right, ends[0][0], ends[1][0], guess)
+    return Candidates(crossing, _level_turns(jd, values, slopes, levels))
 
 
-def sign_changes(jd: Floats, values: Floats, slopes: Floats, usable: Bools) -> Brackets:
+def _level_turns(jd: Floats, values: Floats, slopes: Floats, levels: Floats) -> Turns:
+    """Return, for every interval in which the function turns, the levels its tangents reach beyond both ends."""
+    turns = np.flatnonzero(slopes[:-1] * slopes[1:] < 0.0)
+    bend = slopes[turns] - slopes[turns + 1]
+    offset = (values[turns + 1] - values[turns] - slopes[turns + 1] * np.diff(jd)[turns]) / bend
+    extreme = values[turns] + slopes[turns] * offset
+    high = slopes[turns] > 0.0
+    ends = np.stack([values[turns], values[turns + 1]])
+    nearest = np.where(high, ends.max(axis=0), ends.min(axis=0))
+    cells = [np.searchsorted(levels, bound, side="right") for bound in (nearest, extreme)]
+    row, level = _levels_between(*cells)
+    column = turns[row]
+    return Turns(
+        level,
+        jd[column],
+        jd[column + 1],
+        values[column] - levels[level],
+        values[column + 1] - levels[level],
+        slopes[column],
+        slopes[column + 1],
+    )
+
+
+def _levels_between(one: Ints, two: Ints) -> tuple[Ints, Ints]:
+    """Return row and level number of every level that separates two cells, shape (k,) each."""
+    low, high = np.minimum(one, two), np.maximum(one, two)
+    count = high - low
+    row = np.repeat(np.arange(count.size), count)
+    first = np.cumsum(count) - count
+    return row, np.arange(row.size) - np.repeat(first, count) + np.repeat(low, count)
+
+
+def sign_changes(
+    jd: Floats, values: Floats, slopes: Floats, usable: Bools, bends: Floats | None = None
+) -> Brackets:
     """Bracket every change of sign between neighbouring samples (zero counts as positive)."""
     positive = values >= 0.0
-    changed = usable & (positive[:, :-1] != positive[:, 1:])
-    return _brackets(jd, values, slopes, *np.nonzero(changed))
+    row, column = np.nonzero(usable & (positive[:, :-1] != positive[:, 1:]))
+    derivatives = [values, slopes] if bends is None else [values, slopes, bends]
+    ends = [np.stack([stack[row, column + side] for stack in derivatives]) for side in (0, 1)]
+    left, right = jd[column], jd[column + 1]
+    return Brackets(
+        row, left, right, ends[0][0], ends[1][0], left + hermite_root(ends[0], ends[1], right - left)
+    )
 
 
-def turns_toward_zero(jd: Floats, values: Floats, slopes: Floats, usable: Bools) -> Brackets:
-    """Bracket every interval inside which a function heads for zero and away again.
+def turns_toward_zero(jd: Floats, values: Floats, slopes: Floats, usable: Bools) -> Turns:
+    """Bracket every interval inside which a function may head across zero and back.
 
-    Both ends have one sign. Intervals in which even the straight lines from both ends cannot reach zero are
-    left out: between two samples of a function that turns once, the curve stays on the near side of both
-    tangents' meeting point when it is convex toward zero.
+    Both ends have one sign, slopes lead toward zero from both, and their tangents reach it.
     """
     sign = np.where(values >= 0.0, 1.0, -1.0)
-    step = np.diff(jd)
-    same = usable & (sign[:, :-1] == sign[:, 1:])
-    inward = (sign * slopes)[:, :-1] < 0.0
-    outward = (sign * slopes)[:, 1:] > 0.0
-    row, column = np.nonzero(same & inward & outward)
-    left, right = np.abs(values[row, column]), np.abs(values[row, column + 1])
-    fall, rise = np.abs(slopes[row, column]), np.abs(slopes[row, column + 1])
-    lowest = (left * rise + right * fall - fall * rise * step[column]) / (fall + rise)
-    reachable = lowest <= 0.0
-    return _brackets(jd, values, slopes, row[reachable], column[reachable])
+    toward = sign * slopes
+    turning = usable & (sign[:, :-1] == sign[:, 1:]) & (toward[:, :-1] < 0.0) & (toward[:, 1:] > 0.0)
+    row, column = np.nonzero(turning)
+    turns = Turns(
+        row,
+        jd[column],
+        jd[column + 1],
+        values[row, column],
+        values[row, column + 1],
+        slopes[row, column],
+        slopes[row, column + 1],
+    )
+    return turns.chosen(_may_reach_zero(turns))
 
 
-def split_turns(evaluate: ValueAndSlope, turns: Brackets) -> Brackets:
-    """Find each turn's extremum; where it reaches across zero, return the two brackets beside it."""
-    if turns.function.size == 0:
-        return turns
-    extremum = _turning_points(evaluate, turns)
-    value, _ = evaluate(turns.function, extremum)
-    crosses = (value >= 0.0) != (turns.left_value >= 0.0)
-    function, at, peak = turns.function[crosses], extremum[crosses], value[crosses]
-    left, right = turns.left[crosses], turns.right[crosses]
-    before = Brackets(function, left, at, turns.left_value[crosses], peak, (left + at) / 2.0)
-    after = Brackets(function, at, right, peak, turns.right_value[crosses], (at + right) / 2.0)
+def split_turns(evaluate: ValueAndSlope, turns: Turns) -> Brackets:
+    """Follow each turn to where it reaches across zero, and return the two brackets beside that point.
+
+    The interval around the turn is halved until the function is seen on the other side of zero, or until the
+    tangents at its ends meet short of zero: a curve that is convex toward zero stays on the near side of
+    both.
+    """
+    interval, found = turns, [_no_brackets()]
+    for _ in range(MOST_STEPS):
+        if interval.function.size == 0:
+            break
+        middle = (interval.left + interval.right) / 2.0
+        value, slope = evaluate(interval.function, middle)
+        crossed = (value >= 0.0) != (interval.left_value >= 0.0)
+        found.append(_beside(interval.chosen(crossed), middle[crossed], value[crossed]))
+        interval = _halved(interval, middle, value, slope).chosen(~crossed)
+        wide = interval.right - interval.left > BRACKET_DAYS
+        interval = interval.chosen(wide & _may_reach_zero(interval))
+    return _joined(found)
+
+
+def _beside(interval: Turns, at: Floats, peak: Floats) -> Brackets:
+    """Return the brackets on both sides of a point beyond zero."""
+    left, right = interval.left, interval.right
+    before = Brackets(interval.function, left, at, interval.left_value, peak, (left + at) / 2.0)
+    after = Brackets(interval.function, at, right, peak, interval.right_value, (at + right) / 2.0)
     return _joined([before, after])
+
+
+def _halved(interval: Turns, middle: Floats, value: Floats, slope: Floats) -> Turns:
+    """Return the halves that hold the turns: beyond the middle where the function still heads for zero."""
+    inward = np.where(interval.left_value >= 0.0, -1.0, 1.0)
+    later = slope * inward > 0.0
+    return Turns(
+        interval.function,
+        np.where(later, middle, interval.left),
+        np.where(later, interval.right, middle),
+        np.where(later, value, interval.left_value),
+        np.where(later, interval.right_value, value),
+        np.where(later, slope, interval.left_slope),
+        np.where(later, interval.right_slope, slope),
+    )
+
+
+def _may_reach_zero(interval: Turns) -> Bools:
+    """Return where the tangents at both ends meet at or beyond zero, or come close to it."""
+    left, right = np.abs(interval.left_value), np.abs(interval.right_value)
+    fall, rise = np.abs(interval.left_slope), np.abs(interval.right_slope)
+    step = interval.right - interval.left
+    return np.asarray(left * rise + right * fall <= fall * rise * step * (1.0 + TANGENT_SLACK))
 
 
 def refine(evaluate: ValueAndSlope, brackets: Brackets) -> Floats:
@@ -251,61 +334,14 @@ def refine(evaluate: ValueAndSlope, brackets: Brackets) -> Floats:
     return root
 
 
-def _turning_points(evaluate: ValueAndSlope, turns: Brackets) -> Floats:
-    """Bisect on the sign of the slope, shape (n,): few candidates, so the plain method will do."""
-    low, high = turns.left.copy(), turns.right.copy()
-    inward = np.where(turns.left_value >= 0.0, -1.0, 1.0)
-    for _ in range(36):
-        middle = (low + high) / 2.0
-        _, slope = evaluate(turns.function, middle)
-        still_inward = slope * inward > 0.0
-        low = np.where(still_inward, middle, low)
-        high = np.where(still_inward, high, middle)
-    return np.asarray((low + high) / 2.0)
+def _no_brackets() -> Brackets:
+    nothing = np.empty(0)
+    return Brackets(np.empty(0, dtype=np.int64), nothing, nothing, nothing, nothing, nothing)
 
 
-def _brackets(jd: Floats, values: Floats, slopes: Floats, row: Ints, column: Ints) -> Brackets:
-    left, right = jd[column], jd[column + 1]
-    left_value, right_value = values[row, column], values[row, column + 1]
-    ends = (left_value, right_value, slopes[row, column], slopes[row, column + 1])
-    return Brackets(row, left, right, left_value, right_value, left + cubic_root(*ends, right - left))
+Several = TypeVar("Several", Brackets, Turns)
 
 
-def cubic_root(
-    left_value: Floats, right_value: Floats, left_slope: Floats, right_slope: Floats, step: Floats
-) -> Floats:
-    """Return the offset at which the cubic through both ends' values and slopes is zero, shape (n,).
-
-    Newton steps from the chord's root, bisecting where one would leave the bracket. Where the ends agree in
-    sign there is no bracket, and any offset within the step may come out.
-    """
-    rise = right_value - left_value
-    chord = np.divide(-left_value, rise, out=np.full_like(rise, 0.5), where=rise != 0.0)
-    s = np.where((chord >= 0.0) & (chord <= 1.0), chord, 0.5)
-    low, high = np.zeros_like(s), np.ones_like(s)
-    a, b = step * left_slope, step * right_slope
-    quadratic, cubic = 3.0 * rise - 2.0 * a - b, a + b - 2.0 * rise
-    positive_left = left_value >= 0.0
-    for _ in range(CUBIC_STEPS):
-        value = left_value + s * (a + s * (quadratic + s * cubic))
-        slope = a + s * (2.0 * quadratic + 3.0 * s * cubic)
-        beyond_low = (value >= 0.0) == positive_left
-        low, high = np.where(beyond_low, s, low), np.where(beyond_low, high, s)
-        newton = s - np.divide(value, slope, out=np.full_like(s, np.inf), where=slope != 0.0)
-        s = np.where((newton > low) & (newton < high), newton, (low + high) / 2.0)
-    return np.asarray(s * step)
-
-
-def _renumbered(brackets: Brackets, first_function: int) -> Brackets:
-    return replace(brackets, function=brackets.function + first_function)
-
-
-def _joined(parts: list[Brackets]) -> Brackets:
-    return Brackets(
-        np.concatenate([part.function for part in parts]),
-        np.concatenate([part.left for part in parts]),
-        np.concatenate([part.right for part in parts]),
-        np.concatenate([part.left_value for part in parts]),
-        np.concatenate([part.right_value for part in parts]),
-        np.concatenate([part.guess for part in parts]),
-    )
+def _joined(parts: Sequence[Several]) -> Several:
+    kind = type(parts[0])
+    return kind(*(np.concatenate([getattr(part, name) for part in parts]) for name in kind.__slots__))

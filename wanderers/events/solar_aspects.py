@@ -97,10 +97,9 @@ def _at_angles(scene: Scene, targets: Ints, angles_deg: Sequence[float]) -> Root
     slopes = np.broadcast_to(east[:, None, 1], values.shape)
 
     def from_angle(row: Ints, jd: Floats) -> tuple[Floats, Floats]:
-        target = scene.sky.longitude_deg(targets[row // angles.size], jd, ECLIPTIC, order=1)
-        reference = scene.sky.longitude_deg(np.full(jd.size, SUN), jd, ECLIPTIC, order=1)
-        difference = target - reference
-        return wrapped_deg(difference[0] - angles[row % angles.size]), difference[1]
+        sun_there = np.full(jd.size, SUN)
+        east_of, rate = scene.sky.lead_deg(targets[row // angles.size], sun_there, jd, ECLIPTIC)
+        return wrapped_deg(east_of - angles[row % angles.size]), rate
 
     shape = (-1, scene.samples.jd.size)
     return find_roots(

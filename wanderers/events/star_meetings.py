@@ -73,16 +73,14 @@ def _conjunctions(scene: Scene, pairing: Pairing, directions: Floats, frame: Fra
                 scene.samples.jd,
                 ahead,
                 moving[1] - star[:, 1],
+                bends=np.broadcast_to(moving[2], ahead.shape),
                 usable=near[:, :-1] & near[:, 1:],
                 first_function=place * pairing.stars.size,
             )
         )
 
     def ahead_of(row: Ints, jd: Floats) -> tuple[Floats, Floats]:
-        body, fixed = pairing.targets(row)
-        one = scene.sky.longitude_deg(body, jd, frame, order=1)
-        two = scene.sky.longitude_deg(fixed, jd, frame, order=1)
-        return wrapped_deg(one[0] - two[0]), one[1] - two[1]
+        return scene.sky.lead_deg(*pairing.targets(row), jd, frame)
 
     roots = solve(ahead_of, found)
     first, second = pairing.targets(roots.function)
@@ -109,8 +107,7 @@ def _extrema(scene: Scene, pairing: Pairing, directions: Floats) -> Roots:
         )
 
     def rate(row: Ints, jd: Floats) -> tuple[Floats, Floats]:
-        body, fixed = pairing.targets(row)
-        return closing(scene.sky.apparent(body, jd, order=2), scene.sky.apparent(fixed, jd, order=2))[:2]
+        return closing(*scene.sky.pair(*pairing.targets(row), jd, order=2))[:2]
 
     return solve(rate, found)
 
