@@ -27,7 +27,11 @@ class UnknownNameError(UsageProblem, LookupError):
         self.given = given
         self.valid = tuple(valid)
         self.nearest = tuple(difflib.get_close_matches(given.lower(), self.valid, n=3, cutoff=0.5))
-        hint = f"did you mean {' or '.join(self.nearest)}?" if self.nearest else f"choose from {', '.join(self.valid)}"
+        hint = (
+            f"did you mean {' or '.join(self.nearest)}?"
+            if self.nearest
+            else f"choose from {', '.join(self.valid)}"
+        )
         super().__init__(f"unknown {what} '{given}': {advice or hint}")
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import csv
 from datetime import UTC, datetime, timedelta
 from pathlib import Path
 from typing import Any
@@ -13,7 +14,8 @@ from wanderers.ephemeris.bodies import BODIES
 from wanderers.ephemeris.kernels import Kernel
 from wanderers.report.calendars import Style
 
-KERNEL = Kernel(Path("/nowhere/de999.bsp"), "0123456789abcdef" * 4, 1_000, "DE999", 2_400_000.5, 2_500_000.5, BODIES)
+CHECKSUM = "0123456789abcdef" * 4
+KERNEL = Kernel(Path("nowhere/de999.bsp"), CHECKSUM, 1_000, "DE999", 2_400_000.5, 2_500_000.5, BODIES)
 STYLE = Style("Lantern Hill planetarium", KERNEL)
 
 
@@ -48,28 +50,40 @@ TRANSIT = event(
     contact4_utc="2032-11-13T11:07:29.000Z", utc_uncertainty_s=1.94, delta_t_s=72.1,
 )  # fmt: skip
 STAR = event(
-    "occultation", "2027-05-01T10:00:00.000Z", body="moon", other="Citalá, the jaguar; a\\N star", detail="star",
-    separation_deg=0.01, elongation_deg=95.0, distance_au=0.0026,
+    "occultation", "2027-05-01T10:00:00.000Z", body="moon", other="Citalá, the jaguar; a\\N star",
+    detail="star", separation_deg=0.01, elongation_deg=95.0, distance_au=0.0026,
 )  # fmt: skip
 
-ONE_OF_EVERY_KIND = table(
-    STATION, CONJUNCTION, NEAR_SUN, TRANSIT, STAR,
-    event("opposition", "2027-02-19T15:51:00.000Z", frame="ecliptic", elongation_deg=175.5),
-    event("solar_conjunction", "2027-01-01T17:07:31.092Z", body="mercury", detail="superior", frame="ecliptic", elongation_deg=1.8),
-    event("quadrature", "2027-02-20T15:11:00.000Z", body="uranus", detail="east", frame="ecliptic", elongation_deg=90.0),
-    event("greatest_elongation", "2027-01-03T17:58:00.601Z", body="venus", detail="west", elongation_deg=46.95),
-    event("perigee", "2027-01-03T02:32:43.283Z", body="sun", distance_au=0.98333),
-    event("apogee", "2027-01-07T08:08:00.000Z", body="moon", distance_au=0.0027179, elongation_deg=6.4),
-    event("perihelion", "2027-02-06T07:44:00.000Z", body="mercury", elongation_deg=17.7),
-    event("aphelion", "2027-03-04T23:06:00.000Z", elongation_deg=161.1),
-    event("greatest_brilliancy", "2028-04-30T01:32:00.000Z", body="venus", magnitude=-4.76, elongation_deg=37.5),
-    event("gathering", "2027-08-19T23:06:00.000Z", body="mercury", detail="mercury+venus+jupiter", separation_deg=6.3, elongation_deg=28.0),
-    event("constellation_entry", "2027-01-02T05:30:00.000Z", body="moon", detail="Vir", constellation="Lib", elongation_deg=61.7),
-    event("node", "2027-01-10T15:57:00.000Z", body="moon", detail="ascending", frame="ecliptic", elongation_deg=30.5),
-    event("season_point", "2027-03-20T20:25:00.000Z", body="sun", detail="equinox_march", frame="ecliptic", constellation="Psc"),
-    event("ring_plane_crossing", "2038-10-15T12:00:00.000Z", body="saturn", detail="earth", elongation_deg=40.0),
-    event("moon_phase", "2027-01-07T20:24:00.000Z", body="moon", detail="new", frame="ecliptic", elongation_deg=2.9),
-)  # fmt: skip
+THE_OTHER_KINDS = """
+kind,utc,body,detail,frame,separation_deg,elongation_deg,magnitude,distance_au,constellation
+opposition,2027-02-19T15:51:00.000Z,mars,,ecliptic,,175.5,-1.3,0.68,Leo
+solar_conjunction,2027-01-01T17:07:31.092Z,mercury,superior,ecliptic,,1.8,-1.3,1.44,Sgr
+quadrature,2027-02-20T15:11:00.000Z,uranus,east,ecliptic,,90.0,5.7,19.39,Tau
+greatest_elongation,2027-01-03T17:58:00.601Z,venus,west,,,46.95,-4.5,0.674,Lib
+perigee,2027-01-03T02:32:43.283Z,sun,,,,,-26.8,0.98333,Sgr
+apogee,2027-01-07T08:08:00.000Z,moon,,,,6.4,,0.0027179,Sgr
+perihelion,2027-02-06T07:44:00.000Z,mercury,,,,17.7,-0.1,0.872,Aqr
+aphelion,2027-03-04T23:06:00.000Z,mars,,,,161.1,-1.0,0.697,Leo
+greatest_brilliancy,2028-04-30T01:32:00.000Z,venus,,,,37.5,-4.76,0.42,Tau
+gathering,2027-08-19T23:06:00.000Z,mercury,mercury+venus+jupiter,,6.3,28.0,-1.1,1.35,Leo
+constellation_entry,2027-01-02T05:30:00.000Z,moon,Vir,,,61.7,-8.8,0.00265,Lib
+node,2027-01-10T15:57:00.000Z,moon,ascending,ecliptic,,30.5,-6.8,0.0027,Cap
+season_point,2027-03-20T20:25:00.000Z,sun,equinox_march,ecliptic,,,-26.7,0.996,Psc
+ring_plane_crossing,2038-10-15T12:00:00.000Z,saturn,earth,,,40.0,1.1,10.2,Vir
+moon_phase,2027-01-07T20:24:00.000Z,moon,new,ecliptic,,2.9,,0.00272,Sgr
+"""
+
+
+def _others() -> list[dict[str, Any]]:
+    rows = csv.DictReader(THE_OTHER_KINDS.strip().splitlines())
+    numbers = {name for name, kind in schema.EVENT_COLUMNS.items() if kind == pl.Float64}
+    return [
+        event(**{name: float(cell) if name in numbers else cell for name, cell in row.items() if cell})
+        for row in rows
+    ]
+
+
+ONE_OF_EVERY_KIND = table(STATION, CONJUNCTION, NEAR_SUN, TRANSIT, STAR, *_others())
 
 
 def nearest_minute(utc: str) -> datetime:

@@ -116,9 +116,10 @@ def test_entries_stand_in_order_of_time() -> None:
 
 
 def test_the_title_stands_in_both_properties_that_programs_look_at() -> None:
-    calendar = vobject.readOne(calendar_bytes(table(STATION), name="Sky, week; by\nweek", kernel=KERNEL).decode())
+    content = calendar_bytes(table(STATION), name="Sky, week; by\nweek", kernel=KERNEL)
+    calendar = vobject.readOne(content.decode())
     assert calendar.contents["name"][0].value == "Sky, week; by week"
-    assert calendar.contents["x-wr-calname"][0].value == r"Sky\, week\; by week"  # vobject leaves X- alone
+    assert calendar.contents["x-wr-calname"][0].value == "Sky, week; by week"
 
 
 def test_no_place_is_given_without_a_site() -> None:
@@ -145,13 +146,16 @@ def test_rounding_to_the_minute_never_changes_the_date_unmarked(utc: str, start:
     assert (b"so that the date stays right" in content.replace(b"\r\n ", b"")) is marked
 
 
-@pytest.mark.parametrize("utc", ["0000-06-01T00:00:00.000Z", "-0500-06-01T00:00:00.000Z", "+10000-01-01T00:00:00.000Z"])
-def test_years_that_the_format_cannot_hold_are_refused_with_the_way_out(utc: str) -> None:
+@pytest.mark.parametrize("year", ["0000", "-0500", "+10000"])
+def test_years_that_the_format_cannot_hold_are_refused_with_the_way_out(year: str) -> None:
+    row = STATION | {"event_id": "b", "utc": f"{year}-06-01T00:00:00.000Z"}
     with pytest.raises(SpanError, match=r"0001 to 9999.*--format csv"):
-        written(table(STATION, STATION | {"event_id": "b", "utc": utc}))
+        written(table(STATION, row))
 
 
-@pytest.mark.parametrize(("year", "warned"), [("1969", True), ("1970", False), ("2100", False), ("2101", True)])
+@pytest.mark.parametrize(
+    ("year", "warned"), [("1969", True), ("1970", False), ("2100", False), ("2101", True)]
+)
 def test_years_that_many_programs_cannot_show_are_warned_of(year: str, warned: bool) -> None:
     lines = warnings_about(table(STATION | {"utc": f"{year}-06-01T00:00:00.000Z"}))
     assert any("1970 to 2100" in line for line in lines) is warned
@@ -183,7 +187,8 @@ def test_a_transit_warns_of_the_sun_itself_and_tells_its_contacts() -> None:
 
 
 def test_what_stands_in_the_glare_is_said_to_be_out_of_sight() -> None:
-    assert "Mars not observable: only 6 degrees from the Sun" in description(STATION | {"elongation_deg": 6.4})
+    text = description(STATION | {"elongation_deg": 6.4})
+    assert "Mars not observable: only 6 degrees from the Sun" in text
     assert "not observable" not in description(STATION | {"elongation_deg": 10.0})
 
 
@@ -215,7 +220,7 @@ def test_alarms_are_shown_before_the_start() -> None:
 
 # RFC 5545, 3.1: lines of at most 75 octets without the break, folded by CRLF and one blank, never inside a
 # character; every line, the last included, ends with CRLF.
-HARD_TO_FOLD = [STAR | {"event_id": str(length), "other": "é" * length} for length in range(1, 160, 3)]
+HARD_TO_FOLD = [STAR | {"event_id": str(length), "other": f"X{'é' * length}"} for length in range(1, 160, 3)]
 
 
 @pytest.mark.parametrize("events", [ONE_OF_EVERY_KIND, table(*HARD_TO_FOLD)], ids=["every kind", "not ASCII"])
@@ -254,7 +259,7 @@ def test_any_text_comes_back_as_it_was(read: Any, text: str) -> None:
 
 
 @READERS
-@given(text=st.text(st.characters(categories=("Cc", "Cs", "Zl", "Zp")), min_size=1))
+@given(text=st.text(st.characters(categories=("Cc", "Zl", "Zp")), min_size=1))
 def test_control_characters_never_reach_the_file(read: Any, text: str) -> None:
     content = written(table(STAR | {"event_id": "a", "other": f"X{text}x"}))
     (entry,) = read(content).values()
@@ -272,6 +277,10 @@ def test_any_instant_is_rounded_within_its_day(instant: datetime) -> None:
 
 
 def test_a_row_without_figures_still_makes_an_entry() -> None:
-    assert "Mars at opposition" in read_by_ical(written(table(event("opposition", STATION["utc"]))))[
-        "opposition-mars-c1-1@wanderers"
-    ]["summary"]
+    (entry,) = read_by_ical(written(table(event("opposition", STATION["utc"])))).values()
+    assert entry["summary"] == "Mars at opposition to the Sun"
+
+
+def test_a_title_that_is_no_text_loses_what_cannot_be_written() -> None:
+    content = calendar_bytes(table(STATION), name="a\udcffb", kernel=KERNEL)
+    assert b"\r\nNAME:ab\r\n" in content

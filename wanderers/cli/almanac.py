@@ -25,7 +25,6 @@ from wanderers.events.side_by_side import side_by_side as definitions_side_by_si
 from wanderers.events.standing import with_standing
 from wanderers.report.tables import almanac_heading, side_by_side_heading
 
-
 STARS_FOR = {"all": BODIES[1:], "planets": PLANETS, "none": ()}
 
 
@@ -34,10 +33,29 @@ STARS_FOR = {"all": BODIES[1:], "planets": PLANETS, "none": ()}
 @body_option
 @kind_option
 @frame_option
-@click.option("--within", type=click.FloatRange(0.0, 180.0, min_open=True), metavar="DEG", help="Largest separation of an appulse, largest diameter of a gathering. [default: 10; Moon 6, stars 5]")
-@click.option("--stars", type=click.Choice(["all", "planets", "none"]), default="all", show_default=True, help="Whose meetings with stars to list: Moon's and planets', planets' only, nobody's.")
-@click.option("--standing", is_flag=True, help="Add the nearest better events of the same kind and bodies, earlier and later, in the whole kernel.")
-@click.option("--side-by-side", is_flag=True, help="Print stations and meetings with their definitions next to each other.")
+@click.option(
+    "--within",
+    type=click.FloatRange(0.0, 180.0, min_open=True),
+    metavar="DEG",
+    help="Largest separation of an appulse, largest diameter of a gathering. [default: 10; Moon 6, stars 5]",
+)
+@click.option(
+    "--stars",
+    type=click.Choice(["all", "planets", "none"]),
+    default="all",
+    show_default=True,
+    help="Whose meetings with stars to list: Moon's and planets', planets' only, nobody's.",
+)
+@click.option(
+    "--standing",
+    is_flag=True,
+    help="Add the nearest better events of the same kind and bodies, earlier and later, in the whole kernel.",
+)
+@click.option(
+    "--side-by-side",
+    is_flag=True,
+    help="Print stations and meetings with their definitions next to each other.",
+)
 @workplace_options
 @output_options
 def command(
@@ -53,7 +71,7 @@ def command(
     workplace: Workplace,
     destination: Destination,
 ) -> None:
-    """Print every event of a span: stations, oppositions, conjunctions, appulses and the rest.
+    r"""Print every event of a span: stations, oppositions, conjunctions, appulses and the rest.
 
     \b
     Example: all stations and conjunctions of Mars in 2027

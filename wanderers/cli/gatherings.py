@@ -13,12 +13,14 @@ from wanderers.events.gathering_table import FewestAndWidest, gatherings, remova
 from wanderers.report.tables import gatherings_heading
 
 
-class BodyList(click.ParamType):
+class BodyList(click.ParamType):  # type: ignore[type-arg, unused-ignore] # generic from click 8.4 on
     """Bodies separated by commas."""
 
     name = "bodies"
 
-    def convert(self, value: Any, param: click.Parameter | None, ctx: click.Context | None) -> tuple[Body, ...]:
+    def convert(
+        self, value: Any, param: click.Parameter | None, ctx: click.Context | None
+    ) -> tuple[Body, ...]:
         """Return the bodies in their written order, each once."""
         if isinstance(value, tuple):
             return value
@@ -30,12 +32,48 @@ class BodyList(click.ParamType):
 
 @click.command("gatherings")
 @span_options(default_years=100)
-@click.option("--bodies", type=BodyList(), default=",".join(NAKED_EYE_PLANETS), metavar="LIST", help="Bodies that may take part, separated by commas. [default: the five planets the naked eye sees]")
-@click.option("--at-least", type=click.IntRange(3), default=3, show_default=True, metavar="N", help="Fewest bodies together.")
-@click.option("--within", type=click.FloatRange(0.0, 60.0, min_open=True), default=10.0, show_default=True, metavar="DEG", help="Largest diameter of the circle.")
-@click.option("--least-elongation", type=click.FloatRange(0.0, 180.0), default=0.0, metavar="DEG", help="Least distance of every body from the Sun. [default: any]")
-@click.option("--sort", type=click.Choice(["date", "tightness"]), default="date", show_default=True, help="Order of the rows.")
-@click.option("--standing", is_flag=True, help="Add the nearest tighter gatherings of the same bodies, earlier and later, in the whole kernel.")
+@click.option(
+    "--bodies",
+    type=BodyList(),
+    default=",".join(NAKED_EYE_PLANETS),
+    metavar="LIST",
+    help="Bodies that may take part, separated by commas. [default: the five planets the naked eye sees]",
+)
+@click.option(
+    "--at-least",
+    type=click.IntRange(3),
+    default=3,
+    show_default=True,
+    metavar="N",
+    help="Fewest bodies together.",
+)
+@click.option(
+    "--within",
+    type=click.FloatRange(0.0, 60.0, min_open=True),
+    default=10.0,
+    show_default=True,
+    metavar="DEG",
+    help="Largest diameter of the circle.",
+)
+@click.option(
+    "--least-elongation",
+    type=click.FloatRange(0.0, 180.0),
+    default=0.0,
+    metavar="DEG",
+    help="Least distance of every body from the Sun. [default: any]",
+)
+@click.option(
+    "--sort",
+    type=click.Choice(["date", "tightness"]),
+    default="date",
+    show_default=True,
+    help="Order of the rows.",
+)
+@click.option(
+    "--standing",
+    is_flag=True,
+    help="Add the nearest tighter gatherings of the same bodies, earlier and later, in the whole kernel.",
+)
 @workplace_options
 @output_options
 def command(
@@ -50,7 +88,7 @@ def command(
     workplace: Workplace,
     destination: Destination,
 ) -> None:
-    """Find when several bodies stand within a small circle, over years or centuries.
+    r"""Find when several bodies stand within a small circle, over years or centuries.
 
     \b
     Example: every gathering of all five naked-eye planets within 25 degrees in the kernel
@@ -58,7 +96,9 @@ def command(
     """
     require_in_kernel(workplace, span)
     if at_least > len(bodies):
-        raise click.UsageError(f"--at-least {at_least} is more than the {len(bodies)} bodies named by --bodies")
+        raise click.UsageError(
+            f"--at-least {at_least} is more than the {len(bodies)} bodies named by --bodies"
+        )
     wanted = FewestAndWidest(bodies, at_least, within, least_elongation)
     table, removals = gatherings(workplace.store, span.jd_from, span.jd_to, wanted, standing=standing)
     if sort == "tightness":

@@ -47,10 +47,12 @@ class LazyCommands(click.Group):
             formatter.write_dl(list(COMMANDS.items()))
 
 
-@click.group(cls=LazyCommands, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
+@click.group(
+    cls=LazyCommands, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100}
+)
 @click.version_option(__version__, prog_name="wanderers")
 def program() -> None:
-    """Stations, retrograde seasons and meetings of the planets, from a JPL kernel, offline.
+    r"""Stations, retrograde seasons and meetings of the planets, from a JPL kernel, offline.
 
     \b
     Example: everything that happens in the next two years, as a folder to open in a browser

@@ -25,7 +25,7 @@ from wanderers.events.kinds import Kind
 Command = TypeVar("Command", bound=Callable[..., Any])
 
 
-class NamedType(click.ParamType):
+class NamedType(click.ParamType):  # type: ignore[type-arg, unused-ignore] # generic from click 8.4 on
     """A name out of a list; a wrong one gets the nearest valid ones."""
 
     def __init__(self, name: str, choices: type[StrEnum]) -> None:
@@ -66,9 +66,25 @@ def span_options(default_years: int) -> Callable[[Command], Command]:
     """Add ``--from``, ``--to`` and ``--scale``; the command receives ``span``."""
 
     def decorate(command: Command) -> Command:
-        @click.option("--from", "from_text", metavar="DATE", help="First date; a bare year means its 1 January. [default: today]")
-        @click.option("--to", "to_text", metavar="DATE", help=f"End of the span, itself not included. [default: {default_years} year{'s' * (default_years > 1)} on]")
-        @click.option("--scale", type=click.Choice(["utc", "tt"]), default="utc", show_default=True, help="Time scale of the dates given.")
+        @click.option(
+            "--from",
+            "from_text",
+            metavar="DATE",
+            help="First date; a bare year means its 1 January. [default: today]",
+        )
+        @click.option(
+            "--to",
+            "to_text",
+            metavar="DATE",
+            help=f"End of the span, not included. [default: {default_years} years on]",
+        )
+        @click.option(
+            "--scale",
+            type=click.Choice(["utc", "tt"]),
+            default="utc",
+            show_default=True,
+            help="Time scale of the dates given.",
+        )
         @functools.wraps(command)
         def wrapped(*args: Any, from_text: str | None, to_text: str | None, scale: str, **kwargs: Any) -> Any:
             return command(*args, span=parse_span(from_text, to_text, scale, default_years), **kwargs)
@@ -89,7 +105,9 @@ def parse_span(from_text: str | None, to_text: str | None, scale: str, default_y
     end_text = to_text or _years_later(start, default_years)
     end = parse_date(end_text)
     if end <= start:
-        raise DateError(f"--to {end_text} is not after --from {start_text}: give a later date ({ACCEPTED_FORMS})")
+        raise DateError(
+            f"--to {end_text} is not after --from {start_text}: give a later date ({ACCEPTED_FORMS})"
+        )
     if scale == "utc":
         return Span(float(timescales.jd_tt_from_utc(start)), float(timescales.jd_tt_from_utc(end)))
     return Span(start, end)
@@ -106,27 +124,44 @@ def _years_later(jd: float, years: int) -> str:
 
 def body_option(command: Command) -> Command:
     """Add the repeatable ``--body``; the command receives ``bodies``, all when none is given."""
-    return _repeatable(command, "--body", "bodies", BODY, BODIES, "Body wanted; may be repeated. One alone: also all it meets; several: their meetings with each other. [default: all]")
+    return _repeatable(
+        command,
+        "--body",
+        "bodies",
+        BODY,
+        BODIES,
+        "Body wanted; may be repeated. One alone: and all it meets; several: "
+        "and their meetings with each other. [default: all]",
+    )
 
 
 def kind_option(command: Command) -> Command:
     """Add the repeatable ``--kind``; the command receives ``kinds``, all when none is given."""
-    return _repeatable(command, "--kind", "kinds", KIND, tuple(Kind), "Kind of event wanted; may be repeated. [default: all]")
+    return _repeatable(
+        command, "--kind", "kinds", KIND, tuple(Kind), "Kind of event wanted; may be repeated. [default: all]"
+    )
 
 
 def frame_option(command: Command) -> Command:
     """Add the repeatable ``--frame``; the command receives ``frames``."""
-    return _repeatable(command, "--frame", "frames", FRAME, (Frame.ECLIPTIC,), "Frame of longitudes: ecliptic or equator of date, or j2000; may be repeated. [default: ecliptic]")
+    return _repeatable(
+        command,
+        "--frame",
+        "frames",
+        FRAME,
+        (Frame.ECLIPTIC,),
+        "Frame of longitudes: ecliptic or equator of date, or j2000; may be repeated. [default: ecliptic]",
+    )
 
 
 def _repeatable(
-    command: Command, flag: str, name: str, kind: click.ParamType, default: Iterable[Any], text: str
+    command: Command, flag: str, name: str, kind: NamedType, default: Iterable[Any], text: str
 ) -> Command:
     @click.option(flag, f"{name}_given", type=kind, multiple=True, metavar=flag[2:].upper(), help=text)
     @functools.wraps(command)
     def wrapped(*args: Any, **kwargs: Any) -> Any:
         given = kwargs.pop(f"{name}_given")
-        ordered = tuple(choice for choice in type(next(iter(default)))  if choice in given)
+        ordered = tuple(choice for choice in type(next(iter(default))) if choice in given)
         return command(*args, **{name: ordered or tuple(default)}, **kwargs)
 
     return wrapped  # type: ignore[return-value]
@@ -135,8 +170,18 @@ def _repeatable(
 def workplace_options(command: Command) -> Command:
     """Add ``--kernel``, ``--cache`` and ``--quiet``; the command receives ``workplace``."""
 
-    @click.option("--kernel", type=click.Path(path_type=Path), metavar="PATH", help="SPK kernel to use. [default: WANDERERS_KERNEL, a kernel in the cache folder, the embedded DE440]")
-    @click.option("--cache", type=click.Path(path_type=Path), metavar="DIR", help="Folder for kernels and computed tracks. [default: ./data_cache if there is one, else the user's cache folder]")
+    @click.option(
+        "--kernel",
+        type=click.Path(path_type=Path),
+        metavar="PATH",
+        help="SPK kernel. [default: WANDERERS_KERNEL, a kernel in the cache folder, the embedded DE440]",
+    )
+    @click.option(
+        "--cache",
+        type=click.Path(path_type=Path),
+        metavar="DIR",
+        help="Folder for kernels and tracks. [default: ./data_cache if there is one, else the user's]",
+    )
     @click.option("--quiet", is_flag=True, help="Show no progress.")
     @functools.wraps(command)
     def wrapped(*args: Any, kernel: Path | None, cache: Path | None, quiet: bool, **kwargs: Any) -> Any:
@@ -160,7 +205,9 @@ def warn(line: str) -> None:
 
 def show_progress(done: int, total: int) -> None:
     """Redraw one line of progress on standard error."""
-    click.echo(f"\rcomputing tracks: {done} of {total} blocks" + ("\n" if done == total else ""), nl=False, err=True)
+    click.echo(
+        f"\rcomputing tracks: {done} of {total} blocks" + ("\n" if done == total else ""), nl=False, err=True
+    )
 
 
 def require_in_kernel(workplace: Workplace, span: Span) -> None:
@@ -170,5 +217,3 @@ def require_in_kernel(workplace: Workplace, span: Span) -> None:
         SpanError: it does not; the message gives the kernel's span.
     """
     kernels.require_span(workplace.store.kernel, span.jd_from, span.jd_to)
-
-

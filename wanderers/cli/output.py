@@ -38,8 +38,19 @@ class Destination:
 def output_options(command: Command) -> Command:
     """Add ``--format`` and ``--out``; the command receives ``destination``, already checked."""
 
-    @click.option("--format", "form", type=click.Choice(FORMATS), help="How to write it. [default: by the ending of --out, else table]")
-    @click.option("--out", "path", type=click.Path(path_type=Path), metavar="PATH", help="File to write. [default: standard output]")
+    @click.option(
+        "--format",
+        "form",
+        type=click.Choice(FORMATS),
+        help="How to write it. [default: by the ending of --out, else table]",
+    )
+    @click.option(
+        "--out",
+        "path",
+        type=click.Path(path_type=Path),
+        metavar="PATH",
+        help="File to write. [default: standard output]",
+    )
     @functools.wraps(command)
     def wrapped(*args: Any, form: str | None, path: Path | None, **kwargs: Any) -> Any:
         if path is not None:
@@ -68,9 +79,7 @@ def _write_to_stdout(table: pl.DataFrame, form: str, heading: str) -> None:
     if form == "table":
         print_table(table, heading, sys.stdout)
         return
-    stream = click.get_binary_stream("stdout")
-    stream.write(_encoded(table, form, heading))
-    stream.flush()
+    click.echo(_encoded(table, form, heading), nl=False)
 
 
 def _encoded(table: pl.DataFrame, form: str, heading: str) -> bytes:

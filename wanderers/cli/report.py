@@ -56,7 +56,7 @@ def command(
     \b
     Example: everything of 2027 and 2028, in reports/2027-01-01_to_2029-01-01/index.html
         wanderers report --from 2027 --to 2029
-    """
+    """  # noqa: D301 - click reads the backspace as "do not wrap"
     request = Request(span.jd_from, span.jd_to, context.params["scale"], bodies, kinds, frames)
     folder = out or REPORTS / request.stem
     require_replaceable(folder)

@@ -34,7 +34,7 @@ def command(
     workplace: Workplace,
     destination: Destination,
 ) -> None:
-    """Print the retrograde seasons whose middle lies in a span, one row each.
+    r"""Print the retrograde seasons whose middle lies in a span, one row each.
 
     \b
     Example: the next seasons of Mars and Jupiter

@@ -25,7 +25,7 @@ from wanderers.report.tables import track_heading
 DAYS_PER_UNIT = {"s": 1.0 / 86_400.0, "min": 1.0 / 1_440.0, "h": 1.0 / 24.0, "d": 1.0}
 
 
-class Step(click.ParamType):
+class Step(click.ParamType):  # type: ignore[type-arg, unused-ignore] # generic from click 8.4 on
     """A length of time such as 6h or 1d, in days."""
 
     name = "step"
@@ -43,8 +43,17 @@ class Step(click.ParamType):
 @click.command("track")
 @click.argument("body", type=BODY)
 @span_options(default_years=1)
-@click.option("--step", type=Step(), default="1d", show_default=True, help="Time between rows: 10min, 6h, 1d, ...")
-@click.option("--frame", type=FRAME, default="ecliptic", show_default=True, metavar="FRAME", help="Frame of the longitude and its rate.")
+@click.option(
+    "--step", type=Step(), default="1d", show_default=True, help="Time between rows: 10min, 6h, 1d, ..."
+)
+@click.option(
+    "--frame",
+    type=FRAME,
+    default="ecliptic",
+    show_default=True,
+    metavar="FRAME",
+    help="Frame of the longitude and its rate.",
+)
 @workplace_options
 @output_options
 def command(
@@ -56,7 +65,7 @@ def command(
     workplace: Workplace,
     destination: Destination,
 ) -> None:
-    """Print a body's apparent positions, distance, brightness and size at regular steps.
+    r"""Print a body's apparent positions, distance, brightness and size at regular steps.
 
     \b
     Example: Mars every six hours in January 2027, as CSV

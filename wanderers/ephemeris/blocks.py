@@ -14,9 +14,9 @@ import numpy as np
 from jplephem.spk import SPK
 from skyfield.api import load
 
+from wanderers.arrays import Floats
 from wanderers.ephemeris import chebyshev, frames, places
 from wanderers.ephemeris.bodies import Body
-from wanderers.arrays import Floats
 from wanderers.ephemeris.chebyshev import Series
 from wanderers.ephemeris.spk_files import open_spk
 
@@ -76,7 +76,9 @@ def block_start_jd(index: int) -> float:
     return ORIGIN_JD + index * BLOCK_DAYS
 
 
-def build_block(kernel_path: Path, bodies: tuple[Body, ...], index: int, usable: tuple[float, float]) -> Block:
+def build_block(
+    kernel_path: Path, bodies: tuple[Body, ...], index: int, usable: tuple[float, float]
+) -> Block:
     """Fit every series of one block.
 
     Args:

@@ -16,7 +16,7 @@ STRENGTH_AU: Final = (
 
 LIMITER: Final = 1e-6
 """Least denominator of the formula at 1 au: reached 5 arcminutes from the Sun's centre, well inside its
-disc, where the formula for a point mass would throw images about that nobody sees. SOFA's value (iauLdsun)."""
+disc, where the formula for a point mass would throw images about that nobody sees. SOFA, iauLdsun."""
 TANGENT_STEP_DAYS: Final = 1e-3
 
 

@@ -21,7 +21,7 @@ class Frame(StrEnum):
 
 
 def rotation_about_x(angle_rad: float) -> Floats:
-    """Return the 3x3 matrix that turns the axes by an angle about x (from equator to ecliptic when positive)."""
+    """Return the 3x3 matrix that turns the axes by an angle about x, positive from equator to ecliptic."""
     c, s = np.cos(angle_rad), np.sin(angle_rad)
     return np.array([[1.0, 0.0, 0.0], [0.0, c, s], [0.0, -s, c]])
 

@@ -13,8 +13,8 @@ import numpy as np
 from jplephem.spk import SPK
 
 from wanderers import constants
-from wanderers.ephemeris.bodies import EARTH_CHAIN, NAIF_CHAINS, Body
 from wanderers.arrays import Floats
+from wanderers.ephemeris.bodies import EARTH_CHAIN, NAIF_CHAINS, Body
 
 C = constants.SPEED_OF_LIGHT_AU_PER_DAY
 

@@ -11,9 +11,9 @@ from typing import Final
 
 import numpy as np
 
+from wanderers.arrays import Bools, Floats, Ints
 from wanderers.ephemeris import frames, places, stars, vectors
 from wanderers.ephemeris.bodies import BODIES, Body
-from wanderers.arrays import Bools, Floats, Ints
 from wanderers.ephemeris.chebyshev import Located
 from wanderers.ephemeris.deflection import deflection, deflection_rate
 from wanderers.ephemeris.frames import Frame
@@ -123,11 +123,11 @@ class Sky:
     def latitude_deg(self, target: Ints, jd: Floats, frame: Frame) -> Floats:
         """Return apparent latitudes (declinations on the equator), shape (n,)."""
         place = vectors.rotate(self.rotation(frame, jd), self.apparent(target, jd))
-        return vectors.latitude_deg(place)[0]
+        return np.asarray(vectors.latitude_deg(place)[0])
 
     def earth_distance_au(self, target: Ints, jd: Floats, order: int = 0) -> Floats:
         """Return the stack of geometric geocentric distance of bodies, shape (order + 1, n)."""
-        return self.tracks.evaluate_each(target, jd, EARTH_DISTANCE, order)[:, 0]
+        return np.asarray(self.tracks.evaluate_each(target, jd, EARTH_DISTANCE, order)[:, 0])
 
     def _rotation(self, frame: Frame, jd: Floats, order: int, located: Located | None) -> Floats:
         if frame is Frame.J2000:

@@ -8,10 +8,10 @@ from typing import Final
 
 import numpy as np
 
+from wanderers.arrays import Floats, Ints
 from wanderers.ephemeris import chebyshev
 from wanderers.ephemeris.blocks import Block
 from wanderers.ephemeris.bodies import Body
-from wanderers.arrays import Floats, Ints
 from wanderers.ephemeris.chebyshev import Located, Series
 
 POSITION: Final = slice(0, 3)

@@ -75,9 +75,7 @@ def _greatest_elongations(scene: Scene, met: Pairs) -> Batch:
     longitude = scene.sky.longitude_deg(met.second, met.jd, Frame.ECLIPTIC)[0]
     sun = scene.sky.longitude_deg(met.first, met.jd, Frame.ECLIPTIC)[0]
     west = (wrapped_deg(longitude - sun) < 0.0).astype(np.int64)
-    return batch(
-        Kind.GREATEST_ELONGATION, None, met.jd, met.second, detail=west, details=ELONGATION_DETAILS
-    )
+    return batch(Kind.GREATEST_ELONGATION, None, met.jd, met.second, detail=west, details=ELONGATION_DETAILS)
 
 
 def separation_of(scene: Scene, first: Ints, second: Ints, jd: Floats) -> Floats:

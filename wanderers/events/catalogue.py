@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterable, Sequence
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, field, replace
-from typing import Final
+from typing import Any, Final
 
 import numpy as np
 
@@ -130,7 +130,7 @@ def find_events(store: TrackStore, query: Query) -> list[Found]:
 
 
 def stretches(store: TrackStore, jd_from: float, jd_to: float) -> list[tuple[float, float]]:
-    """Cut a span where the blocks meet: memory stays that of one block, and blocks are worked side by side."""
+    """Cut a span where the blocks meet: memory stays that of a block, and blocks are worked side by side."""
     starts = [block_start_jd(index) for index in store.block_indices(jd_from, jd_to)]
     return [(max(start, jd_from), min(start + BLOCK_DAYS, jd_to)) for start in starts]
 
@@ -178,22 +178,22 @@ def _joined(batches: Iterable[Batch]) -> list[Batch]:
 
 
 def _concatenated(group: list[Batch]) -> Batch:
-    head = group[0]
+    """Join batches of one kind, frame and vocabulary, in order of time."""
+    whole = replace(group[0], **{name: _column(group, name) for name in ARRAYS})
+    order = np.argsort(whole.jd, kind="stable")
+    return replace(whole, **{name: _ordered(getattr(whole, name), order) for name in ARRAYS})
 
-    def joined(name: str) -> np.ndarray | None:
-        parts = [getattr(batch, name) for batch in group]
-        return None if parts[0] is None else np.concatenate(parts)
 
-    whole = Batch(
-        head.kind,
-        head.frame,
-        *(joined(name) for name in ("jd", "body", "other", "detail")),  # type: ignore[arg-type]
-        details=head.details,
-        contacts_jd=joined("contacts_jd"),
-        figure_deg=joined("figure_deg"),
-        entered=joined("entered"),
-    )
-    return whole.chosen(np.argsort(whole.jd, kind="stable"))
+ARRAYS: Final = ("jd", "body", "other", "detail", "contacts_jd", "figure_deg", "entered")
+
+
+def _column(group: list[Batch], name: str) -> Any:
+    parts = [getattr(batch, name) for batch in group]
+    return None if parts[0] is None else np.concatenate(parts)
+
+
+def _ordered(column: Any, order: Ints) -> Any:
+    return None if column is None else column[order]
 
 
 def _named(batch: Batch) -> Found:

@@ -8,6 +8,7 @@ import numpy as np
 
 from wanderers.arrays import Floats
 
+
 def smallest_circles(points: Floats) -> tuple[Floats, Floats]:
     """Return the diameter and the centre of the smallest circle around points.
 

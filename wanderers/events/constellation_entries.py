@@ -132,7 +132,7 @@ def _real(brackets: Brackets, circles: Circles, jd: Floats, placed: Floats) -> B
 
 @cache
 def _parted(axis: int) -> Bools:
-    """Return, for the circles of an axis, in which bins along each it comes near to parting constellations."""
+    """Return, for the circles of an axis, in which bins along each it comes near to parting two."""
     levels = constellations.boundary_lines()[axis]
     parted = np.zeros((levels.size, round(540.0 / BIN_DEG)), dtype=np.bool_)
     for piece in constellations.boundary_segments():

@@ -50,7 +50,9 @@ def semidiameter_deg(sky: Sky, target: Ints, jd: Floats) -> Floats:
     star = target >= FIRST_STAR
     body = np.where(star, SUN, target)
     distance = sky.earth_distance_au(body, jd)[0]
-    arcsec = np.where(body == SUN, SUN_SEMIDIAMETER_AT_1_AU_ARCSEC / distance, diameter_arcsec(body, distance) / 2.0)
+    arcsec = np.where(
+        body == SUN, SUN_SEMIDIAMETER_AT_1_AU_ARCSEC / distance, diameter_arcsec(body, distance) / 2.0
+    )
     return np.where(star, 0.0, arcsec / constants.ARCSEC_PER_DEG)
 
 
@@ -62,8 +64,8 @@ def overlapping(sky: Sky, pairs: Pairs) -> Bools:
 def occultations(sky: Sky, pairs: Pairs) -> Batch:
     """Return the occultations among pairs of Moon, planets and stars at their least separations.
 
-    ``moon``: the Moon hides a planet. ``star``: a planet or the Moon hides a star. ``planet``: one planet hides
-    another.
+    ``moon``: the Moon hides a planet. ``star``: a planet or the Moon hides a star. ``planet``: one planet
+    hides another.
     """
     met = pairs.chosen(overlapping(sky, pairs))
     by_moon = np.where(met.first == Body.MOON.order, 2, 0)
@@ -82,7 +84,9 @@ def occultations(sky: Sky, pairs: Pairs) -> Batch:
 
 def transits(sky: Sky, pairs: Pairs) -> Batch:
     """Return the transits among least separations of the Sun (first) and an inner planet (second)."""
-    nearer = sky.earth_distance_au(pairs.second, pairs.jd)[0] < sky.earth_distance_au(pairs.first, pairs.jd)[0]
+    nearer = (
+        sky.earth_distance_au(pairs.second, pairs.jd)[0] < sky.earth_distance_au(pairs.first, pairs.jd)[0]
+    )
     met = pairs.chosen(nearer & overlapping(sky, pairs))
     detail = (met.second == Body.VENUS.order).astype(np.int64)
     return batch(
@@ -142,7 +146,7 @@ def _reach_days(sky: Sky, met: Pairs) -> Floats:
 
 
 def _gaps(sky: Sky, met: Pairs, jd: Floats) -> Floats:
-    """Return separation less the sum, and less the difference, of the semidiameters, degrees, shape (2, n)."""
+    """Return separation less the sum, and the difference, of the semidiameters, degrees, shape (2, n)."""
     apart = _separations(sky, met, jd)
     one, two = semidiameter_deg(sky, met.first, jd), semidiameter_deg(sky, met.second, jd)
     return np.stack([apart - (one + two), apart - np.abs(one - two)])

@@ -66,7 +66,9 @@ def gatherings(
 ) -> tuple[pl.DataFrame, Removals]:
     """Return the gatherings of a span in order of time, and what the limits left out."""
     searched = min(WIDER * wanted.within_deg, 90.0)
-    choice = Choice(wanted.bodies, stars_for=(), limits=Limits(gathering_deg=searched), fewest_gathered=wanted.at_least)
+    choice = Choice(
+        wanted.bodies, stars_for=(), limits=Limits(gathering_deg=searched), fewest_gathered=wanted.at_least
+    )
     query = Query(jd_from, jd_to, frozenset({Kind.GATHERING}), choice=choice)
     table = almanac(store, query)
     table = table.with_columns(**_measures(store, table))
@@ -93,7 +95,9 @@ def _measures(store: TrackStore, table: pl.DataFrame) -> dict[str, pl.Series]:
     def measure(some: slice) -> Arrays:
         rows = [_spread(store, members[row], jd[row : row + 1]) for row in range(jd.size)[some]]
         columns = np.array(rows).reshape(-1, 3).T
-        return dict(zip(("longitude_arc_deg", "largest_separation_deg", "least_elongation_deg"), columns, strict=True))
+        return dict(
+            zip(("longitude_arc_deg", "largest_separation_deg", "least_elongation_deg"), columns, strict=True)
+        )
 
     measured = {name: pl.Series(values) for name, values in by_block(store, jd, measure).items()}
     return {"bodies": pl.Series([len(some) for some in members], dtype=pl.Int64)} | measured

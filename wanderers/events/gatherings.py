@@ -57,10 +57,12 @@ def _near_pairs(scene: Scene, bodies: list[int]) -> dict[tuple[int, int], Bools]
 
 
 def _all_near(near: dict[tuple[int, int], Bools], subset: tuple[int, ...]) -> Bools:
-    return np.logical_and.reduce([near[pair] for pair in combinations(subset, 2)])
+    return np.asarray(np.logical_and.reduce([near[pair] for pair in combinations(subset, 2)]))
 
 
-def _tightest(scene: Scene, subsets: list[tuple[int, ...]], near: dict[tuple[int, int], Bools]) -> list[Batch]:
+def _tightest(
+    scene: Scene, subsets: list[tuple[int, ...]], near: dict[tuple[int, int], Bools]
+) -> list[Batch]:
     """Find the local minima of the diameters of the circles of several subsets of one size."""
     windows = [_windows(scene, subset, _all_near(near, subset)) for subset in subsets]
     group = np.repeat(np.arange(len(subsets)), [low.size for low, _ in windows])
@@ -143,5 +145,3 @@ def _golden(sky: Sky, members: Ints, low: Floats, high: Floats) -> Floats:
         inner = [np.where(left, fresh, kept), np.where(left, kept, fresh)]
         value = [np.where(left, fresh_value, kept_value), np.where(left, kept_value, fresh_value)]
     return np.asarray((low + high) / 2.0)
-
-

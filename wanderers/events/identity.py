@@ -177,4 +177,3 @@ _ROUND_OF: Final[dict[Kind, Callable[[Batch, StarCatalogue], Ints]]] = {
     Kind.RING_PLANE_CROSSING: _day,
     Kind.MOON_PHASE: _lunation,
 }
-

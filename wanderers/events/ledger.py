@@ -53,7 +53,9 @@ def _entries(found: Found) -> pl.DataFrame:
     entries = pl.DataFrame(
         {
             "kind": pl.repeat(batch.kind.value, batch.jd.size, eager=True),
-            "detail": pl.Series([word or None for word in batch.details], dtype=pl.String).gather(batch.detail),
+            "detail": pl.Series([word or None for word in batch.details], dtype=pl.String).gather(
+                batch.detail
+            ),
             "body": names.gather(batch.body),
             "other": names.gather(other).zip_with(~alone, pl.Series([None], dtype=pl.String)),
             "frame": pl.repeat(
@@ -96,7 +98,7 @@ def _meeting_columns(found: Found) -> dict[str, pl.Expr | pl.Series]:
 def _event_id(kind: Kind) -> pl.Expr:
     """Compose the name of an event from what never changes about it."""
     detail = pl.lit(None, dtype=pl.String) if kind is Kind.APPULSE else pl.col("detail")
-    names = pl.col("kind"), pl.col("frame"), pl.col("body"), pl.col("other")
+    names: tuple[pl.Expr, ...] = (pl.col("kind"), pl.col("frame"), pl.col("body"), pl.col("other"))
     if kind is Kind.GATHERING:
         names = (pl.col("kind"),)
     if kind is Kind.CONSTELLATION_ENTRY:
@@ -173,5 +175,3 @@ def _looked_up(store: TrackStore, body: Ints, other: Ints, jd: Floats) -> dict[s
         "diameter_arcsec": seen.diameter_arcsec,
         "constellation": seen.constellation,
     }
-
-

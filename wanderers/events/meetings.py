@@ -7,8 +7,8 @@ Mercury and Venus never lap each other; their conjunctions and approaches within
 while no more than 45 days pass from one to the next.
 
 Conjunctions are numbered within a meeting, frame by frame; so are the least separations to which one
-belongs. The greatest separations part one approach from the next: a least separation with no conjunction of either frame between
-the greatest separations on both sides of it is ``quasi``.
+belongs. The greatest separations part one approach from the next: a least separation with no conjunction of
+either frame between the greatest separations on both sides of it is ``quasi``.
 """
 
 from __future__ import annotations
@@ -125,7 +125,9 @@ def _cluster_numbers(jd: Floats, lap: Ints) -> Ints:
 
 def marked_quasi(conjunctions: list[Batch], appulse: Batch) -> Batch:
     """Return least separations with those marked that no conjunction belongs to."""
-    met = np.concatenate([_approach_keys(batch, appulse) for batch in conjunctions] or [np.empty(0)])
+    met = np.concatenate(
+        [_approach_keys(batch, appulse) for batch in conjunctions] or [np.empty(0, dtype=np.int64)]
+    )
     own = _approach_keys(appulse, appulse)
     lonely = ~np.isin(own, met) & (appulse.detail != FARTHEST)
     return replace(appulse, detail=np.where(lonely, QUASI, appulse.detail))
@@ -145,11 +147,9 @@ def _pair_times(batch: Batch) -> Floats:
 
 
 def _inner(batch: Batch) -> Bools:
-    return (batch.body == Body.MERCURY.order) & (batch.other == Body.VENUS.order)
+    return np.asarray((batch.body == Body.MERCURY.order) & (batch.other == Body.VENUS.order))
 
 
 def _within_reach(appulse: Batch) -> Bools:
     figure = np.zeros(appulse.jd.size) if appulse.figure_deg is None else appulse.figure_deg
-    return (figure < INNER_REACH_DEG) & (appulse.detail != FARTHEST)
-
-
+    return np.asarray((figure < INNER_REACH_DEG) & (appulse.detail != FARTHEST))

@@ -75,7 +75,10 @@ def _height(line: Floats, jd: Floats) -> Floats:
 def _as_batch(roots: Roots, detail: int) -> Batch:
     saturn = np.full(roots.jd.size, SATURN)
     return batch(
-        Kind.RING_PLANE_CROSSING, None, roots.jd, saturn, detail=np.full(roots.jd.size, detail), details=DETAILS
+        Kind.RING_PLANE_CROSSING,
+        None,
+        roots.jd,
+        saturn,
+        detail=np.full(roots.jd.size, detail),
+        details=DETAILS,
     )
-
-

@@ -99,7 +99,5 @@ class Scene:
     def held_pairs(self, allowed: Sequence[Body]) -> Ints:
         """Return the chosen pairs both of whose bodies were sampled, shape (2, pairs)."""
         pairs = self.choice.pairs(allowed)
-        held = [
-            pair for pair in pairs.T.tolist() if all(t in self.samples.directions for t in pair)
-        ]
+        held = [pair for pair in pairs.T.tolist() if all(t in self.samples.directions for t in pair)]
         return np.array(held, dtype=np.int64).reshape(-1, 2).T

@@ -175,15 +175,15 @@ def level_crossings(jd: Floats, values: Floats, slopes: Floats, levels: Floats) 
     """
     cell = np.searchsorted(levels, values, side="right")
     column, level = _levels_between(cell[:-1], cell[1:])
-    ends = [np.stack([values[at] - levels[level], slopes[at]]) for at in (column, column + 1)]
+    ends = tuple(np.stack([values[at] - levels[level], slopes[at]]) for at in (column, column + 1))
     left, right = jd[column], jd[column + 1]
-    guess = left + hermite_root(*ends, right - left)
+    guess = left + hermite_root(ends[0], ends[1], right - left)
     crossing = Brackets(level, left, right, ends[0][0], ends[1][0], guess)
     return Candidates(crossing, _level_turns(jd, values, slopes, levels))
 
 
 def _level_turns(jd: Floats, values: Floats, slopes: Floats, levels: Floats) -> Turns:
-    """Return, for every interval in which the function turns, the levels its tangents reach beyond both ends."""
+    """Return, wherever the function turns, the levels that its tangents reach beyond both ends."""
     turns = np.flatnonzero(slopes[:-1] * slopes[1:] < 0.0)
     bend = slopes[turns] - slopes[turns + 1]
     offset = (values[turns + 1] - values[turns] - slopes[turns + 1] * np.diff(jd)[turns]) / bend

@@ -18,8 +18,8 @@ from wanderers.ephemeris.sky import Sky
 from wanderers.ephemeris.store import TrackStore
 from wanderers.events import cycles
 from wanderers.events.almanac import time_texts
-from wanderers.events.catalogue import PAD_DAYS, scene_of, sky_of
-from wanderers.events.scene import STEP_DAYS, Choice, Scene
+from wanderers.events.catalogue import PAD_DAYS, scene_of
+from wanderers.events.scene import Choice, Scene
 from wanderers.events.search import Brackets, refine
 from wanderers.events.solar_aspects import find_oppositions, find_solar_conjunctions
 from wanderers.events.stations import find_stations
@@ -107,7 +107,9 @@ def seasons(
         inside = (middle >= jd_from) & (middle < jd_to)
         if touching:
             inside = (turns.direct_jd >= jd_from) & (turns.retrograde_jd < jd_to)
-        parts.append(_table(scene.sky, batch.frame, described(scene, batch.frame, turns, middle).chosen(inside)))
+        parts.append(
+            _table(scene.sky, batch.frame, described(scene, batch.frame, turns, middle).chosen(inside))
+        )
     table = pl.concat(parts) if parts else pl.DataFrame(schema=schema.SEASON_COLUMNS)
     return table.sort("station_retrograde_jd_tt", "season_id")
 
@@ -275,7 +277,8 @@ def extremes(sky: Sky, season: Season) -> Extremes:
     jd = start[:, None] + length[:, None] * fraction
     seen = appearance(sky, np.repeat(season.turns.body, RUN_SAMPLES), jd.ravel())
     distance, magnitude, diameter = (
-        values.reshape(count, RUN_SAMPLES) for values in (seen.distance_au, seen.magnitude, seen.diameter_arcsec)
+        values.reshape(count, RUN_SAMPLES)
+        for values in (seen.distance_au, seen.magnitude, seen.diameter_arcsec)
     )
     passed = seen.constellation.reshape(count, RUN_SAMPLES)
     names = tuple("+".join(_in_order(row)) for row in passed)
@@ -297,7 +300,7 @@ def _least(values: Floats) -> Floats:
     shift = np.divide(before - after, 2.0 * bend, out=np.zeros_like(bend), where=bend > 0.0)
     inside = np.abs(shift) <= 1.0
     vertex = np.where(inside, middle - 0.25 * (before - after) * shift, np.inf)
-    return np.fmin(np.fmin(vertex, middle), np.fmin(before, after))
+    return np.asarray(np.fmin(np.fmin(vertex, middle), np.fmin(before, after)))
 
 
 def _table(sky: Sky, frame: Frame, season: Season) -> pl.DataFrame:
@@ -324,7 +327,8 @@ def _table(sky: Sky, frame: Frame, season: Season) -> pl.DataFrame:
     middle_kind = pl.Series(["opposition", "inferior_conjunction"]).gather(inner.cast(pl.UInt32))
     table = pl.DataFrame(
         {
-            "season_id": body + pl.Series([f"-{frame.value}-s{number}" for number in rounds], dtype=pl.String),
+            "season_id": body
+            + pl.Series([f"-{frame.value}-s{number}" for number in rounds], dtype=pl.String),
             "body": body,
             "frame": pl.repeat(frame.value, turns.body.size, eager=True),
             "middle_kind": middle_kind,

@@ -63,7 +63,11 @@ def side_by_side(store: TrackStore, query: Query) -> pl.DataFrame:
     inside = pl.any_horizontal(
         pl.col(f"{name}_jd").is_between(query.jd_from, query.jd_to, closed="left") for name in _DEFINITIONS
     )
-    near = pl.col("other").is_null() | pl.col("longitude_jd").is_not_null() | pl.col("right_ascension_jd").is_not_null()
+    near = (
+        pl.col("other").is_null()
+        | pl.col("longitude_jd").is_not_null()
+        | pl.col("right_ascension_jd").is_not_null()
+    )
     close = pl.col("least_separation_separation") < query.choice.limits.planets_deg
     return _printed(rows.filter(inside & (near | close)).sort(pl.min_horizontal(pl.col("^.*_jd$"))))
 
@@ -84,7 +88,11 @@ def _keyed(entries: pl.DataFrame) -> pl.DataFrame:
         detail=pl.when(station).then(pl.col("detail")),
     )
     within = pl.int_range(pl.len()).over("kind", "frame", "body", "other", "approach")
-    match = pl.when(station).then(pl.col("round") * 100 + pl.col("ordinal")).otherwise(pl.col("approach") * 10 + within)
+    match = (
+        pl.when(station)
+        .then(pl.col("round") * 100 + pl.col("ordinal"))
+        .otherwise(pl.col("approach") * 10 + within)
+    )
     return keyed.with_columns(match=match)
 
 

@@ -81,9 +81,7 @@ def find_season_points(scene: Scene) -> list[Batch]:
     slopes = np.broadcast_to(longitude[1], values.shape)
     roots = find_roots(from_point, scene.samples.jd, values, slopes, period=360.0)
     sun = np.full(roots.jd.size, SUN)
-    return [
-        batch(Kind.SEASON_POINT, ECLIPTIC, roots.jd, sun, detail=roots.function, details=SEASON_DETAILS)
-    ]
+    return [batch(Kind.SEASON_POINT, ECLIPTIC, roots.jd, sun, detail=roots.function, details=SEASON_DETAILS)]
 
 
 def _at_angles(scene: Scene, targets: Ints, angles_deg: Sequence[float]) -> Roots:

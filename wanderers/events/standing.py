@@ -66,7 +66,7 @@ def with_standing(store: TrackStore, query: Query, table: pl.DataFrame) -> pl.Da
     whole = replace(whole, kinds=query.kinds & frozenset(FIGURE_OF))
     found = [one for one in find_events(store, whole) if one.batch.jd.size] if whole.kinds else []
     parts = [_ranked(store, one) for one in found]
-    ranked = pl.concat(parts) if parts else pl.DataFrame(schema={"event_id": pl.String} | COLUMNS)
+    ranked = pl.concat(parts) if parts else pl.DataFrame(schema={"event_id": pl.String, **COLUMNS})
     low, high = (str(text) for text in time_texts(timescales.jd_utc_from_tt(np.array(store.span_jd)), "Z"))
     limits = _limits_in_words(query)
     joined = table.join(ranked, on="event_id", how="left", maintain_order="left")
@@ -146,10 +146,9 @@ def _measured(store: TrackStore, figure: str, body: Ints, other: Ints, jd: Float
     if jd.size == 0:
         return np.empty(0)
     sky = sky_of(store, float(jd[0]), float(jd[-1]))
-    if figure == DISTANCE:
-        return sky.earth_distance_au(body, jd)[0]
-    if figure == FARNESS:
-        return -sky.earth_distance_au(body, jd)[0]
+    if figure in (DISTANCE, FARNESS):
+        distance = np.asarray(sky.earth_distance_au(body, jd)[0])
+        return distance if figure == DISTANCE else -distance
     if figure == MAGNITUDE:
         return magnitude(sky, body, jd)
     if figure == ELONGATION:
@@ -163,5 +162,3 @@ def _limits_in_words(query: Query) -> str:
         f"geocentric; appulses of planets under {limits.planets_deg:g} deg, of the Moon under "
         f"{limits.moon_deg:g}, of stars under {limits.stars_deg:g}; gatherings under {limits.gathering_deg:g}"
     )
-
-

@@ -18,7 +18,12 @@ ROWS_AT_ONCE = 200_000
 
 
 def time_series(
-    store: TrackStore, body: Body, jd_from: float, jd_to: float, step_days: float, frame: Frame = Frame.ECLIPTIC
+    store: TrackStore,
+    body: Body,
+    jd_from: float,
+    jd_to: float,
+    step_days: float,
+    frame: Frame = Frame.ECLIPTIC,
 ) -> pl.DataFrame:
     """Return a body's circumstances from ``jd_from`` on, every ``step_days``, up to but not at ``jd_to``.
 

@@ -33,8 +33,6 @@ MANY_EVENTS: Final = 1000
 """Entries in one file above which calendar programs are known to give up. Common practice, no source."""
 WIDELY_SHOWN_YEARS: Final = (1970, 2100)
 """Outside them many calendar programs fail. Common practice, no source."""
-POSSIBLE_YEARS: Final = (1, 9999)
-"""RFC 5545, 3.3.4: a year has four digits; year 0 is none of the calendar's."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -132,7 +130,7 @@ def entries(events: pl.DataFrame, style: Style) -> list[Entry]:
 
 
 def require_possible_years(utc: Iterable[str]) -> None:
-    """Make sure that instants can be written in a calendar.
+    """Make sure that instants can be written in a calendar: RFC 5545, 3.3.4, gives a year four digits.
 
     Raises:
         SpanError: one lies outside the years 1 to 9999.
@@ -159,7 +157,7 @@ def warnings_about(events: pl.DataFrame) -> list[str]:
     if events.height > MANY_EVENTS:
         lines.append(
             f"{events.height} events in one calendar: above {MANY_EVENTS} many programs fail to import it; "
-            "use --split year, or fewer kinds or bodies"
+            "use --split year, or fewer kinds, bodies or stars"
         )
     if events.is_empty():
         lines.append("no event was found: the calendar is empty, and some programs refuse it")

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
-from dataclasses import dataclass
-from typing import Any, Final
+from dataclasses import dataclass, replace
+from typing import Final
 
 import polars as pl
 
+from wanderers import schema
 from wanderers.ephemeris import timescales
 from wanderers.ephemeris.bodies import BODIES, PLANETS, Body
 from wanderers.ephemeris.dates import iso_strings
@@ -19,7 +21,9 @@ from wanderers.events.catalogue import Query
 from wanderers.events.kinds import Kind
 from wanderers.events.scene import Choice
 from wanderers.events.seasons import seasons
+from wanderers.events.side_by_side import COLUMNS, side_by_side
 from wanderers.events.timeseries import time_series
+from wanderers.report.charts.path import path_span
 
 Progress = Callable[[str], None]
 """Told what is being done, in a few words."""
@@ -30,12 +34,9 @@ LEAST_ROWS: Final = 100
 
 PATHS_AT_MOST: Final = 120
 """Seasons whose path is drawn, the first of a span: some thirteen years of all planets."""
-PATH_ROWS: Final = 480
-PATH_MARGIN: Final = 0.08
-"""Part of a season's length that its path shows before the first pass and after the last."""
+ROWS_BEYOND: Final = 800
+"""Rows of a course beyond the span at most: two years of days, the longest season."""
 NAMES_IN_STEM: Final = 3
-HALF_RUN: Final = 0.6
-"""Stands for an unknown first or last mark: that part of the retrograde stretch beyond a station."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -97,9 +98,12 @@ class Contents:
         events: ``schema.EVENT_COLUMNS``.
         seasons: ``schema.SEASON_COLUMNS``: those whose retrograde stretch reaches into the span.
         tracks: ``schema.TRACK_COLUMNS`` over the span in the leading frame, by planet.
-        longitudes: the same on the ecliptic of date, the Sun with them; empty when no planet is wanted.
-        paths: ``schema.TRACK_COLUMNS`` over a whole season in its own frame, by ``season_id``; the leading
-            frame's seasons, PATHS_AT_MOST of them.
+        definitions: stations and meetings of planets by every definition, ``side_by_side.COLUMNS``.
+        arcs: the seasons on the ecliptic of date, for pictures.
+        courses: tracks on the ecliptic of date, the Sun's with them, beyond the span as far as seasons reach;
+            empty when no planet is wanted.
+        paths: tracks against the stars (J2000) through the leading frame's seasons, by ``season_id``;
+            PATHS_AT_MOST of them.
     """
 
     request: Request
@@ -107,42 +111,87 @@ class Contents:
     events: pl.DataFrame
     seasons: pl.DataFrame
     tracks: dict[Body, pl.DataFrame]
-    longitudes: dict[Body, pl.DataFrame]
+    definitions: pl.DataFrame
+    arcs: pl.DataFrame
+    courses: dict[Body, pl.DataFrame]
     paths: dict[str, pl.DataFrame]
+
+    def within_span(self, course: pl.DataFrame) -> pl.DataFrame:
+        """Return the part of a course that lies in the span."""
+        ends = self.request.jd_from, self.request.jd_to
+        return course.filter(pl.col("jd_tt").is_between(*ends, closed="left"))
 
 
 def gather(store: TrackStore, request: Request, progress: Progress = lambda words: None) -> Contents:
     """Compute every table of a report."""
     planets = tuple(body for body in request.planets if body in store.kernel.bodies)
+    span, lead = (request.jd_from, request.jd_to), request.frames[0]
     progress("finding events")
-    query = Query(
+    events = almanac(store, _query(request))
+    progress("measuring seasons")
+    frames = tuple({Frame.ECLIPTIC: None} | dict.fromkeys(request.frames))
+    found = seasons(store, *span, bodies=planets, frames=frames, touching=True)
+    wanted = found.filter(pl.col("frame").is_in([frame.value for frame in request.frames]))
+    arcs = found.filter(pl.col("frame") == Frame.ECLIPTIC.value)
+    progress("computing tracks")
+    step = track_step_days(span[1] - span[0])
+    drawn = wanted.filter(pl.col("frame") == lead.value).head(PATHS_AT_MOST)
+    compared = (Body.SUN, *planets) if planets else ()
+    return Contents(
+        request,
+        store.kernel,
+        events,
+        wanted,
+        {body: time_series(store, body, *span, step, lead) for body in planets},
+        definitions_of(store, request),
+        arcs,
+        {body: course_of(store, body, arcs, span, step) for body in compared},
+        {season.item(0, "season_id"): path_track(store, season) for season in drawn.iter_slices(1)},
+    )
+
+
+def _query(request: Request) -> Query:
+    return Query(
         request.jd_from,
         request.jd_to,
         frozenset(request.kinds),
         frozenset(request.frames),
         Choice(request.bodies),
     )
-    events = almanac(store, query)
-    progress("measuring seasons")
-    found = seasons(
-        store, request.jd_from, request.jd_to, bodies=planets, frames=request.frames, touching=True
-    )
-    progress("computing tracks")
-    step = track_step_days(request.jd_to - request.jd_from)
-    lead = request.frames[0]
 
-    def track(body: Body, frame: Frame) -> pl.DataFrame:
-        return time_series(store, body, request.jd_from, request.jd_to, step, frame)
 
-    tracks = {body: track(body, lead) for body in planets}
-    compared = (Body.SUN, *planets) if planets else ()
-    longitudes = {
-        body: tracks[body] if lead is Frame.ECLIPTIC and body in tracks else track(body, Frame.ECLIPTIC)
-        for body in compared
-    }
-    drawn = found.filter(pl.col("frame") == lead.value).head(PATHS_AT_MOST)
-    paths = {season["season_id"]: path_of(store, season, lead) for season in drawn.iter_rows(named=True)}
-    return Contents(request, store.kernel, events, found, tracks, longitudes, paths)
+def definitions_of(store: TrackStore, request: Request) -> pl.DataFrame:
+    """Return stations and meetings of the planets wanted, by every definition side by side."""
+    names = [planet.value for planet in PLANETS]
+    query = replace(_query(request), choice=Choice(request.planets, stars_for=()))
+    table = side_by_side(store, query) if request.planets else pl.DataFrame(schema=COLUMNS)
+    of_planets = pl.col("body").is_in(names) & (pl.col("other").is_null() | pl.col("other").is_in(names))
+    return table.filter(of_planets)
+
+
+def course_of(
+    store: TrackStore, body: Body, arcs: pl.DataFrame, span: tuple[float, float], step_days: float
+) -> pl.DataFrame:
+    """Return a body's track on the ecliptic of date over a span and as far beyond as its seasons reach.
+
+    Its rows stand whole steps from the span's beginning, at most ROWS_BEYOND of them on either side.
+    """
+    low, high = store.span_jd
+    own = arcs.filter(pl.col("body") == body.value)
+    marks = own.select(f"{mark}_jd_tt" for mark in schema.SEASON_MARKS).unpivot()["value"].drop_nulls()
+    first = max(min([span[0], *marks]) - step_days, low)
+    last = min(max([span[1], *marks]) + step_days, high)
+    start = span[0] - min(math.floor((span[0] - first) / step_days), ROWS_BEYOND) * step_days
+    end = min(last, span[1] + ROWS_BEYOND * step_days)
+    return time_series(store, body, start, end, step_days, Frame.ECLIPTIC)
+
+
+def path_track(store: TrackStore, season: pl.DataFrame) -> pl.DataFrame:
+    """Return the track against the stars that the picture of a season (one row) wants, within the kernel."""
+    low, high = store.span_jd
+    start, end, step = path_span(season)
+    body = Body(season.item(0, "body"))
+    return time_series(store, body, max(start, low), min(end, high), step, Frame.J2000)
 
 
 def _shortened(instant: str) -> str:
@@ -154,15 +203,3 @@ def track_step_days(span_days: float) -> float:
     """Return the longest usual step that still gives a track of LEAST_ROWS rows."""
     fitting = [step for step in TRACK_STEPS_DAYS if span_days / step >= LEAST_ROWS]
     return fitting[0] if fitting else TRACK_STEPS_DAYS[-1]
-
-
-def path_of(store: TrackStore, season: dict[str, Any], frame: Frame) -> pl.DataFrame:
-    """Return the planet's track from a little before a season's first mark to a little after its last."""
-    low, high = store.span_jd
-    retrograde, direct = season["station_retrograde_jd_tt"], season["station_direct_jd_tt"]
-    run = HALF_RUN * (direct - retrograde)
-    start = season["first_pass_start_jd_tt"] or retrograde - run
-    end = season["third_pass_end_jd_tt"] or direct + run
-    margin = PATH_MARGIN * (end - start)
-    start, end = max(start - margin, low), min(end + margin, high)
-    return time_series(store, Body(season["body"]), start, end, (end - start) / PATH_ROWS, frame)

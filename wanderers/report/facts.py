@@ -61,11 +61,11 @@ def constellation(abbreviation: str | None) -> str:
     return NO_VALUE if abbreviation is None else full_name(abbreviation)
 
 
-def spread(values: pl.Series, unit: str) -> str:
-    """Return the range of some figures in whole units: ``81 days``, ``21 to 24 days``."""
-    least, most = (f"{value:.0f}" for value in (values.min(), values.max()))  # type: ignore[str-bytes-safe]
-    plural = "" if most == "1" else "s"
-    return f"{least} {unit}{plural}" if least == most else f"{least} to {most} {unit}{plural}"
+def spread(values: pl.Series, unit: str, decimals: int = 0) -> str:
+    """Return the range of some figures, rounded: ``81 days``, ``21 to 24 days``."""
+    texts = [f"{value:.{decimals}f}" for value in sorted(values.to_list())]
+    ends = texts[0] if texts[0] == texts[-1] else f"{texts[0]} to {texts[-1]}"
+    return f"{ends} {unit}{'' if ends == '1' else 's'}"
 
 
 def signed(value: float | None, decimals: int) -> str:
@@ -83,16 +83,8 @@ def angle(degrees: float | None) -> str:
 
 
 def minute(instant: str | None) -> str:
-    """Return an ISO 8601 instant to the minute, ``2027-01-10 12:59``.
-
-    Rounded, but never into another day: the day printed is the day of the instant.
-    """
-    if instant is None:
-        return NO_VALUE
-    day, _, clock = instant.removesuffix("Z").partition("T")
-    hour, minutes, seconds = clock.split(":")
-    whole = min(int(hour) * 60 + int(minutes) + (float(seconds) >= 30.0), 24 * 60 - 1)
-    return f"{day} {whole // 60:02d}:{whole % 60:02d}"
+    """Return an ISO 8601 instant to the minute, ``2027-01-10 12:59``, nothing for null."""
+    return NO_VALUE if instant is None else words.minute(instant)
 
 
 def day(instant: str | None) -> str:
@@ -134,15 +126,11 @@ def million_km(au: float) -> str:
 def light_time(au: float) -> str:
     """Return how long light takes over a distance."""
     seconds = au * AU_KM / SPEED_OF_LIGHT_KM_PER_S
-    return f"{seconds / 60.0:.1f} light-minutes" if seconds < 5_400.0 else f"{seconds / 3_600.0:.1f} light-hours"
+    minutes = seconds / 60.0
+    return f"{minutes:.1f} light-minutes" if minutes < 90.0 else f"{minutes / 60.0:.1f} light-hours"
 
 
 def times_brighter(magnitude_difference: float) -> str:
     """Return a difference of magnitudes as a ratio of brightness, Pogson's 10^(0.4 dm)."""
     ratio = math.pow(10.0, 0.4 * abs(magnitude_difference))
     return f"{ratio:.1f} times" if ratio < 9.95 else f"{ratio:.0f} times"
-
-
-def listed(words: tuple[str, ...]) -> str:
-    """Return words as a list in a sentence: ``Mars, Jupiter and Saturn``."""
-    return " and ".join(filter(None, (", ".join(words[:-1]), *words[-1:])))

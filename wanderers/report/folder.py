@@ -15,13 +15,15 @@ from typing import Any, Final
 import polars as pl
 
 from wanderers import __version__
+from wanderers.ephemeris.bodies import BODIES, Body
 from wanderers.errors import OutputError
+from wanderers.events.kinds import Kind
 from wanderers.files import reported_as_output_error, require_writable
-from wanderers.report import calendars, facts
+from wanderers.report import calendars
 from wanderers.report.contents import Contents, Progress
 from wanderers.report.page import page_of
 from wanderers.report.page_data import packed, table_data
-from wanderers.report.pictures import Picture, draw
+from wanderers.report.pictures import draw
 from wanderers.report.render import rendered
 
 PAGE: Final = "index.html"
@@ -32,6 +34,9 @@ CALENDAR: Final = "events.ics"
 LITTER: Final = frozenset({".DS_Store", "Thumbs.db", "desktop.ini"})
 """Files that desktops leave in any folder they show."""
 KEPT_OF_NAME: Final = 40
+CALENDAR_AT_MOST: Final = 20_000
+"""Entries of the report's calendar: far more than any calendar program takes at once."""
+ENTRY: Final = Kind.CONSTELLATION_ENTRY.value
 
 
 def require_replaceable(folder: Path) -> None:
@@ -84,11 +89,11 @@ def write_report(contents: Contents, folder: Path, progress: Progress = lambda w
     final = Path(os.path.realpath(folder))
     with reported_as_output_error(folder), _built_beside(final) as building:
         tables = _write_tables(contents, building)
-        calendar = _write_calendar(contents, building)
+        calendar, holds = _write_calendar(contents, building)
         progress("drawing")
         pictures = draw(contents, building / "pictures", progress)
         progress("composing the page")
-        files = (*tables, (CALENDAR, "the events as a calendar, iCalendar (RFC 5545)"))
+        files = (*tables, (CALENDAR, holds))
         page = page_of(contents, pictures, final.name, files)
         html = rendered(page, table_data(contents.events), packed(calendar))
         (building / PAGE).write_text(html, encoding="utf-8")
@@ -143,8 +148,9 @@ def _write_tables(contents: Contents, folder: Path) -> tuple[tuple[str, str], ..
     tables = (
         TableFile("events", "every event of the span, in full precision", contents.events),
         TableFile("seasons", "the retrograde seasons that reach into the span", contents.seasons),
+        TableFile("side_by_side", "stations and meetings by each definition", contents.definitions),
         *(
-            TableFile(f"track_{body.value}", f"positions of {body.label} at regular steps, frame {lead}", track)
+            TableFile(f"track_{body.value}", f"{body.label} at regular steps, frame {lead}", track)
             for body, track in contents.tracks.items()
         ),
     )
@@ -154,13 +160,39 @@ def _write_tables(contents: Contents, folder: Path) -> tuple[tuple[str, str], ..
     return tuple((f"{one.stem}.{kind}", one.holds) for one in tables for kind in ("csv", "parquet"))
 
 
-def _write_calendar(contents: Contents, folder: Path) -> bytes:
-    """Write the calendar of those events whose years a calendar can hold."""
-    events = contents.events.filter(pl.col("utc").str.contains(r"^\d{4}-") & ~pl.col("utc").str.starts_with("0000"))
+def _write_calendar(contents: Contents, folder: Path) -> tuple[bytes, str]:
+    """Write the calendar; return it, and what it holds in words."""
+    events, holds = calendar_events(contents.events)
     first, last = contents.request.ends
-    content = calendars.calendar_bytes(events, name=f"Wandering planets {first} to {last}", kernel=contents.kernel)
+    name = f"Wandering planets {first} to {last}"
+    content = calendars.calendar_bytes(events, name=name, kernel=contents.kernel)
     (folder / CALENDAR).write_bytes(content)
-    return content
+    return content, holds
+
+
+def calendar_events(events: pl.DataFrame) -> tuple[pl.DataFrame, str]:
+    """Return the events that a calendar can and should hold, and which those are in words.
+
+    Years outside 1 to 9999 cannot stand in one; where more than CALENDAR_AT_MOST are left, meetings with
+    stars and changes of constellation go first, then meetings with the Moon, then what lies latest.
+    """
+    possible = events.filter(pl.col("utc").str.contains(r"^\d{4}-") & ~pl.col("utc").str.starts_with("0000"))
+    holds = "the events as a calendar, iCalendar (RFC 5545)"
+    bodies = [body.value for body in BODIES]
+    starless = pl.col("other").is_null() | pl.col("other").is_in(bodies)
+    rules = (
+        ("meetings with stars and changes of constellation", starless & (pl.col("kind") != ENTRY)),
+        ("meetings with the Moon", pl.col("other").is_null() | (pl.col("body") != Body.MOON.value)),
+    )
+    left_out = []
+    for words, rule in rules:
+        if possible.height > CALENDAR_AT_MOST:
+            possible = possible.filter(rule)
+            left_out.append(words)
+    if possible.height > CALENDAR_AT_MOST:
+        possible = possible.head(CALENDAR_AT_MOST)
+        left_out.append(f"what comes after the first {CALENDAR_AT_MOST}")
+    return possible, "; left out, to keep it fit for use: ".join(filter(None, (holds, ", ".join(left_out))))
 
 
 def _write_manifest(contents: Contents, folder: Path) -> None:

@@ -85,7 +85,7 @@ def _turned_back(seasons: pl.DataFrame, jd_from: float) -> Glance:
         (pl.col("station_retrograde_jd_tt") <= jd_from) & (pl.col("station_direct_jd_tt") > jd_from)
     )
     names = tuple(body.label for body in Body if body.value in now["body"].to_list())
-    return Glance("Retrograde as the span begins", facts.listed(names) or "no planet")
+    return Glance("Retrograde as the span begins", words.listed(names) or "no planet")
 
 
 def _closest(events: pl.DataFrame) -> Glance:

@@ -1,4 +1,4 @@
-"""What the words of an event table mean, kind by kind: the definitions that everything here is computed by."""
+"""What the words of an event table mean, kind by kind: the definitions that all was computed by."""
 
 from __future__ import annotations
 
@@ -10,20 +10,20 @@ from wanderers.report.words import NEAR_SUN_DEG
 
 MEANINGS: Final = {
     Kind.STATION: (
-        "The rate of the longitude (on the equator: of the right ascension) passes through zero; retrograde: "
-        "the planet begins to run westward, direct: eastward again. The instant depends on the frame, by hours "
-        "or days, and is neither the edge of the loop nor greatest elongation."
+        "The rate of the longitude (on the equator: of the right ascension) passes through zero. Retrograde: "
+        "the planet begins to run westward; direct: eastward again. The instant depends on the frame, by "
+        "hours or days, and is neither the edge of the loop nor greatest elongation."
     ),
     Kind.OPPOSITION: (
-        "Longitude 180 degrees from the Sun's. Closest approach and greatest brightness fall days to either side."
+        "Longitude 180 degrees from the Sun's. Least distance and greatest brightness may fall on other days."
     ),
     Kind.SOLAR_CONJUNCTION: (
-        "Longitude equal to the Sun's. Mercury and Venus: superior beyond the Sun, inferior on our side of it."
+        "Longitude equal to the Sun's. Mercury and Venus: superior is beyond the Sun, inferior before it."
     ),
     Kind.QUADRATURE: "Longitude 90 degrees east or west of the Sun's; outer planets.",
     Kind.GREATEST_ELONGATION: (
-        "Mercury or Venus at its greatest true angle from the Sun; east of it in the evening sky, west of it in "
-        "the morning sky. Not the best evening: that depends on season and latitude."
+        "Mercury or Venus at its greatest true angle from the Sun; east of it in the evening sky, west of it "
+        "in the morning sky. Not the best evening: that depends on season and latitude."
     ),
     Kind.PERIGEE: "Least distance from the Earth, geometric, centre to centre.",
     Kind.APOGEE: "Greatest distance from the Earth, geometric, centre to centre.",
@@ -34,11 +34,11 @@ MEANINGS: Final = {
         "within a few hundredths for two weeks."
     ),
     Kind.CONJUNCTION: (
-        "Two bodies at equal longitude or, in the frame called equator, at equal right ascension: two instants, "
-        "hours or days apart. The separation is the true angle at that instant."
+        "Two bodies at equal longitude or, in the frame called equator, at equal right ascension: two "
+        "instants, hours or days apart. The separation is the true angle at that instant."
     ),
     Kind.APPULSE: (
-        "Two bodies at their least true separation. It may fall before or after the conjunction, or have none."
+        "Two bodies at their least true separation: it may fall before or after a conjunction, or have none."
     ),
     Kind.OCCULTATION: "One disc covers another, or a star, as seen from the centre of the Earth.",
     Kind.TRANSIT: "Mercury or Venus on the Sun's disc, as seen from the centre of the Earth.",
@@ -55,7 +55,7 @@ MEANINGS: Final = {
 ALWAYS: Final = (
     (
         "Longitude",
-        "Unless another frame is named, ecliptic longitude of date, apparent and seen from the Earth's centre.",
+        "Unless another frame is named, ecliptic longitude of date, apparent, seen from the Earth's centre.",
     ),
     (
         "Retrograde season",
@@ -64,13 +64,13 @@ ALWAYS: Final = (
     ),
     (
         "Elongation",
-        f"The true angle from the Sun, here under From the Sun. Under about {NEAR_SUN_DEG:.0f} degrees a body "
-        "is hard or impossible to see, and dangerous to look for with optics.",
+        f"The true angle from the Sun, here called From the Sun. Under about {NEAR_SUN_DEG:.0f} degrees a "
+        "body is hard or impossible to see, and dangerous to look for with optics.",
     ),
     (
         "UTC and TT",
         "UTC is the time of clocks at longitude 0, without summer time. TT is the even scale of the "
-        "computation, some 69 seconds ahead now; how far UTC will fall behind in later years cannot be foretold.",
+        "computation, some 69 seconds ahead now; how far UTC will fall behind later cannot be foretold.",
     ),
 )
 

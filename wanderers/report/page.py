@@ -14,11 +14,12 @@ from wanderers.ephemeris.bodies import BODIES, Body
 from wanderers.ephemeris.frames import Frame
 from wanderers.events.kinds import Kind
 from wanderers.report import facts
+from wanderers.report.comparison import Compared, compared
 from wanderers.report.contents import Contents
 from wanderers.report.glance import Glance, at_a_glance
 from wanderers.report.glossary import glossary
-from wanderers.report.planets import PlanetSection, planet_sections
 from wanderers.report.pictures import Picture
+from wanderers.report.planets import PlanetSection, planet_sections
 
 FRAME_WORDS: Final = {
     Frame.ECLIPTIC: "true ecliptic and equinox of date",
@@ -58,6 +59,7 @@ class Page:
         overview: the picture of all longitudes, None where no planet was asked for.
         glance: the list at the top.
         sections: one a planet.
+        definitions: stations and meetings of planets by every definition, the first of ``definition_count``.
         bodies: tick boxes of the body filter.
         kinds: tick boxes of the kind filter.
         event_count: rows of the event table.
@@ -79,6 +81,8 @@ class Page:
     overview: Picture | None
     glance: tuple[Glance, ...]
     sections: tuple[PlanetSection, ...]
+    definitions: tuple[Compared, ...]
+    definition_count: int
     bodies: tuple[Choice, ...]
     kinds: tuple[Choice, ...]
     event_count: int
@@ -119,6 +123,8 @@ def page_of(
         overview=overviews[0] if overviews else None,
         glance=at_a_glance(contents.events, contents.seasons, request.jd_from, request.kinds),
         sections=planet_sections(contents, pictures),
+        definitions=compared(contents.definitions),
+        definition_count=contents.definitions.height,
         bodies=body_choices(contents.events),
         kinds=kind_choices(contents.events),
         event_count=contents.events.height,

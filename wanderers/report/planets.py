@@ -18,6 +18,7 @@ EVENTS_AT_MOST: Final = 120
 """Rows of a planet's own table; the rest is in the table of all events."""
 
 MIDDLE_WORDS: Final = {"opposition": "Opposition", "inferior_conjunction": "Inferior conjunction"}
+TURNS: Final = ("station_retrograde", "station_direct")
 MIDDLE_CAUTION: Final = f"At inferior conjunction the planet stands beside the Sun. {facts.NEAR_SUN_NOTE}"
 
 
@@ -52,7 +53,7 @@ class SeasonSheet:
         season_id: the row it comes from.
         name: the month of its middle.
         title: from turn to turn.
-        marks: the five dates: words and day, empty where unknown.
+        marks: the five instants: words, day and clock, empty where unknown.
         cells: the row of the season table, without the marks.
         facts: figures of spoken size, each with the column it was read from.
         caution: about optics near the Sun, empty where the planet is far from it.
@@ -62,7 +63,7 @@ class SeasonSheet:
     season_id: str
     name: str
     title: str
-    marks: tuple[tuple[str, str], ...]
+    marks: tuple[tuple[str, str, str], ...]
     cells: tuple[tuple[str, str], ...]
     facts: tuple[Fact, ...]
     caution: str
@@ -121,8 +122,9 @@ def own_events(events: pl.DataFrame, body: Body) -> pl.DataFrame:
     planets = [planet.value for planet in PLANETS]
     first = (pl.col("body") == body.value) & (pl.col("other").is_null() | pl.col("other").is_in(planets))
     second = (pl.col("other") == body.value) & pl.col("body").is_in(planets)
-    gathered = (pl.col("kind") == Kind.GATHERING.value) & pl.col("detail").str.split("+").list.contains(body.value)
-    return events.filter(first | second | gathered.fill_null(False))
+    gathering = pl.col("kind") == Kind.GATHERING.value
+    among = pl.col("detail").str.split("+").list.contains(body.value).fill_null(False)
+    return events.filter(first | second | (gathering & among))
 
 
 def event_row(event: facts.Row) -> EventRow:
@@ -146,8 +148,8 @@ def _summary(body: Body, seasons: pl.DataFrame) -> str:
         return f"{body.label} does not run backwards in this span."
     first = seasons.filter(pl.col("frame") == seasons["frame"][0])
     count = "once" if first.height == 1 else f"{first.height} times"
-    days = facts.spread(first["retrograde_days"], "day")
-    return f"{body.label} runs backwards {count}, for {days}, over {facts.spread(first['arc_deg'], 'degree')}."
+    days, arc = facts.spread(first["retrograde_days"], "day"), facts.spread(first["arc_deg"], "degree", 1)
+    return f"{body.label} runs backwards {count}, for {days}, over {arc}."
 
 
 def season_sheet(season: facts.Row, path: pl.DataFrame | None, picture: Picture | None) -> SeasonSheet:
@@ -172,15 +174,16 @@ def season_sheet(season: facts.Row, path: pl.DataFrame | None, picture: Picture 
     )
 
 
-def _marks(season: facts.Row) -> tuple[tuple[str, str], ...]:
-    words = (
+def _marks(season: facts.Row) -> tuple[tuple[str, str, str], ...]:
+    columns = (
         ("First pass begins", "first_pass_start_utc"),
         ("Turns retrograde", "station_retrograde_utc"),
         (MIDDLE_WORDS[season["middle_kind"]], "middle_utc"),
         ("Turns direct", "station_direct_utc"),
         ("Third pass ends", "third_pass_end_utc"),
     )
-    return tuple((name, facts.minute(season[column])) for name, column in words)
+    instants = [(name, facts.minute(season[column])) for name, column in columns]
+    return tuple((name, when[:-6], when[-5:]) for name, when in instants)
 
 
 def _cells(season: facts.Row) -> tuple[tuple[str, str], ...]:
@@ -214,21 +217,18 @@ def _size_facts(season: facts.Row) -> tuple[Fact, ...]:
 def _light_facts(season: facts.Row, path: pl.DataFrame | None) -> tuple[Fact, ...]:
     """Return how bright and how large the planet is: at the stations from the track, else from the row."""
     peak = season["peak_magnitude"]
-    brightest = [Fact("Brightest", f"magnitude {facts.signed(peak, 1)}", "peak_magnitude")] if peak is not None else []
-    if path is None:
-        return tuple(brightest)
-    turns = [nearest(path, season[f"station_{way}_jd_tt"]) for way in ("retrograde", "direct")]
-    at_turns = [turn["magnitude"] for turn in turns]
-    found = list(brightest)
-    if peak is not None and None not in at_turns:
-        ratio = facts.times_brighter(min(at_turns) - peak)
-        found[0] = Fact("Brightest", f"magnitude {facts.signed(peak, 1)}, {ratio} as bright as at the nearer turn", "peak_magnitude")
+    at_turns = [] if path is None else [nearest(path, season[f"{turn}_jd_tt"])["magnitude"] for turn in TURNS]
+    found = []
+    if peak is not None:
+        brightest = f"magnitude {facts.signed(peak, 1)}"
+        if at_turns and at_turns[0] is not None:
+            brightest += f", {facts.times_brighter(at_turns[0] - peak)} as bright as at the first turn"
+        found.append(Fact("Brightest", brightest, "peak_magnitude"))
+    if at_turns and None not in at_turns:
         words = " and ".join(facts.signed(value, 1) for value in at_turns)
         found.append(Fact("At the turns", f"magnitude {words}", "magnitude of the track"))
-    least = path["diameter_arcsec"].min()
-    widest = season["peak_diameter_arcsec"]
-    found.append(Fact("Disc", f"{least:.1f}″ to {widest:.1f}″", "diameter_arcsec, peak_diameter_arcsec"))
-    return tuple(found)
+    largest = f"{season['peak_diameter_arcsec']:.1f}″ across"
+    return (*found, Fact("Largest", largest, "peak_diameter_arcsec"))
 
 
 def nearest(path: pl.DataFrame, jd_tt: float) -> dict[str, Any]:

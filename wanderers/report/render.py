@@ -11,8 +11,8 @@ from typing import Any, Final
 from jinja2 import Environment, PackageLoader, StrictUndefined
 from markupsafe import Markup
 
-from wanderers.constants import AU_KM
 from wanderers.report.page import Page
+from wanderers.report.words import GLARE_DEG
 
 HEADINGS: Final = (
     ("time", "Time (UTC)"),
@@ -40,8 +40,9 @@ def rendered(page: Page, data: dict[str, Any], calendar: str) -> str:
     return template.render(
         {name.name: getattr(page, name.name) for name in fields(page)},
         headings=HEADINGS,
-        data=data | {"count": page.event_count, "span": page.span, "stem": page.stem, "au_km": AU_KM},
+        data=data | {"span": page.span, "stem": page.stem, "glare_deg": GLARE_DEG},
         calendar=calendar,
+        glare_deg=GLARE_DEG,
         style=Markup(_packaged("page.css")),
         program=Markup(program),
         program_hash=f"sha256-{base64.b64encode(hashlib.sha256(program.encode()).digest()).decode()}",

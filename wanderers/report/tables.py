@@ -27,7 +27,9 @@ def print_table(table: pl.DataFrame, heading: str, stream: IO[str]) -> None:
     columns = _layout(table)
     printed = Table(box=None, pad_edge=False, padding=(0, 2, 0, 0), header_style="bold")
     for title, _, numeric in columns:
-        printed.add_column(title, justify="right" if numeric else "left", no_wrap=not numeric and title != "What")
+        printed.add_column(
+            title, justify="right" if numeric else "left", no_wrap=not numeric and title != "What"
+        )
     cells = [cell(table) for _, cell, _ in columns]
     for row in zip(*cells, strict=True):
         printed.add_row(*row)
@@ -58,14 +60,15 @@ def seasons_heading(table: pl.DataFrame, kernel: str) -> str:
 def gatherings_heading(table: pl.DataFrame, kernel: str) -> str:
     """Say what a table of gatherings is."""
     return (
-        f"{counted(table.height, 'gathering')}, geocentric, from {kernel}; times in UTC; Circle is the diameter "
-        "of the smallest circle, Arc the stretch of longitude, Sun the least elongation, in degrees"
+        f"{counted(table.height, 'gathering')}, geocentric, from {kernel}; times in UTC; Circle is the "
+        "diameter of the smallest circle, Arc the stretch of longitude, Sun the least elongation, in degrees"
     )
 
 
 def track_heading(table: pl.DataFrame, body: Body, kernel: str) -> str:
     """Say what a time series is."""
-    return f"{body.label}, {counted(table.height, 'row')}, geocentric, apparent places from {kernel}; times in UTC"
+    rows = counted(table.height, "row")
+    return f"{body.label}, {rows}, geocentric, apparent places from {kernel}; times in UTC"
 
 
 def counted(count: int, noun: str) -> str:
@@ -188,7 +191,9 @@ GATHERINGS: Final[list[Column]] = [
 
 def _compared(table: pl.DataFrame) -> list[str]:
     return [
-        f"{label(row['body'])} turns {row['detail']}" if row["kind"] == "station" else f"{label(row['body'])} – {label(row['other'])}"
+        f"{label(row['body'])} turns {row['detail']}"
+        if row["kind"] == "station"
+        else f"{label(row['body'])} – {label(row['other'])}"
         for row in table.iter_rows(named=True)
     ]
 

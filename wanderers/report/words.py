@@ -170,7 +170,8 @@ def _small_angle(angle_deg: float) -> str:
 def _seconds(seconds: float) -> str:
     """Print a length of time to two digits."""
     scale, unit = next((scale, unit) for scale, unit in _TIME_UNITS if abs(seconds) < 120.0 * scale)
-    return f"{float(f'{seconds / scale:.2g}'):g} {unit}"
+    text = f"{float(f'{seconds / scale:.2g}'):g}"
+    return f"{text} {unit.removesuffix('s') if text == '1' else unit}"
 
 
 def _distance(event: Event) -> str:

@@ -10,13 +10,13 @@ from wanderers.arrays import Floats
 
 HAYES_LATHAM: Final = ((0.1451, 7_996.0), (0.120, 1_500.0))
 """Extinction at sea level, magnitudes per air mass, and scale height in metres: of air itself (Rayleigh), and
-of haze on an average night. With 0.016 for ozone: Green 1992, International Comet Quarterly 14, 55, after Hayes
-and Latham 1975, ApJ 197, 593; from memory. Lowland 0.28, a mountain of 2000 m 0.16, as observers find it."""
+of haze on an average night. With 0.016 for ozone: Green 1992, International Comet Quarterly 14, 55, after
+Hayes and Latham 1975, ApJ 197, 593; from memory. Lowland 0.28, a mountain of 2000 m 0.16."""
 OZONE_MAG: Final = 0.016
 
 
 def airmass(altitude_deg: Floats) -> Floats:
-    """Return the relative air mass at altitudes as seen (refraction included), shape (n,); NaN below the horizon.
+    """Return the air mass at altitudes as seen, refraction included, shape (n,); NaN below the horizon.
 
     Source: Kasten and Young 1989, Applied Optics 28, 4735. Accuracy: 0.5 per cent of their table.
     """

@@ -27,7 +27,11 @@ POINTS: Final = (
     "north-northwest",
 )
 LETTERS: Final = tuple(
-    point.replace("-", "").replace("north", "N").replace("south", "S").replace("east", "E").replace("west", "W")
+    point.replace("-", "")
+    .replace("north", "N")
+    .replace("south", "S")
+    .replace("east", "E")
+    .replace("west", "W")
     for point in POINTS
 )
 

@@ -77,7 +77,7 @@ def vantage(sky: Sky, site: Site, jd: Floats) -> Vantage:
 
 
 def sampled(series: Series, function: int, jd: Floats, components: slice) -> Floats:
-    """Evaluate one function of a series and its rate, shape (2, components, n), the fast way where time rises."""
+    """Evaluate a function of a series and its rate, shape (2, components, n), fast where time rises."""
     if jd.size > 1 and np.all(jd[1:] >= jd[:-1]):
         return np.asarray(series.evaluate_grid(np.array([function]), jd, components, 1)[0])
     return series.evaluate(function, jd, components, 1)
@@ -131,7 +131,7 @@ def earth_rotation_rad(jd: Floats, equator: Floats) -> Floats:
 
 
 def equation_of_the_origins_rad(jd: Floats, equator: Floats) -> Floats:
-    """Return the angle from the equinox of date to the origin of Earth rotation, shape (n,), negative after J2000."""
+    """Return the angle from the equinox of date to the origin of Earth rotation, shape (n,)."""
     x, y, z = equator[2]
     scale = x / (1.0 + z)
     origin = np.stack([1.0 - scale * x, -scale * y, -x])

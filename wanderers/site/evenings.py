@@ -64,10 +64,10 @@ def evenings(site: Site, first: np.datetime64, end: np.datetime64) -> Evenings:
     """
     zone = zone_named(site.zone)
     days = np.arange(first, end + np.timedelta64(1, "D"), dtype="datetime64[D]")
-    noons = zone.noon_jd_utc(days)
+    noons: Floats = zone.noon_jd_utc(days)
     by_sun = _off_the_sun(site, days, noons)
     if by_sun:
-        noons = UNIX_EPOCH_JD + days.astype(np.int64) + 0.5 - site.longitude_deg / 360.0
+        noons = np.asarray(UNIX_EPOCH_JD + days.astype(np.int64) + 0.5 - site.longitude_deg / 360.0)
     lasts = np.diff(noons) > 0.5
     kept = np.append(lasts, True)
     return Evenings(site, zone, days[:-1][lasts], jd_tt_from_utc(noons[kept]), by_sun)

@@ -14,6 +14,7 @@ from wanderers.site.zones import nautical_zone_name, zone_named
 
 NEIGHBOURHOOD_DEG: Final = 1.0
 """How far a town may lie whose clock stands for a place given without one: 111 km."""
+KM_PER_DEG: Final = 111.2
 
 
 @dataclass(frozen=True, slots=True)
@@ -57,10 +58,13 @@ def _bare_place(text: str, zone: str | None) -> Finding:
         return Finding(replace(site, zone=zone))
     town, apart_deg = gazetteer.nearest_city(latitude, site.longitude_deg)
     if apart_deg <= NEIGHBOURHOOD_DEG:
-        notice = f"zone {town.zone} taken from {town.full_name}, {apart_deg * 111.2:.0f} km away; --zone sets another"
+        away = f"{town.full_name}, {apart_deg * KM_PER_DEG:.0f} km away"
+        notice = f"zone {town.zone} taken from {away}; --zone sets another"
         return Finding(replace(site, zone=zone_named(town.zone).name), notice)
     name = nautical_zone_name(site.longitude_deg)
-    return Finding(replace(site, zone=name), f"no town near: zone {name} taken from the longitude; --zone sets another")
+    return Finding(
+        replace(site, zone=name), f"no town near: zone {name} taken from the longitude; --zone sets another"
+    )
 
 
 def _city(text: str, paths: Sequence[Path]) -> Finding:
@@ -74,4 +78,6 @@ def _city(text: str, paths: Sequence[Path]) -> Finding:
         names = " or ".join(own[hit] for hit in near)
         raise SiteError(f"{error}; of your own sites: {names}") from None
     site = Site(city.name, city.latitude_deg, city.longitude_deg, 0.0, zone_named(city.zone).name)
-    return Finding(site, f"{city.full_name}: {city.latitude_deg:.2f},{city.longitude_deg:.2f}, sea level assumed")
+    return Finding(
+        site, f"{city.full_name}: {city.latitude_deg:.2f},{city.longitude_deg:.2f}, sea level assumed"
+    )

@@ -81,7 +81,7 @@ def city_named(text: str) -> City:
 
 
 def cities_named(text: str) -> list[City]:
-    """Return every city of a name, most inhabitants first; those of 500 to 15000 only if there is no larger."""
+    """Return every city of a name, largest first; those of 500 to 15000 only if there is no larger."""
     for smallest in (SMALLEST_TOWN, SMALLEST_PLACE):
         found = _matching(cities(smallest), text)
         if found:
@@ -90,7 +90,7 @@ def cities_named(text: str) -> list[City]:
 
 
 def cities_like(text: str) -> list[City]:
-    """Return every place of 500 inhabitants and more whose name begins with a text, most inhabitants first."""
+    """Return every place of 500 inhabitants and more whose name begins with a text, largest first."""
     name, qualifiers = _parts(text)
     found = [
         city

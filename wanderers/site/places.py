@@ -57,9 +57,9 @@ class HorizonProfile:
         return not self.points
 
     def altitude_deg(self, azimuth_deg: Floats) -> Floats:
-        """Return the altitude of the horizon at azimuths, shape (n,); zero all round if it is level."""
+        """Return the altitude of the horizon at azimuths, shape (n,); -90 all round if nothing is known."""
         if self.is_level:
-            return np.zeros_like(azimuth_deg)
+            return np.full_like(azimuth_deg, -90.0)
         azimuths, altitudes = zip(*self.points, strict=True)
         return np.asarray(np.interp(azimuth_deg, azimuths, altitudes, period=360.0))
 
@@ -96,7 +96,8 @@ class Site:
             raise SiteError(f"longitude {self.longitude_deg:g} is not within -180 to 360: {ACCEPTED_PLACE}")
         if not LOWEST_M <= self.elevation_m <= HIGHEST_M:
             raise SiteError(
-                f"elevation {self.elevation_m:g} m is not within {LOWEST_M:.0f} to {HIGHEST_M:.0f}: {ACCEPTED_PLACE}"
+                f"elevation {self.elevation_m:g} m is not within {LOWEST_M:.0f} to {HIGHEST_M:.0f}: "
+                + ACCEPTED_PLACE
             )
         if self.longitude_deg > 180.0:
             object.__setattr__(self, "longitude_deg", self.longitude_deg - 360.0)
@@ -134,7 +135,9 @@ def parse_horizon(text: str) -> HorizonProfile:
     try:
         points = [(float(azimuth), float(altitude)) for azimuth, altitude in pairs]
     except ValueError:
-        raise SiteError(f"'{text}' is no horizon: write AZIMUTH:ALTITUDE pairs, as 0:2,90:5.5,270:1") from None
+        raise SiteError(
+            f"'{text}' is no horizon: write AZIMUTH:ALTITUDE pairs, as 0:2,90:5.5,270:1"
+        ) from None
     return horizon_of(points)
 
 

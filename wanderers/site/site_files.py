@@ -181,7 +181,9 @@ def _site(name: str, table: object) -> Site:
     missing = [key for key in REQUIRED if key not in values]
     if missing:
         raise SiteError(f"{missing[0]} is missing")
-    numbers = {key: _number(key, values.get(key, 0.0)) for key in ("latitude_deg", "longitude_deg", "elevation_m")}
+    numbers = {
+        key: _number(key, values.get(key, 0.0)) for key in ("latitude_deg", "longitude_deg", "elevation_m")
+    }
     zone = zone_named(str(values["zone"])).name
     return Site(name, **numbers, zone=zone, horizon=_horizon(values.get("horizon", [])))
 

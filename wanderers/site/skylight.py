@@ -13,7 +13,8 @@ import numpy as np
 from wanderers.arrays import Floats
 
 NANOLAMBERT_OF_CGS: Final = 1.11e-15
-"""erg/s/cm2/um/arcsec2 in V that make one nanolambert. Schaefer 1993, Vistas in Astronomy 36, 311; from memory."""
+"""erg/s/cm2/um/arcsec2 in V that make one nanolambert. Schaefer 1993, Vistas in Astronomy 36, 311; from
+memory."""
 SUN_MAG: Final = -26.74
 ZERO_POINT_MAG: Final = -11.05
 """Of V in those units: Schaefer 1993; from memory."""
@@ -80,10 +81,12 @@ def moonlight_nl(lights: Lights, extinction_mag: float) -> Floats:
     phase = np.abs(lights.moon_phase_angle_deg)
     illuminance = 10.0 ** (-0.4 * (3.84 + 0.026 * phase + 4e-9 * phase**4))
     apart = np.nan_to_num(lights.moon_separation_deg, nan=180.0)
-    source, target = (scattering_airmass(altitude) for altitude in (lights.moon_altitude_deg, lights.altitude_deg))
+    source, target = (
+        scattering_airmass(altitude) for altitude in (lights.moon_altitude_deg, lights.altitude_deg)
+    )
     light = scattering(apart) * illuminance * _passed(extinction_mag, source)
     shines = (lights.moon_altitude_deg > 0.0) & np.isfinite(lights.moon_separation_deg)
-    return np.where(shines, light * (1.0 - _passed(extinction_mag, target)), 0.0)
+    return np.asarray(np.where(shines, light * (1.0 - _passed(extinction_mag, target)), 0.0))
 
 
 def sunlight_nl(lights: Lights, extinction_mag: float) -> Floats:
@@ -101,7 +104,7 @@ def sunlight_nl(lights: Lights, extinction_mag: float) -> Floats:
     kept = _passed(extinction_mag, scattering_airmass(lights.sun_altitude_deg))
     spread = scattering(apart) * kept + 440_000.0 * (1.0 - kept)
     daylight = 10.0 ** (-0.4 * (SUN_MAG - ZERO_POINT_MAG + 43.27)) * spread * lit
-    return np.minimum(twilight, daylight)
+    return np.asarray(np.minimum(twilight, daylight))
 
 
 def scattering(separation_deg: Floats) -> Floats:
@@ -116,7 +119,7 @@ def scattering(separation_deg: Floats) -> Floats:
 
 
 def scattering_airmass(altitude_deg: Floats) -> Floats:
-    """Return the length of a line of sight through a thin shell of air, shape (n,); 5 at the horizon and below.
+    """Return the length of a line of sight through a thin shell of air, shape (n,): 5 at the horizon.
 
     Source: Krisciunas and Schaefer 1991, equation 3.
     """
@@ -127,8 +130,9 @@ def scattering_airmass(altitude_deg: Floats) -> Floats:
 def faintest_magnitude(brightness_nl: Floats) -> Floats:
     """Return the faintest star, as dimmed by the air, that the eye picks out of a sky, shape (n,).
 
-    Source: Schaefer 1990, PASP 102, 212, equations 2 to 6 (thresholds of Hecht 1947); from memory. For eyes that
-        know where to look.
+    For eyes that know where to look.
+
+    Source: Schaefer 1990, PASP 102, 212, equations 2 to 6 (thresholds of Hecht 1947); from memory.
     """
     bright = brightness_nl >= BRIGHT_SKY_NL
     base = np.where(bright, 10.0**-8.35, 10.0**-9.80)

@@ -12,7 +12,7 @@ from typing import Final
 import numpy as np
 
 from wanderers import constants
-from wanderers.arrays import Floats, Ints
+from wanderers.arrays import Bools, Floats, Ints
 from wanderers.ephemeris.bodies import BODIES, Body
 from wanderers.ephemeris.deflection import deflection
 from wanderers.ephemeris.places import aberrated, length
@@ -35,6 +35,10 @@ class Sight:
 
     direction: Floats
     distance_au: Floats
+
+    def chosen(self, keep: Bools) -> Sight:
+        """Return the instants where ``keep`` is true."""
+        return Sight(self.direction[..., keep], self.distance_au[keep])
 
 
 @dataclass(frozen=True, slots=True)
@@ -137,3 +141,18 @@ def horizontal(at: Vantage, direction: Floats) -> Horizontal:
         np.degrees(np.arctan2(-east, toward_equator)),
         np.degrees(np.arctan2(along_axis, np.hypot(toward_equator, east))),
     )
+
+
+def parallactic_angle_deg(place: Horizontal, latitude_deg: float) -> Floats:
+    """Return the angle at the body from the celestial pole to the zenith, eastward, (-180, 180], shape (n,).
+
+    Negative before the meridian in the north. Without refraction.
+    Source: Meeus, Astronomical Algorithms, 2nd ed. (1998), equation 14.1.
+    """
+    latitude, declination = np.radians(latitude_deg), np.radians(place.declination_deg)
+    hour_angle = np.radians(place.hour_angle_deg)
+    across = np.cos(latitude) * np.sin(hour_angle)
+    along = np.sin(latitude) * np.cos(declination) - np.cos(latitude) * np.sin(declination) * np.cos(
+        hour_angle
+    )
+    return np.asarray(np.degrees(np.arctan2(across, along)))

@@ -19,7 +19,7 @@ from wanderers.events.search import Roots, find_roots
 from wanderers.site.earth import Vantage, vantage
 from wanderers.site.places import HorizonProfile, Site
 from wanderers.site.refraction import airless_deg
-from wanderers.site.topocentric import Sight, see_body, see_each
+from wanderers.site.topocentric import Sight, horizontal, see_body, see_each
 
 SUN_RISE_DEG: Final = -50.0 / 60.0
 """34 arcminutes of refraction and 16 of the Sun's radius: USNO, definitions of rise, set and twilight."""
@@ -81,9 +81,10 @@ def find_crossings(sky: Sky, site: Site, jd: Floats, levels: Sequence[Level]) ->
     """
     at = vantage(sky, site, jd)
     sights = {body: see_body(sky, at, body) for body in {level.body for level in levels}}
-    samples = [_height(level, at, sights[level.body]) for level in levels]
-    values = np.stack([value for value, _ in samples])
-    slopes = np.stack([slope for _, slope in samples])
+    samples = [
+        _heights(levels, np.full(jd.size, k), at, sights[level.body]) for k, level in enumerate(levels)
+    ]
+    values, slopes = (np.stack(parts) for parts in zip(*samples, strict=True))
     hilly = np.array([not level.horizon.is_level for level in levels])
     if hilly.any():  # the slope known does not follow the hills
         slopes[hilly] = np.gradient(values[hilly], jd, axis=1)
@@ -91,14 +92,7 @@ def find_crossings(sky: Sky, site: Site, jd: Floats, levels: Sequence[Level]) ->
 
     def evaluate(number: Ints, instants: Floats) -> tuple[Floats, Floats]:
         here = vantage(sky, site, instants)
-        sight = see_each(sky, here, bodies[number])
-        value, slope = np.empty(instants.size), np.empty(instants.size)
-        for index, level in enumerate(levels):
-            own = number == index
-            if own.any():
-                some = Sight(sight.direction[..., own], sight.distance_au[own])
-                value[own], slope[own] = _height(level, here.chosen(own), some)
-        return value, slope
+        return _heights(levels, number, here, see_each(sky, here, bodies[number]))
 
     return find_roots(evaluate, jd, values, slopes)
 
@@ -127,20 +121,34 @@ def find_culminations(sky: Sky, site: Site, jd: Floats, bodies: Sequence[int]) -
     return find_roots(evaluate, jd, values, slopes, period=360.0)
 
 
-def _height(level: Level, at: Vantage, sight: Sight) -> tuple[Floats, Floats]:
+def _heights(levels: Sequence[Level], number: Ints, at: Vantage, sight: Sight) -> tuple[Floats, Floats]:
     """Return sine of altitude less sine of the level, and its rate per day, shape (n,) each.
 
     The rate leaves out how the level itself changes: it steers and is no result.
+
+    Args:
+        levels: all levels.
+        number: which of them is meant at each instant, shape (n,).
+        at: the site.
+        sight: its body at each instant.
     """
     up, up_rate = _component(at, sight, 2)
-    altitude_deg: Floats | float = level.airless_altitude_deg
-    if not level.horizon.is_level:
-        north, east = (np.einsum("jn,jn->n", at.to_horizon[0, row], sight.direction[0]) for row in (0, 1))
-        hills = level.horizon.altitude_deg(np.degrees(np.arctan2(east, north)) % 360.0)
-        altitude_deg = np.maximum(altitude_deg, airless_deg(hills, at.site.elevation_m))
-    if level.by_limb:
-        altitude_deg = altitude_deg - np.degrees(MOON_RADIUS_AU / sight.distance_au)
+    altitude_deg = np.array([level.airless_altitude_deg for level in levels])[number]
+    for index, level in enumerate(levels):
+        if not level.horizon.is_level:
+            own = number == index
+            hills = _hills_deg(level.horizon, at.chosen(own), sight.direction[0][:, own])
+            altitude_deg[own] = np.maximum(altitude_deg[own], hills)
+    by_limb = np.array([level.by_limb for level in levels])[number]
+    radius_deg = np.degrees(MOON_RADIUS_AU / sight.distance_au)
+    altitude_deg = altitude_deg - np.where(by_limb, radius_deg, 0.0)
     return up - np.sin(np.radians(altitude_deg)), up_rate
+
+
+def _hills_deg(horizon: HorizonProfile, at: Vantage, direction: Floats) -> Floats:
+    """Return how high the hills stand in directions, without refraction, shape (n,)."""
+    hills = horizon.altitude_deg(horizontal(at, direction).azimuth_deg)
+    return airless_deg(hills, at.site.elevation_m)
 
 
 def _hour_angle(at: Vantage, sight: Sight) -> tuple[Floats, Floats]:
@@ -157,5 +165,7 @@ def _component(at: Vantage, sight: Sight, row: int) -> tuple[Floats, Floats]:
     """Return the part of a direction toward north, east or up (row 0, 1, 2), and its rate."""
     axis, turning = at.to_horizon[:, row]
     value = np.einsum("jn,jn->n", axis, sight.direction[0])
-    rate = np.einsum("jn,jn->n", turning, sight.direction[0]) + np.einsum("jn,jn->n", axis, sight.direction[1])
+    rate = np.einsum("jn,jn->n", turning, sight.direction[0]) + np.einsum(
+        "jn,jn->n", axis, sight.direction[1]
+    )
     return value, rate

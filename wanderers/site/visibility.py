@@ -1,10 +1,10 @@
 """Can it be seen, and with what: three published criteria on one scale of magnitudes.
 
-The *margin* is by how many magnitudes a thing is brighter than the faintest that could be seen there and then.
+The *margin* is by how many magnitudes a thing is brighter than the faintest that shows there and then.
 Three margins are taken, the smallest counts:
 
 * against the sky: dimmed by the air, on the brightness of night, moonlight, twilight or day;
-* arcus visionis: how far it stands above the Sun, against what its magnitude needs;
+* arcus visionis, once the Sun is down: how far it stands above the Sun, against what its magnitude needs;
 * for the Moon, whether its crescent is wide enough.
 """
 
@@ -16,7 +16,9 @@ from typing import Final
 
 import numpy as np
 
+from wanderers import constants
 from wanderers.arrays import Bools, Floats, Ints
+from wanderers.ephemeris.bodies import EQUATORIAL_RADIUS_KM, Body
 from wanderers.site import airmass, skylight
 from wanderers.site.skylight import Lights
 
@@ -52,7 +54,7 @@ class Criteria:
         telescope_mag: likewise 200 mm: 5 log10(200 / 7).
         easy_mag: margin from which nobody misses it. Common practice, no source.
         altitude_worth_mag_per_deg: how much margin below ``easy_mag`` one degree of height outweighs in the
-            choice of the best moment. Common practice, no source.
+            choice of the best moment among those of one verdict. Common practice, no source.
     """
 
     extinction_mag: float | None = None
@@ -74,7 +76,9 @@ CRESCENT_Q: Final = (-0.293, -0.232, -0.160, -0.014, 0.216)
 """Bounds of the classes F to A of a young crescent. Yallop 1997, NAO Technical Note 69; from memory."""
 WIDEST_CRESCENT_DEG: Final = 30.0
 """Elongation beyond which a crescent's width is no question."""
-MOON_RADIUS_KM: Final = 1_737.4
+MOON_RADIUS_KM: Final = EQUATORIAL_RADIUS_KM[Body.MOON]
+MOON_RADIUS_PER_PARALLAX: Final = 0.2725
+"""The Moon's radius in Earth radii: turns its semidiameter into its horizontal parallax. IAU 1982."""
 FARTHEST_MAG: Final = 99.0
 
 
@@ -118,9 +122,10 @@ def margins(looks: Looks, criteria: Criteria, extinction_mag: float) -> Margins:
     dimmed = airmass.dimmed_magnitude(looks.magnitude, looks.lights.altitude_deg, extinction_mag)
     arc = looks.airless_altitude_deg - looks.lights.sun_altitude_deg
     needed = arcus_visionis_deg(looks.magnitude, criteria)
+    by_arc = np.nan_to_num((arc - needed) / criteria.arcus_deg_per_mag, nan=-FARTHEST_MAG)
     return Margins(
         np.nan_to_num(limit - dimmed, nan=-FARTHEST_MAG),
-        np.nan_to_num((arc - needed) / criteria.arcus_deg_per_mag, nan=-FARTHEST_MAG),
+        np.where(looks.lights.sun_altitude_deg > 0.0, FARTHEST_MAG, by_arc),
         np.where(looks.is_moon, _crescent_margin(looks, criteria), FARTHEST_MAG),
     )
 
@@ -137,12 +142,12 @@ def verdicts(margin: Floats, criteria: Criteria) -> Ints:
 
 
 def merit(margin: Floats, altitude_deg: Floats, criteria: Criteria) -> Floats:
-    """Return how good a moment is, shape (n,): margin while it is scarce, then height above the horizon.
+    """Return how good a moment is, shape (n,): its verdict, then margin while it is scarce and height.
 
-    A higher moment with no more merit has no more margin: so no verdict improves when low altitudes are
-    forbidden.
+    The best verdict to be had wins: so none improves when low altitudes are forbidden.
     """
-    return np.minimum(margin, criteria.easy_mag) + criteria.altitude_worth_mag_per_deg * altitude_deg
+    shown = np.minimum(margin, criteria.easy_mag) + criteria.altitude_worth_mag_per_deg * altitude_deg
+    return np.asarray(shown - FARTHEST_MAG * verdicts(margin, criteria))
 
 
 def crescent_q(arc_deg: Floats, elongation_deg: Floats, semidiameter_arcmin: Floats) -> Floats:
@@ -161,9 +166,13 @@ def crescent_q(arc_deg: Floats, elongation_deg: Floats, semidiameter_arcmin: Flo
 
 
 def _crescent_margin(looks: Looks, criteria: Criteria) -> Floats:
-    """Turn the classes of a crescent into magnitudes: what needs binoculars is as far below zero as they reach."""
-    semidiameter_rad = np.arcsin(MOON_RADIUS_KM / (looks.distance_au * 149_597_870.7))
-    parallax_deg = np.degrees(semidiameter_rad) / 0.2725 * np.cos(np.radians(looks.airless_altitude_deg))
+    """Turn classes of a crescent into magnitudes: one for binoculars lies as far below zero as they reach."""
+    semidiameter_rad = np.arcsin(MOON_RADIUS_KM / (looks.distance_au * constants.AU_KM))
+    parallax_deg = (
+        np.degrees(semidiameter_rad)
+        / MOON_RADIUS_PER_PARALLAX
+        * np.cos(np.radians(looks.airless_altitude_deg))
+    )
     arc = looks.airless_altitude_deg + parallax_deg - looks.lights.sun_altitude_deg
     elongation = looks.lights.sun_separation_deg
     q = crescent_q(arc, np.minimum(elongation, WIDEST_CRESCENT_DEG), np.degrees(semidiameter_rad) * 60.0)

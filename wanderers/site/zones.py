@@ -25,7 +25,7 @@ from wanderers.errors import UnknownNameError
 UNIX_EPOCH_JD: Final = 2_440_587.5
 """1970-01-01T00:00."""
 CYCLE_DAYS: Final = 146_097
-"""400 Gregorian years: whole weeks, so that all rules repeat. Carries instants beyond the years Python knows."""
+"""400 Gregorian years, whole weeks, so that rules repeat: stands for years that Python does not know."""
 FIRST_DAY: Final = dt.date(1, 1, 3).toordinal()
 LAST_DAY: Final = dt.date(9999, 12, 29).toordinal()
 UNIX_EPOCH_ORDINAL: Final = dt.date(1970, 1, 1).toordinal()
@@ -56,11 +56,17 @@ class Zone:
         """
         days = np.floor(np.nan_to_num(jd_utc, nan=UNIX_EPOCH_JD) - UNIX_EPOCH_JD).astype(np.int64)
         distinct, place = np.unique(days, return_inverse=True)
-        at_start = np.array([self._offset_of_instant(day * 86_400) for day in distinct.tolist()], dtype=np.int64)
-        at_end = np.array([self._offset_of_instant((day + 1) * 86_400) for day in distinct.tolist()], dtype=np.int64)
+        at_start = np.array(
+            [self._offset_of_instant(day * 86_400) for day in distinct.tolist()], dtype=np.int64
+        )
+        at_end = np.array(
+            [self._offset_of_instant((day + 1) * 86_400) for day in distinct.tolist()], dtype=np.int64
+        )
         offsets = at_start[place]
         (changing,) = np.nonzero((at_start != at_end)[place])
-        seconds = np.floor((np.nan_to_num(jd_utc, nan=UNIX_EPOCH_JD) - UNIX_EPOCH_JD) * SECONDS_PER_DAY + 1e-4)
+        seconds = np.floor(
+            (np.nan_to_num(jd_utc, nan=UNIX_EPOCH_JD) - UNIX_EPOCH_JD) * SECONDS_PER_DAY + 1e-4
+        )
         for index in changing.tolist():
             offsets[index] = self._offset_of_instant(int(seconds[index]))
         return offsets
@@ -135,7 +141,9 @@ def _advice(name: str) -> str:
     """Return the hint for a name that nothing resembles: 598 names are no help."""
     by_lower = {known.lower(): known for known in zone_names()}
     wanted = name.strip().lower()
-    ending = [known for lower, known in by_lower.items() if lower.rsplit("/", 1)[-1] == wanted.rsplit("/", 1)[-1]]
+    ending = [
+        known for lower, known in by_lower.items() if lower.rsplit("/", 1)[-1] == wanted.rsplit("/", 1)[-1]
+    ]
     near = ending or [by_lower[hit] for hit in difflib.get_close_matches(wanted, by_lower, n=3, cutoff=0.6)]
     if near:
         return f"did you mean {' or '.join(near)}?"
@@ -154,4 +162,3 @@ def _within_calendar(ordinal: int) -> int:
 def _in_minutes(offset: dt.timedelta | None) -> int:
     seconds = 0.0 if offset is None else offset.total_seconds()
     return 60 * round(seconds / 60.0)
-

@@ -60,7 +60,12 @@ QUANTITIES: Final = (
 
 
 def draw_brightness(
-    body: Body, track: pl.DataFrame, seasons: pl.DataFrame, *, span_jd: Span | None = None, style: Style = LIGHT
+    body: Body,
+    track: pl.DataFrame,
+    seasons: pl.DataFrame,
+    *,
+    span_jd: Span | None = None,
+    style: Style = LIGHT,
 ) -> Figure:
     """Return the chart of a planet's distance, brightness and size; arguments as for ``plot_brightness``."""
     with in_force(style):
@@ -74,8 +79,8 @@ def draw_brightness(
         low, high = axes[0].get_xlim()
         write_title(
             figure,
-            f"{body.label}: distance, brightness and size, {timeaxis.day_text(low)} to {timeaxis.day_text(high)}",
-            "Geometric distance from the Earth's centre; model magnitude; equatorial diameter of the full disc.",
+            f"{body.label}: distance, brightness and size, {timeaxis.span_text(low, high)}",
+            "Geometric distance from the Earth's centre, model magnitude, equatorial diameter of the disc.",
             style,
         )
         found = marks.seasons_of(seasons, body)
@@ -131,11 +136,10 @@ def brightness_alt_text(body: Body, track: pl.DataFrame, *, span_jd: Span | None
     for quantity in QUANTITIES:
         extreme = _extreme(quantity, x, curves.column(track, quantity.column), (low, high))
         if extreme is not None:
-            told.append(f"{quantity.word} on {timeaxis.long_day_text(extreme[0])} ({_spoken(quantity, extreme[1])})")
-    head = (
-        f"Distance, magnitude and diameter of {body.label} against time, {timeaxis.long_day_text(low)} "
-        f"to {timeaxis.long_day_text(high)}."
-    )
+            told.append(
+                f"{quantity.word} on {timeaxis.long_day_text(extreme[0])} ({_spoken(quantity, extreme[1])})"
+            )
+    head = f"Distance, magnitude and diameter of {body.label}, {timeaxis.long_span_text(low, high)}."
     return f"{head} It is {'; '.join(told)}." if told else head
 
 
@@ -157,7 +161,9 @@ def _mark(ax: Axes, found: list[Season], line: tuple[Floats, Floats], style: Sty
     """Shade the days of retrograde motion and mark turns and middles on the line."""
     low, high = ax.get_xlim()
     bands = [(s.turns_back, s.turns_on - s.turns_back) for s in found]
-    ax.broken_barh(bands, (0.0, 1.0), transform=ax.get_xaxis_transform(), facecolor=style.back_fill, zorder=0.4)
+    ax.broken_barh(
+        bands, (0.0, 1.0), transform=ax.get_xaxis_transform(), facecolor=style.back_fill, zorder=0.4
+    )
     ax.set_xlim(low, high)
     if len(found) > MOST_MARKED:
         return
@@ -166,14 +172,33 @@ def _mark(ax: Axes, found: list[Season], line: tuple[Floats, Floats], style: Sty
         marks.draw_marks(ax, mark, at, np.interp(at, *line, left=np.nan, right=np.nan), style)
 
 
-def _extreme(quantity: Quantity, x: Floats, y: Floats, within: tuple[float, float]) -> tuple[float, float] | None:
-    """Return when the quantity is at its notable extreme, and the value; None where nothing is known."""
+def _extreme(
+    quantity: Quantity, x: Floats, y: Floats, within: tuple[float, float]
+) -> tuple[float, float] | None:
+    """Return when the quantity is at its notable extreme, and the value; None where nothing is known.
+
+    The samples are joined by a parabola, so that the date does not depend on the hour they are taken at.
+    """
     signed = y if quantity.most_is_least else -y
     usable = np.where((x >= within[0]) & (x <= within[1]) & np.isfinite(y), signed, np.inf)
     if not np.isfinite(usable).any():
         return None
     best = int(np.argmin(usable))
-    return float(x[best]), float(y[best])
+    near = slice(best - 1, best + 2)
+    turns = 0 < best < x.size - 1 and bool(
+        np.all(signed[near] >= signed[best])
+    )  # else it lies at the span's edge
+    at, value = _vertex(x[near], y[near]) if turns else (float(x[best]), float(y[best]))
+    return min(max(at, within[0]), within[1]), value
+
+
+def _vertex(x: Floats, y: Floats) -> tuple[float, float]:
+    """Return the vertex of the parabola through three evenly spaced points, the middle one being extreme."""
+    bend = y[0] - 2.0 * y[1] + y[2]
+    if bend == 0.0:
+        return float(x[1]), float(y[1])
+    shift = 0.5 * (y[0] - y[2]) / bend
+    return float(x[1] + shift * (x[2] - x[1])), float(y[1] - 0.25 * (y[0] - y[2]) * shift)
 
 
 def _note_extreme(ax: Axes, quantity: Quantity, line: tuple[Floats, Floats], style: Style) -> None:

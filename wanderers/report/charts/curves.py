@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -11,6 +12,54 @@ from wanderers.arrays import Bools, Floats
 from wanderers.report.charts.timeaxis import utc_days
 
 CUT_STEP_DEG: Final = 5.0
+
+
+@dataclass(frozen=True, slots=True)
+class Line:
+    """A planet's longitude against time, without jumps.
+
+    Attributes:
+        time: UTC as Julian Day numbers, shape (n,).
+        longitude_deg: unwrapped, shape (n,).
+        back: where it runs backwards, shape (n,).
+    """
+
+    time: Floats
+    longitude_deg: Floats
+    back: Bools
+
+    def at(self, instant: float) -> float:
+        """Return the unwrapped longitude at an instant."""
+        return float(np.interp(instant, self.time, self.longitude_deg))
+
+    def near(self, longitude_deg: float, instant: float) -> float:
+        """Return a longitude on the turn of the circle on which the line is at an instant."""
+        here = self.at(instant)
+        return here + float(180.0 - (180.0 - (longitude_deg - here)) % 360.0)
+
+    def within(self, low: float, high: float) -> Floats:
+        """Return the unwrapped longitudes between two instants, shape (k,)."""
+        return self.longitude_deg[(self.time >= low) & (self.time <= high)]
+
+    def cropped(self, low: float, high: float) -> Line:
+        """Return the part between two instants, to the very edges where the line reaches beyond them."""
+        inner = (self.time > low) & (self.time < high)
+        edges = [edge for edge in (low, high) if self.time[0] <= edge <= self.time[-1]]
+        time = np.sort(np.concatenate([self.time[inner], edges]))
+        nearest = np.clip(np.searchsorted(self.time, time), 0, self.time.size - 1)
+        return Line(time, np.interp(time, self.time, self.longitude_deg), self.back[nearest])
+
+    def laid(self, cut_deg: float | None, *, back_only: bool = False) -> tuple[Floats, Floats]:
+        """Return the line as it is drawn on a circle cut at a longitude; None leaves it whole."""
+        time = only(self.time, self.back) if back_only else self.time
+        if cut_deg is None:
+            return time, self.longitude_deg
+        return wrapped_line(time, self.longitude_deg, cut_deg)
+
+
+def line_of(track: pl.DataFrame) -> Line:
+    """Return the line of a track's longitude."""
+    return Line(time_of(track), unwrapped(track["longitude_deg"].to_numpy()), runs_back(track))
 
 
 def unwrapped(longitude_deg: Floats) -> Floats:

@@ -58,7 +58,9 @@ class SkyField:
     def holds(self, flat: Floats, slack_deg: float = 0.0) -> np.ndarray:
         """Return which flat places lie within the field, shape (n,)."""
         wide = self.half_width_deg + slack_deg
-        return np.asarray((np.abs(flat[:, 0]) <= wide) & (np.abs(flat[:, 1]) <= self.half_height_deg + slack_deg))
+        return np.asarray(
+            (np.abs(flat[:, 0]) <= wide) & (np.abs(flat[:, 1]) <= self.half_height_deg + slack_deg)
+        )
 
 
 def field_around(
@@ -129,8 +131,8 @@ def ecliptic_in(sky: SkyField) -> Floats:
     """Return the ecliptic of J2000 across a field, in order of longitude, shape (n, 2), perhaps empty."""
     longitude = np.arange(0.0, 360.0, 0.25)
     flat = sky.flat(*coordinates_of_j2000(longitude, np.zeros_like(longitude)))
-    inside = sky.holds(flat, slack_deg=1.0)
-    return flat[inside][np.argsort(flat[inside, 0])]
+    near = flat[sky.holds(flat, slack_deg=1.0)]
+    return np.asarray(near[np.argsort(near[:, 0])])
 
 
 def ecliptic_constellations(jd_tt: float) -> tuple[Floats, list[str]]:
@@ -148,7 +150,9 @@ def ecliptic_constellations(jd_tt: float) -> tuple[Floats, list[str]]:
     to_ecliptic = frames.rotation_about_x(float(obliquity)) @ to_equator
     longitude = np.arange(0.0, 360.0, ECLIPTIC_STEP_DEG)
     angle = np.radians(longitude)
-    along = constellations.constellation_at(to_ecliptic.T @ np.stack([np.cos(angle), np.sin(angle), 0.0 * angle]))
+    along = constellations.constellation_at(
+        to_ecliptic.T @ np.stack([np.cos(angle), np.sin(angle), 0.0 * angle])
+    )
     begins = np.flatnonzero(along != np.roll(along, 1))
     names = [constellations.full_name(constellations.ABBREVIATIONS[along[number]]) for number in begins]
     return longitude[begins], names

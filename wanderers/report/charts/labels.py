@@ -160,11 +160,12 @@ def spread(wanted: Floats, least_gap: float, low: float, high: float) -> Floats:
 def measure(ax: Axes, text: str, look: dict[str, Any]) -> tuple[float, float]:
     """Return width and height of a text in dots, as these axes would draw it."""
     probe = Text(0.0, 0.0, text, **{key: value for key, value in look.items() if key != "bbox"})
-    probe.set_figure(ax.figure)  # type: ignore[arg-type]
+    probe.set_figure(ax.figure)
     canvas = ax.figure.canvas
     if not isinstance(canvas, FigureCanvasAgg):
         raise TypeError("the figure needs an Agg canvas to measure text; new_figure gives one")
-    extent = probe.get_window_extent(canvas.get_renderer())
+    renderer: Any = canvas.get_renderer()  # type: ignore[no-untyped-call]
+    extent = probe.get_window_extent(renderer)
     return float(extent.width), float(extent.height)
 
 
@@ -250,7 +251,8 @@ def _lead(ax: Axes, label: Label, centre: Floats, unit: float) -> None:
 def _summed(ground: Ground) -> Ints:
     """Return how many points lie to the lower left of each corner of a mesh over the bounds.
 
-    With such sums the points in any box are counted from its four corners (Crow 1984, Computer Graphics 18, 207).
+    With such sums the points in any box are counted from its four corners (Crow 1984, Computer Graphics 18,
+    207).
     """
     left, bottom, right, top = ground.bounds
     shape = (int((right - left) / MESH_DOTS) + 2, int((top - bottom) / MESH_DOTS) + 2)

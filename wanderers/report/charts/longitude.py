@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Any, Final, Literal
+from typing import Final, Literal
 
 import numpy as np
 import polars as pl
@@ -13,6 +13,7 @@ from matplotlib.figure import Figure
 from wanderers.arrays import Floats
 from wanderers.ephemeris.bodies import Body
 from wanderers.report.charts import curves, labels, marks, timeaxis
+from wanderers.report.charts.curves import Line
 from wanderers.report.charts.marks import Season
 from wanderers.report.charts.style import LIGHT, Style, axes_at, in_force, new_figure, tidy, write_title
 from wanderers.report.charts.wording import listed, season_sentence
@@ -30,6 +31,8 @@ ROOMY_PANELS: Final = 2
 
 ROUND_DEG: Final = 330.0
 MOST_WORDED: Final = 6
+MOST_MARKED: Final = 40
+MOST_TOLD: Final = 4
 MARK_DIRECTIONS: Final[dict[str, tuple[float, ...]]] = {
     "station_retrograde": (112.0,),
     "middle": (45.0,),
@@ -43,11 +46,16 @@ ORDER: Final = ("station_retrograde", "station_direct", "middle", "first_pass_st
 """Which marks choose their label's place first."""
 
 Span = tuple[float, float]
-Notes = Literal["words", "dates", "numbers"]
+Notes = Literal["words", "dates", "numbers", "none"]
 
 
 def draw_longitude(
-    body: Body, track: pl.DataFrame, seasons: pl.DataFrame, *, span_jd: Span | None = None, style: Style = LIGHT
+    body: Body,
+    track: pl.DataFrame,
+    seasons: pl.DataFrame,
+    *,
+    span_jd: Span | None = None,
+    style: Style = LIGHT,
 ) -> Figure:
     """Return a planet's longitude over the span, with a panel for each season too flat to be read there.
 
@@ -61,26 +69,27 @@ def draw_longitude(
     """
     own = seasons.filter(pl.col("body") == body.value)
     found = marks.seasons_of(own)
-    panels = found if _needs_panels(track, found) else []
+    panels = found if _needs_panels(curves.line_of(track).within(*_bounds(track, span_jd)), found) else []
     rows = -(-len(panels) // _panels_a_row(len(panels)))
     with in_force(style):
         below = 1.05 + (0.1 + rows * PANEL_HEIGHT_IN if rows else 0.0)
         figure = new_figure((4.6 if rows else 6.2) + below, style)
         ax = axes_at(figure, LEFT_IN, RIGHT_IN, below, 0.8)
-        plot_longitude(body, track, own, ax, span_jd=span_jd, notes=_notes(found, panels), style=style)
+        notes = _notes(found, panels)
+        plot_longitude(body, track, own, ax, span_jd=span_jd, notes=notes, style=style)
         for number, season in enumerate(panels):
-            _panel(figure, number, len(panels), track, season, style)
+            panel = _panel_axes(figure, number, len(panels), season, style)
+            plot_season(track, season, panel, notes=_panel_notes(len(panels)), style=style)
         low, high = ax.get_xlim()
         write_title(
             figure,
-            f"{body.label}: longitude, {timeaxis.day_text(low)} to {timeaxis.day_text(high)}",
-            "Apparent geocentric longitude, true ecliptic and equinox of date. Days of retrograde motion are shaded"
-            + (" and numbered as below." if panels else "."),
+            f"{body.label}: longitude, {timeaxis.span_text(low, high)}",
+            f"Apparent geocentric longitude, true ecliptic and equinox of date. {_remark(found, notes)}",
             style,
         )
-        handles = marks.key_handles(body, style, middle=marks.middle_words(found), framed=True)
         if found:
-            marks.draw_key(ax, handles, 0.72, style)
+            handles = marks.key_handles(body, style, middle=marks.middle_words(found), framed=True)
+            marks.draw_key(ax, handles[:1] if notes == "none" else handles, 0.72, style)
     return figure
 
 
@@ -105,21 +114,24 @@ def plot_longitude(
         seasons: of this planet, ``schema.SEASON_COLUMNS``.
         ax: the axes.
         span_jd: TT Julian dates between which it is drawn.
-        notes: what stands beside the marks: words and dates, dates, or a number a season and no marks.
+        notes: what stands beside the marks: words and dates, or dates; or no marks, with a number a season
+            or nothing.
         style: the look.
 
     Returns:
         the axes.
     """
     found = marks.seasons_of(seasons)
-    line = curves.time_of(track), curves.unwrapped(track["longitude_deg"].to_numpy())
-    low, high = (line[0][0], line[0][-1]) if span_jd is None else timeaxis.utc_days(span_jd).tolist()
-    shown = line[1][(line[0] >= low) & (line[0] <= high)]
+    line = curves.line_of(track)
+    low, high = _bounds(track, span_jd)
+    shown = line.within(low, high)
     cut = _cut(shown, found)
-    _draw_line(ax, body, line, curves.runs_back(track), cut, style)
+    _draw_line(ax, body, line, cut, style)
     _set_heights(ax, shown, cut)
     timeaxis.set_time_axis(ax, low, high)
     tidy(ax, style)
+    if notes == "none":
+        return ax
     _draw_spans(ax, found, line, cut, style)
     if notes == "numbers":
         _number_seasons(ax, found, style)
@@ -128,51 +140,72 @@ def plot_longitude(
     return ax
 
 
-def longitude_alt_text(body: Body, track: pl.DataFrame, seasons: pl.DataFrame, *, span_jd: Span | None = None) -> str:
+def longitude_alt_text(
+    body: Body, track: pl.DataFrame, seasons: pl.DataFrame, *, span_jd: Span | None = None
+) -> str:
     """Return what the chart of one planet's longitude shows, in one or two sentences."""
     found = marks.seasons_of(seasons, body)
-    x = curves.time_of(track)
-    low, high = (x[0], x[-1]) if span_jd is None else timeaxis.utc_days(span_jd).tolist()
-    head = (
-        f"Ecliptic longitude of {body.label} against time, {timeaxis.long_day_text(low)} "
-        f"to {timeaxis.long_day_text(high)}."
-    )
+    low, high = _bounds(track, span_jd)
+    head = f"Ecliptic longitude of {body.label} against time, {timeaxis.long_span_text(low, high)}."
     if not found:
         return f"{head} It does not run backwards."
     if len(found) == 1:
         return f"{head} {season_sentence(found[0])}"
-    arcs = [season.arc_deg for season in found]
-    stretches = [
-        f"{timeaxis.long_day_text(season.turns_back)} to {timeaxis.long_day_text(season.turns_on)}" for season in found
-    ]
-    spread = f"{min(arcs):.1f} to {max(arcs):.1f}"
-    return f"{head} It runs backwards {len(found)} times, by {spread} degrees: {listed(stretches)}."
+    arcs = sorted(season.arc_deg for season in found)
+    spread = f"{arcs[0]:.1f}" if f"{arcs[0]:.1f}" == f"{arcs[-1]:.1f}" else f"{arcs[0]:.1f} to {arcs[-1]:.1f}"
+    stretches = [timeaxis.long_span_text(season.turns_back, season.turns_on) for season in found]
+    told = listed(stretches) if len(found) <= MOST_TOLD else f"first {stretches[0]}, last {stretches[-1]}"
+    often = "twice" if len(found) == 2 else f"{len(found)} times"
+    return f"{head} It runs backwards {often}, by {spread} degrees: {told}."
 
 
-def plot_season(body: Body, track: pl.DataFrame, season: Season, ax: Axes, *, notes: Notes = "words", style: Style = LIGHT) -> Axes:
-    """Draw one season's longitude against time, from a little before its first mark to a little after its last."""
-    x, longitude = curves.time_of(track), curves.unwrapped(track["longitude_deg"].to_numpy())
+def plot_season(
+    track: pl.DataFrame, season: Season, ax: Axes, *, notes: Notes = "words", style: Style = LIGHT
+) -> Axes:
+    """Draw one season's longitude against time, over a little more than its marks.
+
+    Args:
+        track: of the season's planet, ``schema.TRACK_COLUMNS``, longitude of date.
+        season: out of ``marks.seasons_of``.
+        ax: the axes.
+        notes: what stands beside the marks.
+        style: the look.
+
+    Returns:
+        the axes.
+    """
+    line = curves.line_of(track)
     room = 0.12 * (season.end - season.start)
     low, high = season.start - room, season.end + room
-    inside = (x >= low) & (x <= high)
-    _draw_line(ax, body, (x, longitude), curves.runs_back(track), None, style)
-    direct = _branch(season.direct_deg, season.turns_on, x, longitude)
-    seen = longitude[inside] if inside.any() else np.array([direct, direct + season.arc_deg])
-    top, bottom = max(seen.max(), direct + season.arc_deg), min(seen.min(), direct)
-    ax.set_ylim(bottom - 0.12 * (top - bottom), top + 0.16 * (top - bottom))
+    _draw_line(ax, season.body, line, None, style)
+    direct = line.near(season.direct_deg, season.turns_on)
+    heights = np.append(line.within(low, high), [direct, direct + season.arc_deg])
+    bottom, tall = float(heights.min()), float(np.ptp(heights))
+    ax.set_ylim(bottom - 0.12 * tall, bottom + 1.16 * tall)
     timeaxis.set_time_axis(ax, low, high, least_pt=30.0)
     ax.set_xlabel("")
-    _draw_spans(ax, [season], (x, longitude), None, style)
+    _draw_spans(ax, [season], line, None, style)
     _degree_ticks(ax, 5)
     tidy(ax, style)
-    _note_marks(ax, [season], _draw_marks(ax, [season], (x, longitude), None, style), notes, style)
+    _note_marks(ax, [season], _draw_marks(ax, [season], line, None, style), notes, style)
     return ax
+
+
+def _remark(found: list[Season], notes: Notes) -> str:
+    """Return how retrograde motion is shown."""
+    if not found:
+        return "No retrograde motion in this span."
+    if notes == "none":
+        return "Retrograde stretches are heavy."
+    return f"Days of retrograde motion are shaded{' and numbered as below' if notes == 'numbers' else ''}."
 
 
 def _notes(found: list[Season], panels: list[Season]) -> Notes:
     """Return what stands beside the marks of the upper chart."""
     if panels:
         return "numbers"
+    if len(found) > MOST_MARKED:
+        return "none"
     return "words" if len(found) <= MOST_WORDED else "dates"
 
 
@@ -181,43 +214,50 @@ def _panels_a_row(count: int) -> int:
     return min(max(count, 1), 3 if count <= 6 else 4)
 
 
-def _panel(figure: Figure, number: int, count: int, track: pl.DataFrame, season: Season, style: Style) -> None:
-    """Draw one season's panel in its place below the chart."""
+def _panel_notes(count: int) -> Notes:
+    """Return what stands beside the marks of a panel, by how many there are."""
+    return "words" if _panels_a_row(count) <= ROOMY_PANELS else "dates"
+
+
+def _panel_axes(figure: Figure, number: int, count: int, season: Season, style: Style) -> Axes:
+    """Return axes for one season in its place below the chart, with its number and year above."""
     columns = _panels_a_row(count)
     row, place = divmod(number, columns)
     width, height = figure.get_size_inches().tolist()
     wide = (width - LEFT_IN - RIGHT_IN + BETWEEN_IN) / columns
     left = LEFT_IN + place * wide
     bottom = 0.5 + (-(-count // columns) - 1 - row) * PANEL_HEIGHT_IN
-    ax = axes_at(figure, left, width - left - wide + BETWEEN_IN, bottom, height - bottom - PANEL_HEIGHT_IN + 0.8)
-    notes: Notes = "words" if columns <= ROOMY_PANELS else "dates"
-    plot_season(season.body, track, season, ax, notes=notes, style=style)
-    year = timeaxis.calendar_days(season.turns_back).year[0]
-    ax.set_title(f"{number + 1}   {timeaxis.year_text(int(year))}", loc="left", fontsize=style.type_pt, weight="bold")
+    top = height - bottom - PANEL_HEIGHT_IN + 0.8
+    ax = axes_at(figure, left, width - left - wide + BETWEEN_IN, bottom, top)
+    year = timeaxis.year_text(int(timeaxis.calendar_days(season.turns_back).year[0]))
+    ax.set_title(f"{number + 1}   {year}", loc="left", fontsize=style.type_pt, weight="bold")
+    return ax
 
 
-def _needs_panels(track: pl.DataFrame, found: list[Season]) -> bool:
-    travelled = float(np.ptp(curves.unwrapped(track["longitude_deg"].to_numpy())))
-    shown = min(travelled, 360.0)
-    return bool(found) and len(found) <= MOST_PANELS and min(s.arc_deg for s in found) < FLAT_ARC * shown
+def _bounds(track: pl.DataFrame, span_jd: Span | None) -> tuple[float, float]:
+    """Return between which instants a track is drawn, on the time axis."""
+    ends = (track["jd_tt"][0], track["jd_tt"][-1]) if span_jd is None else span_jd
+    low, high = timeaxis.utc_days(ends).tolist()
+    return low, high
+
+
+def _needs_panels(shown: Floats, found: list[Season]) -> bool:
+    """Return whether the least arc would hardly be seen on the whole chart."""
+    travelled = min(float(np.ptp(shown)), 360.0) if shown.size else 360.0
+    return 0 < len(found) <= MOST_PANELS and min(season.arc_deg for season in found) < FLAT_ARC * travelled
 
 
 def _cut(longitude: Floats, found: list[Season]) -> float | None:
-    """Return where the circle is cut; None where the planet does not go round it."""
+    """Return where the circle is cut, far from all arcs; None where the planet does not go round it."""
     if longitude.size == 0 or float(np.ptp(longitude)) <= ROUND_DEG:
         return None
-    return curves.quietest_cut(np.array([s.direct_deg + part * s.arc_deg for s in found for part in (0.0, 0.5, 1.0)]))
+    arcs = [season.direct_deg + part * season.arc_deg for season in found for part in (0.0, 0.5, 1.0)]
+    return curves.quietest_cut(np.array(arcs))
 
 
-def _draw_line(
-    ax: Axes, body: Body, line: tuple[Floats, Floats], back: Any, cut: float | None, style: Style
-) -> None:
-    x, y = line
-    for values, look in ((x, style.line(body, dashed=False)), (curves.only(x, back), style.back_line(body))):
-        if cut is None:
-            ax.plot(values, y, zorder=3, **look)
-        else:
-            ax.plot(*curves.wrapped_line(values, y, cut), zorder=3, **look)
+def _draw_line(ax: Axes, body: Body, line: Line, cut: float | None, style: Style) -> None:
+    ax.plot(*line.laid(cut), zorder=3, **style.line(body, dashed=False))
+    ax.plot(*line.laid(cut, back_only=True), zorder=3, **style.back_line(body))
 
 
 def _set_heights(ax: Axes, longitude: Floats, cut: float | None) -> None:
@@ -243,26 +283,20 @@ def _degree_ticks(ax: Axes, most: int) -> None:
     ax.set_yticks(at, [f"{value % 360.0:.{decimals}f}°" for value in at])
 
 
-def _branch(longitude_deg: float, at: float, x: Floats, longitude: Floats) -> float:
-    """Return a longitude on the turn of an unwrapped line at that time."""
-    near = float(np.interp(at, x, longitude))
-    return near + float(180.0 - (180.0 - (longitude_deg - near)) % 360.0)
-
-
-def _draw_spans(
-    ax: Axes, found: list[Season], line: tuple[Floats, Floats], cut: float | None, style: Style
-) -> None:
+def _draw_spans(ax: Axes, found: list[Season], line: Line, cut: float | None, style: Style) -> None:
     """Shade the days of retrograde motion over the whole height, and frame the threefold spans."""
     if not found:
         return
     bottom, top = ax.get_ylim()
     bands = [_rectangle(s.turns_back, s.turns_on, bottom, top) for s in found]
-    ax.add_collection(PolyCollection(bands, facecolor=style.back_fill, edgecolor="none", zorder=0.4), autolim=False)
+    ax.add_collection(
+        PolyCollection(bands, facecolor=style.back_fill, edgecolor="none", zorder=0.4), autolim=False
+    )
     frames = []
     for season in found:
         if np.isnan(season.instants["first_pass_start"]) or np.isnan(season.instants["third_pass_end"]):
             continue
-        direct = _branch(season.direct_deg, season.turns_on, *line)
+        direct = line.near(season.direct_deg, season.turns_on)
         if cut is None:
             lows = [direct]
         else:
@@ -278,7 +312,7 @@ def _rectangle(left: float, right: float, low: float, high: float) -> Floats:
 
 
 def _draw_marks(
-    ax: Axes, found: list[Season], line: tuple[Floats, Floats], cut: float | None, style: Style
+    ax: Axes, found: list[Season], line: Line, cut: float | None, style: Style
 ) -> dict[str, Floats]:
     """Draw the marks of all seasons; return their places, shape (seasons, 2), by mark."""
     places = {}
@@ -291,15 +325,15 @@ def _draw_marks(
     return places
 
 
-def _mark_height(season: Season, mark: str, line: tuple[Floats, Floats]) -> float:
+def _mark_height(season: Season, mark: str, line: Line) -> float:
     """Return the unwrapped longitude at a mark: the table's where it has one, else the line's."""
     at = season.instants[mark]
     if np.isnan(at):
         return float("nan")
     if mark == "middle":
-        return float(np.interp(at, *line))
+        return line.at(at)
     direct = mark in ("station_direct", "first_pass_start")
-    return _branch(season.direct_deg if direct else season.retrograde_deg, at, *line)
+    return line.near(season.direct_deg if direct else season.retrograde_deg, at)
 
 
 def _note_marks(ax: Axes, found: list[Season], places: dict[str, Floats], notes: Notes, style: Style) -> None:

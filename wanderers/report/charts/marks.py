@@ -1,7 +1,8 @@
 """The marks of a retrograde season, as every chart draws and words them.
 
 A turn is a triangle whose tip shows which way the planet goes on: left, backwards, westward; right, forwards.
-The middle is a filled disc, the ends of the threefold span are short bars. All are drawn in black and white.
+The middle is a filled lozenge (a disc would pass for a star), the ends of the threefold span are short bars.
+All are drawn in black and white.
 """
 
 from __future__ import annotations
@@ -27,7 +28,7 @@ MARK_PT: Final = 8.0
 MARKERS: Final[dict[str, str]] = {
     "first_pass_start": "|",
     "station_retrograde": "<",
-    "middle": "o",
+    "middle": "D",
     "station_direct": ">",
     "third_pass_end": "|",
 }
@@ -109,7 +110,7 @@ def mark_look(mark: str, style: Style) -> dict[str, Any]:
     return {
         "linestyle": "none",
         "marker": MARKERS[mark],
-        "markersize": MARK_PT * (1.5 if MARKERS[mark] == "|" else 1.0),
+        "markersize": MARK_PT * {"|": 1.5, "D": 0.9}.get(MARKERS[mark], 1.0),
         "markerfacecolor": style.ink if filled else style.paper,
         "markeredgecolor": style.paper if filled else style.ink,
         "markeredgewidth": 1.2 if not filled else 0.8,
@@ -144,7 +145,7 @@ def frame_look(style: Style) -> dict[str, Any]:
 
 
 def key_handles(body: Body, style: Style, *, middle: str, framed: bool) -> list[Line2D | Patch]:
-    """Return what a key explains: the heavy line and the marks; with ``framed`` the threefold span's frame too."""
+    """Return what a key explains: the heavy line and the marks; with ``framed`` the threefold frame too."""
     handles: list[Line2D | Patch] = [
         Line2D([], [], **style.back_line(body), label="retrograde"),
         Line2D([], [], **mark_look("station_retrograde", style), label="turns retrograde"),

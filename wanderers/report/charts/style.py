@@ -14,8 +14,10 @@ from types import MappingProxyType
 from typing import Any, Final
 
 import matplotlib
+import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.backends.backend_agg import FigureCanvasAgg
+from matplotlib.colors import to_hex, to_rgb
 from matplotlib.figure import Figure
 
 from wanderers.ephemeris.bodies import BODIES, Body
@@ -103,6 +105,11 @@ class Style:
             "dash_capstyle": "butt",
         }
 
+    def name_colour(self, body: Body) -> str:
+        """Return the colour in which a body's name is written: its line's, nearer to that of ink."""
+        line, ink = (np.array(to_rgb(colour)) for colour in (self.colours[body], self.ink))
+        return str(to_hex(tuple((0.65 * line + 0.35 * ink).tolist())))
+
     def note(self, **more: Any) -> dict[str, Any]:
         """Return how a note within a chart is written: small, on a little paper of its own."""
         paper = {"boxstyle": "square,pad=0.08", "facecolor": self.paper, "edgecolor": "none", "alpha": 0.8}
@@ -185,7 +192,8 @@ def in_force(style: Style) -> Iterator[None]:
 
     The settings belong to the whole process: charts are drawn in one thread, or in several processes.
     """
-    with matplotlib.rc_context(_settings(style)):
+    settings: Any = _settings(style)
+    with matplotlib.rc_context(settings):
         yield
 
 
@@ -215,6 +223,4 @@ def write_title(figure: Figure, title: str, remark: str, style: Style) -> None:
     width, height = figure.get_size_inches()
     left = 0.12 / width
     figure.text(left, 1.0 - 0.12 / height, title, fontsize=style.title_pt, weight="bold", va="top")
-    figure.text(
-        left, 1.0 - 0.42 / height, remark, fontsize=style.small_pt, color=style.quiet_ink, va="top"
-    )
+    figure.text(left, 1.0 - 0.42 / height, remark, fontsize=style.small_pt, color=style.quiet_ink, va="top")

@@ -32,7 +32,7 @@ MONTH_NAMES: Final = (
     "December",
 )
 _UNIX_EPOCH_JD: Final = 2_440_587.5
-_GREGORIAN_FROM_JD: Final = 2_299_160.5
+GREGORIAN_FROM_JD: Final = 2_299_160.5
 """1582-10-15: dates before it are usually given in the Julian calendar, here never."""
 
 Unit = Literal["day", "month", "year"]
@@ -101,6 +101,26 @@ def month_text(jd_utc: float) -> str:
     return f"{MONTH_NAMES[date.month[0] - 1]} {year_text(int(date.year[0]))}"
 
 
+def span_text(low: float, high: float) -> str:
+    """Return two dates in short: ``1 Jan 2027 to 1 Jan 2029``."""
+    return f"{day_text(low)} to {day_text(high)}"
+
+
+def long_span_text(low: float, high: float) -> str:
+    """Return two dates as prose has them."""
+    return f"{long_day_text(low)} to {long_day_text(high)}"
+
+
+def month_span_text(low: float, high: float) -> str:
+    """Return two months as a title has them: ``November 2026 to June 2027``; a year named once."""
+    first, last = calendar_days(low), calendar_days(high)
+    if first.year[0] != last.year[0]:
+        return f"{month_text(low)} to {month_text(high)}"
+    if first.month[0] == last.month[0]:
+        return month_text(low)
+    return f"{MONTH_NAMES[first.month[0] - 1]} to {month_text(high)}"
+
+
 def year_text(year: int) -> str:
     """Return an astronomical year, with a minus sign below zero."""
     return str(year).replace("-", "\N{MINUS SIGN}")
@@ -147,7 +167,9 @@ def tick_texts(jd_utc: Floats, division: Division) -> list[str]:
     return texts
 
 
-def set_time_axis(ax: Axes, low: float, high: float, *, labelled: bool = True, least_pt: float = 34.0) -> None:
+def set_time_axis(
+    ax: Axes, low: float, high: float, *, labelled: bool = True, least_pt: float = 34.0
+) -> None:
     """Make the horizontal axis one of time: limits, ticks, and that dates are UTC.
 
     Args:
@@ -173,7 +195,7 @@ def set_time_axis(ax: Axes, low: float, high: float, *, labelled: bool = True, l
 
 def axis_text(low: float) -> str:
     """Return the words under a time axis."""
-    return "date (UTC)" if low >= _GREGORIAN_FROM_JD else "date (UTC, Gregorian calendar throughout)"
+    return "date (UTC)" if low >= GREGORIAN_FROM_JD else "date (UTC, Gregorian calendar throughout)"
 
 
 def _minor(division: Division) -> Division | None:

@@ -26,3 +26,21 @@ def season_sentence(season: Season) -> str:
     if np.isnan(middle):
         return f"{text}."
     return f"{text}, with {season.middle_word} on {timeaxis.long_day_text(middle)}."
+
+
+def separation_text(separation_deg: float) -> str:
+    """Return a separation as it is read on a chart: in degrees, arcminutes or arcseconds, whichever suits."""
+    minutes = separation_deg * 60.0
+    if round(minutes) >= 60:
+        return f"{separation_deg:.1f}°"
+    return f"{minutes:.0f}′" if minutes >= 1.0 else f"{minutes * 60.0:.0f}″"
+
+
+def separation_words(separation_deg: float) -> str:
+    """Return a separation as it is read aloud."""
+    return (
+        separation_text(separation_deg)
+        .replace("°", " degrees")
+        .replace("′", " arcminutes")
+        .replace("″", " arcseconds")
+    )

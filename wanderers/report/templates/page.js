@@ -6,6 +6,7 @@
 const ROWS_PER_SLICE = 100;
 const ROWS_ON_PAPER = 3000;
 const MANY_FOR_A_CALENDAR = 1000;
+const TICKS = ["body", "kind", "without"];
 const FIELDS = ["from", "to", "text", "separation", "elongation", "magnitude"];
 
 const data = JSON.parse(document.getElementById("data").textContent);
@@ -14,18 +15,33 @@ const findAll = (selector) => [...document.querySelectorAll(selector)];
 
 // ---- The table: columns of values; a row is a number -------------------------------------------------
 
-/** Returns a function from row number to value for a column in either of its forms. */
+/** Returns a function from row number to value for a column in any of its forms; null means no value. */
 function reader(column) {
-  return Array.isArray(column) ? (row) => column[row] : (row) => column.words[column.at[row]];
+  if (Array.isArray(column)) return (row) => column[row];
+  if ("all" in column) return () => column.all;
+  const { words, at, fill } = column;
+  return fill ? (row) => words[at[row]] && words[at[row]].replace("{}", fill[row]) : (row) => words[at[row]];
 }
 
-const names = Object.keys(data.columns);
-const cell = Object.fromEntries(names.map((name) => [name, reader(data.columns[name])]));
-const what = reader(data.words.what);
-const note = reader(data.words.note);
-const constellation = (row) => data.constellations[cell.constellation(row)] ?? "";
 const rowCount = data.count;
 const allRows = Array.from({ length: rowCount }, (_, row) => row);
+const cell = Object.fromEntries(Object.entries(data.columns).map(([name, column]) => [name, reader(column)]));
+const what = reader(data.what);
+const note = reader(data.note);
+const constellation = (row) => data.constellations[cell.constellation(row)] ?? "";
+
+const time = new Float64Array(rowCount); // UTC in milliseconds since 1970
+for (const row of allRows) time[row] = row === 0 ? data.utc.start : time[row - 1] + data.utc.steps[row - 1];
+const lag = reader(data.lag);
+cell.utc = (row) => `${iso(time[row])}Z`;
+cell.tt = (row) => iso(time[row] + lag(row));
+cell.jd_tt = (row) => ((time[row] + lag(row)) / 86400000 + 2440587.5).toFixed(8);
+
+/** Prints milliseconds since 1970 as ISO 8601; years beyond 0 to 9999 get a sign and no idle zeros. */
+function iso(milliseconds) {
+  const text = new Date(milliseconds).toISOString().replace("Z", "");
+  return text.replace(/^([+-])0*(\d{4,}-)/, "$1$2");
+}
 
 /** Returns milliseconds of a date such as 2027, 2027-03, -0500-01-01 or 2027-03-15T12:00:00Z; NaN if it is none. */
 function instant(text) {
@@ -39,13 +55,19 @@ function instant(text) {
   return date.getTime() + ((hour * 60 + minute) * 60 + second) * 1000;
 }
 
-const time = allRows.map((row) => instant(cell.utc(row)));
-const searched = allRows.map((row) =>
-  [what(row), constellation(row), cell.kind(row), cell.detail(row), cell.utc(row), note(row)].join(" ").toLowerCase());
+let searchTexts = null;
+
+/** Returns the text of a row that a search looks into; composed when the first search asks for it. */
+function searched(row) {
+  searchTexts ??= allRows.map((one) =>
+    [what(one), constellation(one), cell.kind(one), cell.detail(one), iso(time[one]), note(one)].join(" ").toLowerCase());
+  return searchTexts[row];
+}
 
 // ---- What was chosen ---------------------------------------------------------------------------------
 
-const state = { body: new Set(), kind: new Set(), sort: "time", falling: false, slice: 0, look: "auto", at: "" };
+const state = { sort: "time", falling: false, slice: 0, look: "auto", at: "" };
+for (const field of TICKS) state[field] = new Set();
 for (const field of FIELDS) state[field] = "";
 let selection = allRows;
 
@@ -77,14 +99,19 @@ function filters() {
   return [
     ticked("body", (row) => bodiesOf(row).some((name) => state.body.has(name))),
     ticked("kind", (row) => state.kind.has(cell.kind(row))),
+    state.without.has("moon") ? { words: "without meetings with the Moon", test: (row) => cell.body(row) !== "moon" || cell.other(row) === null } : null,
+    state.without.has("stars") ? { words: "without meetings with stars", test: (row) => cell.other(row) === null || wanderers.has(cell.other(row)) } : null,
+    state.without.has("glare") ? { words: "without glare", test: (row) => !(cell.elongation_deg(row) < data.glare_deg) || cell.elongation_deg(row) === null } : null,
     date("from", (at, bound) => at >= bound, "from"),
     date("to", (at, bound) => at < bound, "before"),
-    sought.length === 0 ? null : { words: `containing “${state.text}”`, test: (row) => sought.every((word) => searched[row].includes(word)) },
+    sought.length === 0 ? null : { words: `containing “${state.text}”`, test: (row) => sought.every((word) => searched(row).includes(word)) },
     limit("separation", cell.separation_deg, (value, bound) => value <= bound, "separation at most"),
     limit("elongation", cell.elongation_deg, (value, bound) => value >= bound, "degrees from the Sun at least"),
     limit("magnitude", cell.magnitude, (value, bound) => value <= bound, "magnitude at most"),
   ].filter(Boolean);
 }
+
+const wanderers = new Set(data.bodies);
 
 /** Returns the bodies of a row; a gathering names them in its detail. */
 function bodiesOf(row) {
@@ -112,7 +139,11 @@ function sorted(rows) {
   const way = state.falling ? -1 : 1;
   const known = rows.filter((row) => key(row) !== null && key(row) !== "");
   const unknown = rows.filter((row) => key(row) === null || key(row) === "");
-  const compare = (a, b) => (key(a) < key(b) ? -way : key(a) > key(b) ? way : a - b);
+  const values = new Map(known.map((row) => [row, key(row)]));
+  const compare = (a, b) => {
+    const [one, two] = [values.get(a), values.get(b)];
+    return one < two ? -way : one > two ? way : a - b;
+  };
   return [...known.sort(compare), ...unknown];
 }
 
@@ -146,7 +177,7 @@ function distance(row) {
   const au = cell.distance_au(row);
   if (au === null) return "";
   if (cell.body(row) !== "moon") return `${au.toFixed(3)} au`;
-  return `${Math.round((au * data.au_km) / 100) * 100} km`.replace(/(\d{3}) km/, " $1 km");
+  return `${Math.round((au * data.au_km) / 100) * 100} km`.replace(/(\d{3}) km/, ",$1 km");
 }
 
 const printed = [
@@ -226,7 +257,7 @@ function claim() {
 /** Writes what was chosen after "#". */
 function writeAddress() {
   const chosen = new URLSearchParams();
-  for (const field of ["body", "kind"]) if (state[field].size) chosen.set(field, [...state[field]].join(","));
+  for (const field of TICKS) if (state[field].size) chosen.set(field, [...state[field]].join(","));
   for (const field of FIELDS) if (state[field]) chosen.set(field, state[field]);
   if (state.sort !== "time" || state.falling) chosen.set("sort", (state.falling ? "-" : "") + state.sort);
   if (state.slice) chosen.set("slice", state.slice + 1);
@@ -240,7 +271,7 @@ function writeAddress() {
 function readAddress() {
   const text = location.hash.slice(1);
   const chosen = new URLSearchParams(text.includes("=") ? text : "");
-  for (const field of ["body", "kind"]) {
+  for (const field of TICKS) {
     const known = new Set(findAll(`input[name="${field}"]`).map((box) => box.value));
     state[field] = new Set((chosen.get(field) ?? "").split(",").filter((value) => known.has(value)));
   }
@@ -255,7 +286,7 @@ function readAddress() {
 
 /** Puts what was chosen into the controls. */
 function showControls() {
-  for (const field of ["body", "kind"]) for (const box of findAll(`input[name="${field}"]`)) box.checked = state[field].has(box.value);
+  for (const field of TICKS) for (const box of findAll(`input[name="${field}"]`)) box.checked = state[field].has(box.value);
   for (const field of FIELDS) find(`input[name="${field}"]`).value = state[field];
   for (const box of findAll('input[name="look"]')) box.checked = box.value === state.look;
   document.documentElement.dataset.look = state.look;
@@ -311,8 +342,8 @@ function save(text, name, type) {
 /** Returns the selection as CSV: the columns of events.csv, in the order shown. */
 function selectionAsCsv() {
   const quoted = (value) => (/[",\r\n]/.test(value) ? `"${value.replaceAll('"', '""')}"` : value);
-  const line = (row) => names.map((name) => quoted(String(cell[name](row) ?? ""))).join(",");
-  return [names.join(","), ...selection.map(line), ""].join("\n");
+  const line = (row) => data.names.map((name) => quoted(String(cell[name](row) ?? ""))).join(",");
+  return [data.names.join(","), ...selection.map(line), ""].join("\n");
 }
 
 /** Returns the report's whole calendar as text. */
@@ -325,19 +356,21 @@ async function wholeCalendar() {
 async function selectionAsCalendar() {
   const [head, ...rest] = (await wholeCalendar()).split("BEGIN:VEVENT\r\n");
   const foot = "END:VCALENDAR\r\n";
-  const entryOf = new Map(rest.map((text) => {
-    const entry = text.replace(foot, "");
-    return [/^UID:([^@\r\n]+)/m.exec(entry.replaceAll("\r\n ", ""))[1], entry];
-  }));
-  const entries = [...selection].sort((a, b) => a - b).map((row) => entryOf.get(cell.event_id(row))).filter(Boolean);
-  return head + entries.map((entry) => `BEGIN:VEVENT\r\n${entry}`).join("") + foot;
+  const wanted = new Set(selection.map((row) => cell.event_id(row)));
+  const idOf = (entry) => /^UID:([^@\r\n]+)/m.exec(entry.replaceAll("\r\n ", ""))[1];
+  const entries = rest.map((text) => text.replace(foot, "")).filter((entry) => wanted.has(idOf(entry)));
+  return { text: head.replace(foot, "") + entries.map((entry) => `BEGIN:VEVENT\r\n${entry}`).join("") + foot, count: entries.length };
 }
 
 async function saveCalendar() {
-  save(await selectionAsCalendar(), `${data.stem}_selection.ics`, "text/calendar");
-  if (selection.length > MANY_FOR_A_CALENDAR) {
-    find("#count").textContent = `${selection.length} events saved: many calendar programs choke on more than ${MANY_FOR_A_CALENDAR}, better narrow the filters.`;
-  }
+  const { text, count } = await selectionAsCalendar();
+  save(text, `${data.stem}_selection.ics`, "text/calendar");
+  const lacking = selection.length - count;
+  find("#count").textContent = [
+    `${count} events saved as a calendar.`,
+    lacking ? `${lacking} of the selection are not in the report's calendar: see Sources.` : "",
+    count > MANY_FOR_A_CALENDAR ? `Many calendar programs choke on more than ${MANY_FOR_A_CALENDAR}: better narrow the filters.` : "",
+  ].join(" ");
 }
 
 // ---- Controls ----------------------------------------------------------------------------------------
@@ -353,7 +386,7 @@ function listen() {
     refresh();
   });
   find("#clear").addEventListener("click", () => {
-    for (const field of ["body", "kind"]) state[field].clear();
+    for (const field of TICKS) state[field].clear();
     for (const field of FIELDS) state[field] = "";
     showControls();
     refresh();

@@ -1,0 +1,1 @@
+"""Tests of what is seen from a site."""

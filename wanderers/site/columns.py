@@ -1,0 +1,140 @@
+"""Names and types of the columns that depend on a site; what ``wanderers.schema`` is for the others.
+
+Angles named without more are topocentric and those at ``best_utc``; a null means "does not apply".
+"""
+
+from __future__ import annotations
+
+from typing import Final
+
+import polars as pl
+
+Columns = dict[str, type[pl.DataType]]
+
+WINDOW_COLUMNS: Final[Columns] = {
+    "window_start_utc": pl.String,
+    "best_utc": pl.String,
+    "window_end_utc": pl.String,
+    "window_start_local": pl.String,
+    "best_local": pl.String,
+    "window_end_local": pl.String,
+}
+"""When to watch."""
+
+PLACE_COLUMNS: Final[Columns] = {
+    "altitude_deg": pl.Float64,
+    "airless_altitude_deg": pl.Float64,
+    "azimuth_deg": pl.Float64,
+    "compass": pl.String,
+    "airmass": pl.Float64,
+    "sun_altitude_deg": pl.Float64,
+    "dimmed_magnitude": pl.Float64,
+    "moon_illuminated": pl.Float64,
+    "moon_separation_deg": pl.Float64,
+    "moon_altitude_deg": pl.Float64,
+}
+"""Where it then stands. ``altitude_deg`` and ``moon_altitude_deg`` with standard refraction,
+``sun_altitude_deg`` and ``airless_altitude_deg`` without; ``moon_illuminated`` 0 to 1."""
+
+VERDICT_COLUMNS: Final[Columns] = {
+    "verdict": pl.String,
+    "verdict_reason": pl.String,
+    "caution": pl.String,
+}
+
+SITE_COLUMNS: Final[Columns] = {
+    "site": pl.String,
+    "zone": pl.String,
+    "local_date": pl.String,
+    "local_time": pl.String,
+    "evening_date": pl.String,
+    **WINDOW_COLUMNS,
+    **PLACE_COLUMNS,
+    **VERDICT_COLUMNS,
+}
+"""What a site adds to a table of events: there ``local_date`` and ``local_time`` are the instant's."""
+
+SUN_TIMES: Final = (
+    "sunset",
+    "civil_dusk",
+    "nautical_dusk",
+    "astronomical_dusk",
+    "astronomical_dawn",
+    "nautical_dawn",
+    "civil_dawn",
+    "sunrise",
+)
+BODY_TIMES: Final = ("rise", "culmination", "set")
+
+NIGHT_COLUMNS: Final[Columns] = {
+    "evening_date": pl.String,
+    "body": pl.String,
+    "site": pl.String,
+    "zone": pl.String,
+    "local_date": pl.String,
+    "local_time": pl.String,
+    **WINDOW_COLUMNS,
+    **PLACE_COLUMNS,
+    **VERDICT_COLUMNS,
+    **{f"{name}_utc": pl.String for name in (*SUN_TIMES, *BODY_TIMES)},
+    "magnitude": pl.Float64,
+    "elongation_deg": pl.Float64,
+    "constellation": pl.String,
+    "hour_angle_deg": pl.Float64,
+    "parallactic_angle_deg": pl.Float64,
+    "remark": pl.String,
+    **{f"{name}_local": pl.String for name in (*SUN_TIMES, *BODY_TIMES)},
+}
+"""One row an evening and body; ``local_date`` and ``local_time`` are those of ``best_utc``. ``remark`` says
+what is out of the ordinary about rising and setting."""
+
+MOMENT_COLUMNS: Final[Columns] = {
+    "body": pl.String,
+    "kind": pl.String,
+    "site": pl.String,
+    "zone": pl.String,
+    "utc": pl.String,
+    "local": pl.String,
+    "altitude_deg": pl.Float64,
+    "airless_altitude_deg": pl.Float64,
+    "azimuth_deg": pl.Float64,
+    "compass": pl.String,
+    "airmass": pl.Float64,
+    "magnitude": pl.Float64,
+    "dimmed_magnitude": pl.Float64,
+    "elongation_deg": pl.Float64,
+    "constellation": pl.String,
+    "sun_altitude_deg": pl.Float64,
+    "neighbours": pl.String,
+    "nearest_star": pl.String,
+    "nearest_star_separation_deg": pl.Float64,
+    **VERDICT_COLUMNS,
+}
+"""Everything that is up at one moment, brightest first."""
+
+SITE_LIST_COLUMNS: Final[Columns] = {
+    "site": pl.String,
+    "latitude_deg": pl.Float64,
+    "longitude_deg": pl.Float64,
+    "elevation_m": pl.Float64,
+    "zone": pl.String,
+    "horizon": pl.String,
+    "file": pl.String,
+    "problem": pl.String,
+}
+"""The user's sites."""
+
+CITY_COLUMNS: Final[Columns] = {
+    "city": pl.String,
+    "country": pl.String,
+    "population": pl.Int64,
+    "latitude_deg": pl.Float64,
+    "longitude_deg": pl.Float64,
+    "zone": pl.String,
+}
+"""Places of the gazetteer."""
+
+
+def arranged(table: pl.DataFrame, columns: Columns) -> pl.DataFrame:
+    """Return a table with exactly these columns, in this order and of these types."""
+    return table.select(pl.col(name).cast(kind) for name, kind in columns.items())
