@@ -43,7 +43,7 @@ def look(
 
 
 def verdict_of(looks: Looks, criteria: Criteria = CRITERIA) -> Verdict:
-    return VERDICTS[verdicts(margins(looks, criteria, LOSS_MAG).least, criteria)[0]]
+    return VERDICTS[verdicts(margins(looks, criteria, LOSS_MAG).least, criteria, looks.lights.sun_altitude_deg)[0]]
 
 
 @pytest.mark.parametrize(
@@ -93,7 +93,13 @@ def test_measure_of_a_crescent_is_zero_where_its_width_just_suffices() -> None:
 
 def test_verdicts_change_where_the_criteria_say() -> None:
     margin = np.array([0.0, -1e-9, -CRITERIA.binoculars_mag, -4.28, -CRITERIA.telescope_mag, -7.29])
-    assert verdicts(margin, CRITERIA).tolist() == [0, 1, 1, 2, 2, 3]
+    assert verdicts(margin, CRITERIA, np.full(6, -30.0)).tolist() == [0, 1, 1, 2, 2, 3]
+
+
+def test_no_optics_are_asked_for_while_the_sun_is_up() -> None:
+    margin = np.array([0.0, -1e-9, -5.0])
+    assert verdicts(margin, CRITERIA, np.full(3, -0.9)).tolist() == [0, 1, 2]
+    assert verdicts(margin, CRITERIA, np.full(3, -0.8)).tolist() == [0, 3, 3]
 
 
 def test_every_criterion_can_be_replaced() -> None:
@@ -144,8 +150,8 @@ def best_verdict(margin: Floats, altitude: Floats) -> int:
     """Return the verdict at the moment of most merit, the worst one where there is none."""
     if margin.size == 0:
         return len(VERDICTS) - 1
-    best = int(np.argmax(merit(margin, altitude, CRITERIA)))
-    return int(verdicts(margin[best : best + 1], CRITERIA)[0])
+    verdict = verdicts(margin, CRITERIA, np.full(margin.size, -30.0))
+    return int(verdict[np.argmax(merit(margin, altitude, verdict, CRITERIA))])
 
 
 def test_the_least_margin_counts() -> None:

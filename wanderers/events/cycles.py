@@ -77,8 +77,12 @@ def centuries(jd: Floats) -> Floats:
 
 
 def synodic_phase(body: Ints, jd: Floats) -> Floats:
-    """Return the turns a planet gained on the Earth: whole at opposition or inferior conjunction."""
-    return (_mean(MEAN_LONGITUDE, body, jd) - _sun(jd)) / 360.0 + 0.5
+    """Return the turns between a planet and the Earth: whole at opposition or inferior conjunction.
+
+    Counted so that it grows with time: an inner planet laps the Earth, the Earth laps an outer planet.
+    """
+    ahead = (_mean(MEAN_LONGITUDE, body, jd) - _sun(jd)) / 360.0 - 0.5
+    return np.where(np.isin(body, _INNER), ahead, -ahead)
 
 
 def lunation_phase(jd: Floats) -> Floats:

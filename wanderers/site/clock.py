@@ -30,6 +30,7 @@ def local_texts(zone: Zone, jd_tt: Floats) -> pl.Series:
     """Return instants by the local clock, ISO 8601 to the millisecond with its offset, null where NaN."""
     jd_utc = jd_utc_from_tt(jd_tt)
     offset_s = zone.offset_s(jd_utc)
+    # Whole seconds added to what UTC prints: both name the same millisecond.
     clock = _texts(datetime64_from_jd(jd_utc) + offset_s.astype("timedelta64[s]"))
     return pl.select(pl.concat_str(clock, offset_texts(offset_s))).to_series()
 
@@ -47,7 +48,7 @@ def local_minutes(zone: Zone, jd_tt: Floats) -> pl.Series:
 
 
 def _texts(instants: Instants) -> pl.Series:
-    """Print instants to the millisecond, null for NaT: whole seconds added keep UTC and local twins together."""
+    """Print instants to the millisecond, null for NaT."""
     years = instants.astype("datetime64[Y]").astype(np.int64) + 1970
     known = ~np.isnat(instants)
     if not known.any() or (years[known].min() >= 0 and years[known].max() <= LAST_PLAIN_YEAR):

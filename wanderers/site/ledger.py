@@ -139,7 +139,9 @@ def _look(sky: Sky, some: Evenings, body: int, best_jd: Floats, rules: Rules) ->
     looks = appearance(sky, np.full(jd.size, body), jd)
     margins = margins_of(seen, looks.magnitude, rules.criteria, some.site, is_moon=body == MOON)
     extinction = rules.criteria.extinction_at(some.site.elevation_m)
-    verdict = np.where(np.isnan(best_jd), len(VERDICTS) - 1, verdicts(margins.least, rules.criteria))
+    verdict = np.where(
+        np.isnan(best_jd), len(VERDICTS) - 1, verdicts(margins.least, rules.criteria, over.sun_altitude_deg)
+    )
     return {
         "altitude_deg": seen.altitude_deg,
         "airless_altitude_deg": seen.place.airless_altitude_deg,

@@ -108,7 +108,8 @@ def _seen(sky: Sky, site: Site, jd: float, targets: Targets, rules: Rules) -> pl
     margins = margins_of(seen, magnitude, rules.criteria, site, is_moon=is_moon)
     floor = np.maximum(rules.min_altitude_deg, site.horizon.altitude_deg(seen.place.azimuth_deg))
     up = seen.altitude_deg > floor
-    verdict = np.where(targets.number == SUN, len(VERDICTS) - 1, verdicts(margins.least, rules.criteria))
+    found = verdicts(margins.least, rules.criteria, over.sun_altitude_deg)
+    verdict = np.where(targets.number == SUN, len(VERDICTS) - 1, found)
     utc, local = clock.utc_texts(instants), clock.local_texts(zone_named(site.zone), instants)
     table = pl.DataFrame(
         {

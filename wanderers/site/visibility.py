@@ -72,6 +72,8 @@ class Criteria:
         return airmass.extinction_mag(elevation_m) if self.extinction_mag is None else self.extinction_mag
 
 
+SUN_UP_DEG: Final = -50.0 / 60.0
+"""Altitude of the Sun's centre, without refraction, at sunrise and sunset: USNO, definitions."""
 CRESCENT_Q: Final = (-0.293, -0.232, -0.160, -0.014, 0.216)
 """Bounds of the classes F to A of a young crescent. Yallop 1997, NAO Technical Note 69; from memory."""
 WIDEST_CRESCENT_DEG: Final = 30.0
@@ -135,19 +137,25 @@ def arcus_visionis_deg(magnitude: Floats, criteria: Criteria) -> Floats:
     return np.asarray(criteria.arcus_base_deg + criteria.arcus_deg_per_mag * magnitude)
 
 
-def verdicts(margin: Floats, criteria: Criteria) -> Ints:
-    """Return the verdict of each margin as an index into VERDICTS, shape (n,)."""
+def verdicts(margin: Floats, criteria: Criteria, sun_altitude_deg: Floats) -> Ints:
+    """Return the verdict of each margin as an index into VERDICTS, shape (n,).
+
+    With any of the Sun up no verdict asks for binoculars or a telescope: what the bare eye misses then is not
+    visible.
+    """
     reached = (0.0, -criteria.binoculars_mag, -criteria.telescope_mag)
-    return np.asarray(sum((margin < step).astype(np.int64) for step in reached), dtype=np.int64)
+    by_aid = sum((margin < step).astype(np.int64) for step in reached)
+    without = np.where(margin < 0.0, len(VERDICTS) - 1, 0)
+    return np.asarray(np.where(sun_altitude_deg > SUN_UP_DEG, without, by_aid), dtype=np.int64)
 
 
-def merit(margin: Floats, altitude_deg: Floats, criteria: Criteria) -> Floats:
+def merit(margin: Floats, altitude_deg: Floats, verdict: Ints, criteria: Criteria) -> Floats:
     """Return how good a moment is, shape (n,): its verdict, then margin while it is scarce and height.
 
     The best verdict to be had wins: so none improves when low altitudes are forbidden.
     """
-    shown = np.minimum(margin, criteria.easy_mag) + criteria.altitude_worth_mag_per_deg * altitude_deg
-    return np.asarray(shown - FARTHEST_MAG * verdicts(margin, criteria))
+    shown = np.clip(margin, -FARTHEST_MAG / 4.0, criteria.easy_mag)
+    return np.asarray(shown + criteria.altitude_worth_mag_per_deg * altitude_deg - FARTHEST_MAG * verdict)
 
 
 def crescent_q(arc_deg: Floats, elongation_deg: Floats, semidiameter_arcmin: Floats) -> Floats:

@@ -212,8 +212,11 @@ class _Scored:
         return _Scored(self.jd[which], self.verdict[which], self.merit[which])
 
     def followed_by(self, other: _Scored) -> _Scored:
-        pairs = ((self.jd, other.jd), (self.verdict, other.verdict), (self.merit, other.merit))
-        return _Scored(*(np.concatenate(pair) for pair in pairs))
+        return _Scored(
+            np.concatenate([self.jd, other.jd]),
+            np.concatenate([self.verdict, other.verdict]),
+            np.concatenate([self.merit, other.merit]),
+        )
 
 
 def _scored(look: _Look, over: Heaven) -> _Scored:
@@ -222,7 +225,8 @@ def _scored(look: _Look, over: Heaven) -> _Scored:
     seen = view_body(look.sky, over, look.body)
     is_moon = look.body == MOON
     margin = margins_of(seen, look.magnitudes.at(jd), criteria, look.site, is_moon=is_moon).least
-    return _Scored(jd, verdicts(margin, criteria), merit(margin, seen.altitude_deg, criteria))
+    verdict = verdicts(margin, criteria, over.sun_altitude_deg)
+    return _Scored(jd, verdict, merit(margin, seen.altitude_deg, verdict, criteria))
 
 
 def _tried(look: _Look, stretches: Stretches, tried: Moments) -> tuple[Ints, _Scored]:
