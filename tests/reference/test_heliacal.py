@@ -35,8 +35,8 @@ def test_rule_puts_the_planets_in_the_order_of_ptolemy() -> None:
 
 
 def test_rule_puts_the_planets_in_the_order_of_bhaskara() -> None:
-    # Mahabhaskariya vi.44: degrees of time from the Sun, 4 minutes of oblique ascension each. Another measure, so
-    # only the order is compared: Venus, Jupiter, Mercury, Saturn, Mars.
+    # Mahabhaskariya vi.44: degrees of time from the Sun, 4 minutes of oblique ascension each. Another
+    # measure, so only the order is compared: Venus, Jupiter, Mercury, Saturn, Mars.
     limits = [row for row in ROWS if row["measure"] == "degrees_of_time"]
     limits.sort(key=lambda row: float(row["published_deg"]))
     rule = arcus_visionis_deg(np.array([float(row["magnitude"]) for row in limits]), Criteria())

@@ -23,4 +23,6 @@ QUANTITIES: dict[str, Callable[[Floats], Floats]] = {
 @pytest.mark.parametrize("row", rows("refraction_airmass"), ids=lambda row: row["id"])
 def test_published_value_comes_out(row: dict[str, str]) -> None:
     found = QUANTITIES[row["quantity"]](np.array([float(row["altitude_deg"])]))[0]
-    assert found == pytest.approx(float(row["published"]), abs=float(row["tolerance"])), row["tolerance_reason"]
+    assert found == pytest.approx(float(row["published"]), abs=float(row["tolerance"])), row[
+        "tolerance_reason"
+    ]

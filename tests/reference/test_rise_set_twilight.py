@@ -33,9 +33,7 @@ LEVELS = {
 def store(tmp_path_factory: pytest.TempPathFactory) -> TrackStore:
     folder: Path = tmp_path_factory.mktemp("tracks")
     environment = {name: value for name, value in os.environ.items() if name != "WANDERERS_KERNEL"}
-    return TrackStore(
-        kernels.inspect_kernel(kernels.find_kernel(None, folder, environment), folder), folder
-    )
+    return TrackStore(kernels.inspect_kernel(kernels.find_kernel(None, folder, environment), folder), folder)
 
 
 def of_kind(*kinds: str) -> list[dict[str, str]]:
@@ -43,7 +41,9 @@ def of_kind(*kinds: str) -> list[dict[str, str]]:
 
 
 def site_of(row: dict[str, str]) -> Site:
-    return Site(row["group"], *(float(row[name]) for name in ("latitude_deg", "longitude_deg", "elevation_m")))
+    return Site(
+        row["group"], *(float(row[name]) for name in ("latitude_deg", "longitude_deg", "elevation_m"))
+    )
 
 
 @pytest.mark.parametrize("row", of_kind("rise", "set", "culmination"), ids=lambda row: row["id"])
@@ -73,8 +73,13 @@ def test_place_is_the_published_one(store: TrackStore, row: dict[str, str]) -> N
         found = place.azimuth_deg[0]
     else:
         air = (float(row["pressure_hpa"]), float(row["temperature_c"]))
-        found = 90.0 - (place.airless_altitude_deg + refraction.refraction_deg(place.airless_altitude_deg, *air))[0]
-    assert found == pytest.approx(float(row["published"]), abs=float(row["tolerance"])), row["tolerance_reason"]
+        found = (
+            90.0
+            - (place.airless_altitude_deg + refraction.refraction_deg(place.airless_altitude_deg, *air))[0]
+        )
+    assert found == pytest.approx(float(row["published"]), abs=float(row["tolerance"])), row[
+        "tolerance_reason"
+    ]
 
 
 @pytest.mark.parametrize("row", of_kind("definition"), ids=lambda row: row["id"])

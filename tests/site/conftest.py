@@ -22,9 +22,7 @@ def store(tmp_path_factory: pytest.TempPathFactory) -> TrackStore:
     """The embedded kernel's tracks in a cache of their own."""
     folder: Path = tmp_path_factory.mktemp("tracks")
     environment = {name: value for name, value in os.environ.items() if name != "WANDERERS_KERNEL"}
-    return TrackStore(
-        kernels.inspect_kernel(kernels.find_kernel(None, folder, environment), folder), folder
-    )
+    return TrackStore(kernels.inspect_kernel(kernels.find_kernel(None, folder, environment), folder), folder)
 
 
 @pytest.fixture(scope="session")

@@ -29,6 +29,7 @@ def test_extinction_by_elevation_is_the_published_one(elevation_m: float, loss_m
 
 
 def test_fifteen_degrees_cost_what_observers_say() -> None:
-    # 0.25 magnitudes per air mass: 0.7 magnitudes at 15 degrees against the zenith (common practice, no source).
+    # 0.25 magnitudes per air mass: 0.7 magnitudes at 15 degrees against the zenith (common practice, no
+    # source).
     low, overhead = dimmed_magnitude(np.array([1.0, 1.0]), np.array([15.0, 90.0]), 0.25)
     assert low - overhead == pytest.approx(0.7, abs=0.05)

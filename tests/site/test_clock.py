@@ -36,7 +36,10 @@ def test_nothing_stays_nothing() -> None:
 
 def test_date_and_time_are_rounded_together() -> None:
     # 2027-03-05T22:59:59.700Z is 23:59:59.7 in Berlin: the next second belongs to the next day.
-    jd_tt = jd_tt_from_utc(UNIX_EPOCH_JD + np.array([dt.datetime(2027, 3, 5, 22, 59, 59, 700_000, dt.UTC).timestamp()]) / 86_400.0)
+    jd_tt = jd_tt_from_utc(
+        UNIX_EPOCH_JD
+        + np.array([dt.datetime(2027, 3, 5, 22, 59, 59, 700_000, dt.UTC).timestamp()]) / 86_400.0
+    )
     date, time = clock.local_dates_and_times(zone_named("Europe/Berlin"), jd_tt)
     assert (date[0], time[0]) == ("2027-03-06", "00:00:00")
     assert clock.local_minutes(zone_named("Europe/Berlin"), jd_tt)[0] == "00:00"

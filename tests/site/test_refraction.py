@@ -29,8 +29,8 @@ def test_lift_is_that_of_bennetts_formula_turned_round() -> None:
 
 @pytest.mark.parametrize(("pressure", "temperature"), [(1_010.0, 10.0), (700.0, -5.0), (1_030.0, 30.0)])
 def test_lift_high_up_is_that_of_sofa(pressure: float, temperature: float) -> None:
-    # iauRefco: A tan z + B tan^3 z in yellow light and dry air, good to an arcsecond above 15 degrees. Bennett's
-    # formula strays by up to 0.07 arcminutes, 4.2 arcseconds (Meeus, chapter 16).
+    # iauRefco: A tan z + B tan^3 z in yellow light and dry air, good to an arcsecond above 15 degrees.
+    # Bennett's formula strays by up to 0.07 arcminutes, 4.2 arcseconds (Meeus, chapter 16).
     a, b = erfa.refco(pressure, temperature, 0.0, 0.57)
     apparent = np.linspace(20.0, 85.0, 40)
     tangent = np.tan(np.radians(90.0 - apparent))

@@ -160,6 +160,10 @@ def test_what_is_written_is_read_again(
     site = Site(name, latitude, longitude, elevation, "UTC", horizon)
     (key, table), *others = tomllib.loads(as_toml(site)).items()
     assert not others
-    assert (key, table["latitude_deg"], table["longitude_deg"]) == (name, site.latitude_deg, site.longitude_deg)
+    assert (key, table["latitude_deg"], table["longitude_deg"]) == (
+        name,
+        site.latitude_deg,
+        site.longitude_deg,
+    )
     assert table["elevation_m"] == elevation
     assert tuple(map(tuple, table.get("horizon", []))) == horizon.points

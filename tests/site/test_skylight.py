@@ -45,8 +45,8 @@ def test_eyes_reach_the_sixth_magnitude_at_a_dark_zenith() -> None:
 
 
 def test_the_full_moon_brightens_the_sky_by_magnitudes() -> None:
-    # Krisciunas and Schaefer 1991, table 2 and figures: near the full Moon the dark sky of Mauna Kea brightens by
-    # 3 to 4 magnitudes at 60 degrees from it, about half as much at the quarters; from memory.
+    # Krisciunas and Schaefer 1991, table 2 and figures: near the full Moon the dark sky of Mauna Kea
+    # brightens by 3 to 4 magnitudes at 60 degrees from it, about half as much at the quarters; from memory.
     dark = skylight.sky_brightness_nl(lights(60.0, -40.0), 0.172, 21.587)
     full, quarter = (
         skylight.sky_brightness_nl(lights(60.0, -40.0, 90.0, 60.0, 60.0, angle), 0.172, 21.587)
@@ -65,9 +65,10 @@ def test_the_moon_does_not_outshine_itself_and_lights_nothing_from_below() -> No
 
 @pytest.mark.parametrize(
     ("magnitude", "altitude", "elongation", "appears_at"),
-    # Common practice, no source: Sun altitude at which an eye that looks for it finds it. Venus 0 to -4, Jupiter
-    # -4 to -6, Mercury when bright -5 to -7, Mars and Saturn -7 to -10, stars of second magnitude -9. The model
-    # of twilight is good to a factor of two, a degree of the Sun, and has Jupiter out before people look for it.
+    # Common practice, no source: Sun altitude at which an eye that looks for it finds it. Venus 0 to -4,
+    # Jupiter -4 to -6, Mercury when bright -5 to -7, Mars and Saturn -7 to -10, stars of second magnitude -9.
+    # The model of twilight is good to a factor of two, a degree of the Sun, and has Jupiter out before people
+    # look for it.
     [
         (-4.0, 20.0, 40.0, (-4.0, 0.0)),
         (-2.2, 30.0, 90.0, (-6.0, 0.0)),
@@ -82,9 +83,14 @@ def test_bodies_come_out_at_the_twilight_observers_report(
     depths = np.arange(3.0, -18.0, -0.1)
     size = depths.size
     where = Lights(
-        np.full(size, altitude), depths, np.full(size, elongation), *(np.full(size, v) for v in (-30.0, 90.0, 90.0))
+        np.full(size, altitude),
+        depths,
+        np.full(size, elongation),
+        *(np.full(size, v) for v in (-30.0, 90.0, 90.0)),
     )
-    looks = Looks(np.full(size, magnitude), np.full(size, altitude), where, np.zeros(size, bool), np.ones(size))
+    looks = Looks(
+        np.full(size, magnitude), np.full(size, altitude), where, np.zeros(size, bool), np.ones(size)
+    )
     shows = margins(looks, Criteria(), LOSS_MAG).sky >= 0.0
     appears = depths[np.argmax(shows)]
     assert appears_at[0] <= appears <= appears_at[1]
@@ -95,11 +101,16 @@ def test_bodies_come_out_at_the_twilight_observers_report(
     separation=st.floats(1.0, 180.0),
     depths=st.lists(st.floats(-40.0, 0.0), min_size=2, max_size=8, unique=True),
 )
-def test_the_sky_never_darkens_as_the_sun_climbs_to_the_horizon(altitude: float, separation: float, depths: list[float]) -> None:
+def test_the_sky_never_darkens_as_the_sun_climbs_to_the_horizon(
+    altitude: float, separation: float, depths: list[float]
+) -> None:
     sun = np.sort(np.array(depths))
     size = sun.size
     where = Lights(
-        np.full(size, altitude), sun, np.full(size, separation), *(np.full(size, v) for v in (-30.0, 90.0, 90.0))
+        np.full(size, altitude),
+        sun,
+        np.full(size, separation),
+        *(np.full(size, v) for v in (-30.0, 90.0, 90.0)),
     )
     light = skylight.sunlight_nl(where, LOSS_MAG)
     assert (np.diff(light) >= -1e-9 * light[1:]).all()

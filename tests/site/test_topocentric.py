@@ -85,9 +85,7 @@ def test_altitude_and_azimuth_agree_with_astropy(sky_at: SkyAt, site: Site, body
 
 @pytest.mark.parametrize("body", BODIES, ids=str)
 @pytest.mark.parametrize("site", EVERYWHERE, ids=lambda site: site.name)
-def test_altitude_and_azimuth_agree_with_skyfield(
-    sky_at: SkyAt, kernel: Any, site: Site, body: Body
-) -> None:
+def test_altitude_and_azimuth_agree_with_skyfield(sky_at: SkyAt, kernel: Any, site: Site, body: Body) -> None:
     # No polar motion on either side. Skyfield bends light by Jupiter and Saturn too: 8 mas in this stretch.
     name = f"{body.value} barycenter" if body.value in SYSTEMS else body.value
     time = load.timescale(builtin=True).tt_jd(INSTANTS)
@@ -174,9 +172,7 @@ def test_the_mirrored_site_sees_the_mirrored_sky(
     latitude_deg: float, longitude_deg: float, right_ascension_rad: float, height: float
 ) -> None:
     across = np.sqrt(1.0 - height**2)
-    direction = np.array(
-        [across * np.cos(right_ascension_rad), across * np.sin(right_ascension_rad), height]
-    )
+    direction = np.array([across * np.cos(right_ascension_rad), across * np.sin(right_ascension_rad), height])
     mirror = np.array([1.0, 1.0, -1.0])
     north, east, up = horizon_axes(latitude_deg, longitude_deg) @ direction
     mirrored = horizon_axes(-latitude_deg, longitude_deg) @ (mirror * direction)

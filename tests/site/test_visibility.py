@@ -43,13 +43,15 @@ def look(
 
 
 def verdict_of(looks: Looks, criteria: Criteria = CRITERIA) -> Verdict:
-    return VERDICTS[verdicts(margins(looks, criteria, LOSS_MAG).least, criteria, looks.lights.sun_altitude_deg)[0]]
+    return VERDICTS[
+        verdicts(margins(looks, criteria, LOSS_MAG).least, criteria, looks.lights.sun_altitude_deg)[0]
+    ]
 
 
 @pytest.mark.parametrize(
     ("magnitude", "expected"),
-    # Common practice, no source: high in a dark rural sky. Uranus needs binoculars at the edge of a town, Neptune
-    # binoculars or a telescope, Pluto more than 200 mm.
+    # Common practice, no source: high in a dark rural sky. Uranus needs binoculars at the edge of a town,
+    # Neptune binoculars or a telescope, Pluto more than 200 mm.
     [
         (-2.5, Verdict.NAKED_EYE),
         (0.8, Verdict.NAKED_EYE),
@@ -85,8 +87,8 @@ def test_a_crescent_below_danjons_limit_shows_to_nobody() -> None:
 
 
 def test_measure_of_a_crescent_is_zero_where_its_width_just_suffices() -> None:
-    # Yallop 1997, by hand: at 10 degrees and a semidiameter of 15.5 arcminutes the width is 0.23548 arcminutes;
-    # 11.8371 - 6.3226 W + 0.7319 W^2 - 0.1018 W^3 = 10.3875 degrees of arc.
+    # Yallop 1997, by hand: at 10 degrees and a semidiameter of 15.5 arcminutes the width is 0.23548
+    # arcminutes; 11.8371 - 6.3226 W + 0.7319 W^2 - 0.1018 W^3 = 10.3875 degrees of arc.
     q = crescent_q(np.array([10.3875]), np.array([10.0]), np.array([15.5]))
     assert q[0] == pytest.approx(0.0, abs=2e-4)
 
@@ -140,9 +142,7 @@ def test_no_verdict_improves_when_low_altitudes_are_forbidden(
     moments: list[tuple[float, float]], limits: list[float]
 ) -> None:
     margin, altitude = np.array(moments).T
-    found = [
-        best_verdict(margin[altitude >= limit], altitude[altitude >= limit]) for limit in sorted(limits)
-    ]
+    found = [best_verdict(margin[altitude >= limit], altitude[altitude >= limit]) for limit in sorted(limits)]
     assert found == sorted(found)
 
 

@@ -36,10 +36,14 @@ def test_every_clock_change_of_two_decades_falls_on_its_second(name: str) -> Non
     rules = ZoneInfo(name)
     seconds = range(int(dt.datetime(2008, 1, 1, tzinfo=dt.UTC).timestamp()), 1_830_000_000, 3_600)
     offsets = [dt.datetime.fromtimestamp(second, rules).utcoffset() for second in seconds]
-    changes = [second for second, old, new in zip(seconds[1:], offsets, offsets[1:], strict=False) if old != new]
+    changes = [
+        second for second, old, new in zip(seconds[1:], offsets, offsets[1:], strict=False) if old != new
+    ]
     zone = zones.zone_named(name)
     for hour in changes:
-        exact = next(s for s in range(hour - 3_600, hour + 1) if _utcoffset(s, rules) == _utcoffset(hour, rules))
+        exact = next(
+            s for s in range(hour - 3_600, hour + 1) if _utcoffset(s, rules) == _utcoffset(hour, rules)
+        )
         instants = zones.UNIX_EPOCH_JD + (exact + np.array([-1.0, 0.0])) / 86_400.0
         assert zone.offset_s(instants).tolist() == [_utcoffset(exact - 1, rules), _utcoffset(exact, rules)]
     assert changes or name in ("Asia/Kathmandu", "UTC")
@@ -53,7 +57,10 @@ def _utcoffset(unix_s: int, rules: ZoneInfo) -> int:
 
 def test_no_instant_has_the_offset_of_none() -> None:
     berlin = zones.zone_named("Europe/Berlin")
-    assert berlin.offset_s(np.array([np.nan, jd_of(dt.datetime(2027, 7, 1, tzinfo=dt.UTC))])).tolist() == [3_600, 7_200]
+    assert berlin.offset_s(np.array([np.nan, jd_of(dt.datetime(2027, 7, 1, tzinfo=dt.UTC))])).tolist() == [
+        3_600,
+        7_200,
+    ]
 
 
 def test_years_that_python_does_not_know_keep_a_clock() -> None:
@@ -76,7 +83,8 @@ def test_noon_is_when_the_clock_shows_twelve() -> None:
 
 
 def test_a_clock_reading_stands_for_no_one_or_two_instants() -> None:
-    # 2027 in Berlin: 02:00 becomes 03:00 on 28 March, 03:00 becomes 02:00 on 31 October (EU directive 2000/84/EC).
+    # 2027 in Berlin: 02:00 becomes 03:00 on 28 March, 03:00 becomes 02:00 on 31 October (EU directive
+    # 2000/84/EC).
     berlin = zones.zone_named("Europe/Berlin")
     assert berlin.instants_jd_utc(dt.datetime(2027, 3, 28, 2, 30)) == ()
     (plain,) = berlin.instants_jd_utc(dt.datetime(2027, 3, 28, 3, 30))
@@ -93,7 +101,11 @@ def test_names_are_found_in_any_case() -> None:
 
 @pytest.mark.parametrize(
     ("name", "hint"),
-    [("Europe/Berlinn", "Europe/Berlin"), ("berlin", "Europe/Berlin"), ("qqq", "a name of the IANA database")],
+    [
+        ("Europe/Berlinn", "Europe/Berlin"),
+        ("berlin", "Europe/Berlin"),
+        ("qqq", "a name of the IANA database"),
+    ],
 )
 def test_a_wrong_name_gets_the_nearest(name: str, hint: str) -> None:
     with pytest.raises(UnknownNameError, match=hint):

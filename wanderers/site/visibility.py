@@ -21,6 +21,7 @@ from wanderers.arrays import Bools, Floats, Ints
 from wanderers.ephemeris.bodies import EQUATORIAL_RADIUS_KM, Body
 from wanderers.site import airmass, skylight
 from wanderers.site.skylight import Lights
+from wanderers.site.twilight import SUN_RISE_DEG
 
 
 class Verdict(StrEnum):
@@ -72,8 +73,6 @@ class Criteria:
         return airmass.extinction_mag(elevation_m) if self.extinction_mag is None else self.extinction_mag
 
 
-SUN_UP_DEG: Final = -50.0 / 60.0
-"""Altitude of the Sun's centre, without refraction, at sunrise and sunset: USNO, definitions."""
 CRESCENT_Q: Final = (-0.293, -0.232, -0.160, -0.014, 0.216)
 """Bounds of the classes F to A of a young crescent. Yallop 1997, NAO Technical Note 69; from memory."""
 WIDEST_CRESCENT_DEG: Final = 30.0
@@ -146,7 +145,7 @@ def verdicts(margin: Floats, criteria: Criteria, sun_altitude_deg: Floats) -> In
     reached = (0.0, -criteria.binoculars_mag, -criteria.telescope_mag)
     by_aid = sum((margin < step).astype(np.int64) for step in reached)
     without = np.where(margin < 0.0, len(VERDICTS) - 1, 0)
-    return np.asarray(np.where(sun_altitude_deg > SUN_UP_DEG, without, by_aid), dtype=np.int64)
+    return np.asarray(np.where(sun_altitude_deg > SUN_RISE_DEG, without, by_aid), dtype=np.int64)
 
 
 def merit(margin: Floats, altitude_deg: Floats, verdict: Ints, criteria: Criteria) -> Floats:
