@@ -3,13 +3,16 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from pathlib import Path
 
+import hypothesis
 import polars as pl
 import pytest
+from skyfield.api import load_file
 from skyfield_data import get_skyfield_data_path
 
+from tests.direct import Direct
 from wanderers.ephemeris.bodies import BODIES, Body
 from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.kernels import Kernel, find_kernel, inspect_kernel
@@ -22,11 +25,30 @@ from wanderers.events.scene import Choice
 CACHE_VARIABLE = "WANDERERS_TEST_CACHE"
 """Names a folder for tracks that outlive a session, for quick repeats."""
 
+LONG = "long"
+
+# Examples are drawn alike in every run, and nothing is measured against the clock.
+hypothesis.settings.register_profile("suite", deadline=None, derandomize=True, database=None)
+hypothesis.settings.load_profile("suite")
+
+
+def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item]) -> None:
+    """Leave the proofs that take many minutes to those who ask for them by name."""
+    if LONG in config.getoption("-m"):
+        return
+    for item in items:
+        if item.get_closest_marker(LONG):
+            item.add_marker(pytest.mark.skip(reason="takes many minutes: run with -m long"))
+
 
 @pytest.fixture(scope="session")
 def cache_folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
-    kept = os.environ.get(CACHE_VARIABLE)
-    return Path(kept) if kept else tmp_path_factory.mktemp("cache")
+    """A cache folder for the whole run; workers of a parallel run share it, as processes of a user do."""
+    root = tmp_path_factory.getbasetemp()
+    shared = root.parent if "PYTEST_XDIST_WORKER" in os.environ else root
+    folder = Path(os.environ.get(CACHE_VARIABLE) or shared / "cache")
+    folder.mkdir(parents=True, exist_ok=True)
+    return folder
 
 
 @pytest.fixture(scope="session")
@@ -46,8 +68,16 @@ def de421_store(cache_folder: Path) -> TrackStore:
 
 
 @pytest.fixture(scope="session")
+def direct(kernel: Kernel) -> Iterator[Direct]:
+    """Places that Skyfield computes from the same kernel, one evaluation an instant."""
+    opened = load_file(str(kernel.path))
+    yield Direct(opened)
+    opened.close()
+
+
+@pytest.fixture(scope="session")
 def published_almanac(store: TrackStore) -> Callable[..., pl.DataFrame]:
-    """Return the event table of a TT span, without stars."""
+    """Return the event table of a TT span, with the meetings of the bodies given."""
 
     def table(
         jd_from: float, jd_to: float, kinds: list[str], frames: list[str], bodies: list[str]
@@ -58,7 +88,7 @@ def published_almanac(store: TrackStore) -> Callable[..., pl.DataFrame]:
             jd_to,
             frozenset(Kind(name) for name in kinds),
             frozenset(Frame(name) for name in frames),
-            Choice(chosen, stars_for=()),
+            Choice(chosen, stars_for=chosen),
         )
         return almanac(store, query)
 

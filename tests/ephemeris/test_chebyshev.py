@@ -1,4 +1,4 @@
-"""Piecewise Chebyshev series: what is fitted comes back, with its derivatives, on either road of evaluation."""
+"""Piecewise Chebyshev series: what is fitted comes back, with its derivatives, at instants and on grids."""
 
 from __future__ import annotations
 

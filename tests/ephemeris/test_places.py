@@ -12,7 +12,7 @@ from jplephem.spk import SPK
 from tests.direct import MAS_PER_RAD, Direct, angle_rad
 from wanderers import constants
 from wanderers.arrays import Floats
-from wanderers.ephemeris.bodies import BODIES, Body
+from wanderers.ephemeris.bodies import BODIES, NAIF_CHAINS, Body
 from wanderers.ephemeris.kernels import Kernel, open_kernel
 from wanderers.ephemeris.places import (
     Instants,
@@ -69,13 +69,14 @@ def test_length_of_a_place_is_the_distance_that_light_travelled(spk: SPK, observ
         distance = length(geocentric_place(spk, body, observer)[:3])
         light_time = distance / constants.SPEED_OF_LIGHT_AU_PER_DAY
         left = Instants(observer.at.day, observer.at.part - light_time)
-        chain_then = {Body.MOON: ((0, 3), (3, 301)), Body.MERCURY: ((0, 1), (1, 199)), Body.PLUTO: ((0, 9),)}
-        then, _ = barycentric(spk, chain_then[body], left)
+        then, _ = barycentric(spk, NAIF_CHAINS[body], left)
         away_m = (length(then - observer.position) - distance) * constants.AU_KM * 1e3
-        np.testing.assert_allclose(away_m, 0.0, atol=1.0)  # the docstring's metre
+        # Metres: one step from a velocity leaves half the acceleration (0.06 m/s2 for Mercury at perihelion)
+        # times the square of 700 s, 15 km, and of that the body's speed over the speed of light.
+        np.testing.assert_allclose(away_m, 0.0, atol=3.0)
 
 
-def test_light_time_of_the_sun_is_that_of_one_au_give_or_take_the_eccentricity(spk: SPK, observer: Observer) -> None:
+def test_light_time_of_the_sun_spans_one_au_and_the_eccentricity(spk: SPK, observer: Observer) -> None:
     # 499.004784 s for 1 au: The Astronomical Almanac, section K, from memory. The eccentricity is 0.0167, and
     # the Moon swings the Earth by 4670 km, the planets the Sun by no more than that against it.
     distance = geocentric_place(spk, Body.SUN, observer)[3]

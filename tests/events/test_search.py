@@ -186,8 +186,8 @@ def test_no_functions_have_no_roots() -> None:
 
 @pytest.mark.xfail(
     strict=True,
-    reason="the docstring of find_roots asks for one turn a step only; where the curvature changes within the "
-    "step, the meeting of the tangents says nothing and the pair is passed over",
+    reason="the docstring of find_roots asks for one turn a step only; where the curvature changes within "
+    "the step, the meeting of the tangents says nothing and the pair is passed over",
 )
 def test_one_turn_a_step_is_enough_to_find_every_root() -> None:
     # A sine of 2.2 steps: its turns are 1.1 steps apart.
@@ -254,7 +254,7 @@ def test_a_useless_slope_costs_time_but_no_root(factor: float) -> None:
     middle = (left + right) / 2.0
     bracket = Brackets(np.zeros(1, dtype=np.int64), left, right, *(ends[:, None] ** 3 - 20.0), middle)
     found = refine(evaluate, bracket)
-    # The last step may be as long as two millionths of a day, and a slope three times too steep makes it short.
+    # The last step may be as long as two millionths of a day; a slope three times too steep makes it short.
     assert found[0] - BASE_JD == pytest.approx(20.0 ** (1.0 / 3.0), abs=4e-6)
 
 

@@ -20,6 +20,8 @@ COMMANDS: Final = {
     "track": "Print a body's positions at regular steps.",
     "calendar": "Write events as an iCalendar file.",
     "gatherings": "Find several bodies within a small circle, over centuries.",
+    "nights": "Print what can be seen from a site, evening by evening, or at an instant.",
+    "sites": "List, add and check sites; find a city.",
     "kernels": "Say which kernel is used; check one, add one.",
 }
 """Commands and their one-line help, so that the list prints without loading any of them."""

@@ -2,38 +2,55 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+import textwrap
+from collections.abc import Callable, Iterator
+from itertools import zip_longest
 from typing import IO, Any, Final
 
 import polars as pl
-from rich.console import Console
-from rich.table import Table
-from rich.text import Text
 
 from wanderers import schema
 from wanderers.ephemeris.bodies import Body
 
 WIDTH: Final = 100
+NARROWEST: Final = 12
+GAP: Final = "  "
 Cell = Callable[[Any], str]
 
 
 def print_table(table: pl.DataFrame, heading: str, stream: IO[str]) -> None:
-    """Print a table under its heading; which columns are shown follows from its kind."""
-    console = Console(file=stream, width=WIDTH, highlight=False, soft_wrap=False)
-    console.print(Text(heading))
+    """Print a table under its heading; which columns are shown follows from its kind.
+
+    Laid out here: a library's table of two thousand rows would take longer than finding the events.
+    """
+    stream.write(textwrap.fill(heading, WIDTH) + "\n")
     if table.is_empty():
-        console.print(Text("Nothing found."))
+        stream.write("Nothing found.\n")
         return
-    columns = _layout(table)
-    printed = Table(box=None, pad_edge=False, padding=(0, 2, 0, 0), header_style="bold")
-    for title, _, numeric in columns:
-        printed.add_column(
-            title, justify="right" if numeric else "left", no_wrap=not numeric and title != "What"
-        )
-    cells = [cell(table) for _, cell, _ in columns]
-    for row in zip(*cells, strict=True):
-        printed.add_row(*row)
-    console.print(printed)
+    layout = _layout(table)
+    columns = [[title, *cell(table)] for title, cell, _ in layout]
+    numeric = [is_numeric for _, _, is_numeric in layout]
+    stream.writelines(_lines(columns, numeric))
+
+
+def _lines(columns: list[list[str]], numeric: list[bool]) -> Iterator[str]:
+    """Yield the lines of a table: numbers to the right, words to the left, the widest words wrapped to fit."""
+    widths = [max(map(len, column)) for column in columns]
+    excess = sum(widths) + len(GAP) * (len(widths) - 1) - WIDTH
+    if excess > 0:
+        widest = max((w, n) for n, w in enumerate(widths) if not numeric[n])[1]
+        widths[widest] = max(widths[widest] - excess, NARROWEST)
+    for row in zip(*columns, strict=True):
+        wrapped = [
+            [text] if len(text) <= width else textwrap.wrap(text, width)
+            for text, width in zip(row, widths, strict=True)
+        ]
+        for line in zip_longest(*wrapped, fillvalue=""):
+            cells = (
+                text.rjust(width) if right else text.ljust(width)
+                for text, width, right in zip(line, widths, numeric, strict=True)
+            )
+            yield GAP.join(cells).rstrip() + "\n"
 
 
 def almanac_heading(table: pl.DataFrame, kernel: str) -> str:
@@ -103,13 +120,18 @@ def _fixed(name: str, decimals: int) -> Callable[[pl.DataFrame], list[str]]:
     return _texts(name, lambda value: f"{value:.{decimals}f}".replace("-", "−"))
 
 
-def _minute(value: str) -> str:
-    """Return an ISO instant to the minute, rounded."""
-    instant = pl.Series([value.removesuffix("Z")]).str.to_datetime(strict=False)[0]
-    if instant is None:  # a year outside 0 to 9999
-        return value.split(".")[0].rsplit(":", 1)[0].replace("T", " ")
-    rounded = pl.Series([instant]).dt.round("1m")[0]
-    return f"{rounded:%Y-%m-%d %H:%M}" if rounded.year >= 1000 else rounded.isoformat(" ")[:16]
+def _minutes(name: str) -> Callable[[pl.DataFrame], list[str]]:
+    """Return a function that prints a column of ISO instants to the minute, rounded, nothing where null."""
+    return lambda table: [text or "" for text in minutes(table[name])]
+
+
+def minutes(instants: pl.Series) -> pl.Series:
+    """Return ISO instants to the minute, rounded; years outside 0 to 9999 are cut instead."""
+    plain = instants.str.strip_suffix("Z")
+    parsed = plain.str.to_datetime("%Y-%m-%dT%H:%M:%S%.f", strict=False)
+    rounded = parsed.dt.round("1m").dt.to_string("%Y-%m-%d %H:%M")
+    cut = plain.str.replace("T", " ").str.replace(r":[0-9.]+$", "")
+    return rounded.zip_with(rounded.is_not_null(), cut)
 
 
 def _day(value: str) -> str:
@@ -166,7 +188,7 @@ def _describe_rest(kind: str, body: str, other: str, detail: str) -> str:
 
 
 EVENTS: Final[list[Column]] = [
-    ("UTC", _texts("utc", _minute), False),
+    ("UTC", _minutes("utc"), False),
     ("What", _what, False),
     ("In", _texts("constellation", str), False),
     ("Separation", _fixed("separation_deg", 2), True),
@@ -180,7 +202,7 @@ STANDING: Final[list[Column]] = [
 ]
 
 GATHERINGS: Final[list[Column]] = [
-    ("UTC", _texts("utc", _minute), False),
+    ("UTC", _minutes("utc"), False),
     ("What", lambda table: [detail.replace("+", ", ") for detail in table["detail"]], False),
     ("In", _texts("constellation", str), False),
     ("Circle", _fixed("separation_deg", 2), True),
@@ -205,7 +227,7 @@ def _later(name: str) -> Callable[[pl.DataFrame], list[str]]:
 
 SIDE_BY_SIDE: Final[list[Column]] = [
     ("What", _compared, False),
-    ("In longitude, UTC", _texts("longitude_utc", _minute), False),
+    ("In longitude, UTC", _minutes("longitude_utc"), False),
     ("In RA", _later("right_ascension_minus_longitude_hours"), True),
     ("J2000", _later("j2000_minus_longitude_hours"), True),
     ("Closest", _later("least_separation_minus_longitude_hours"), True),
@@ -226,7 +248,7 @@ SEASONS: Final[list[Column]] = [
 ]
 
 TRACK: Final[list[Column]] = [
-    ("UTC", _texts("utc", _minute), False),
+    ("UTC", _minutes("utc"), False),
     ("Longitude", _fixed("longitude_deg", 3), True),
     ("Latitude", _fixed("latitude_deg", 3), True),
     ("Deg/day", _fixed("longitude_rate_deg_per_day", 3), True),
