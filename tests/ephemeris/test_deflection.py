@@ -89,8 +89,8 @@ def test_shift_is_at_a_right_angle_to_the_direction() -> None:
 
 @pytest.mark.parametrize("arcsec_from_centre", [0.0, 0.1, 5.0, 30.0, 200.0])
 def test_behind_the_middle_of_the_disc_the_shift_falls_to_nothing(arcsec_from_centre: float) -> None:
-    # A point mass would throw the image about by 1.75 times 960 over the distance from the centre; nobody sees
-    # that. It is limited from some 290 arcseconds inwards and vanishes with the distance.
+    # A point mass would throw the image about by 1.75 times 960 over the distance from the centre; nobody
+    # sees that. It is limited from some 290 arcseconds inwards and vanishes with the distance.
     body, sun = elongated(arcsec_from_centre / 3600.0, 30.0)
     shift = np.linalg.norm(deflection(body, sun)) * ARCSEC_PER_RAD
     assert shift <= 1.75 * 960.0 / 290.0 * arcsec_from_centre / 200.0

@@ -48,9 +48,7 @@ def test_guess_is_the_root_where_the_curve_is_a_line() -> None:
 def test_guess_is_the_root_where_the_curve_is_a_quintic_and_bends_are_known() -> None:
     parts = np.linspace(0.05, 0.95, 61)
     shape = Polynomial([1.0, 0.0, 0.0, 0.0, 0.5])
-    guesses = [
-        hermite_root(*ends(Polynomial([-part, 1.0]) * shape, 1.0, 2), np.ones(1))[0] for part in parts
-    ]
+    guesses = [hermite_root(*ends(Polynomial([-part, 1.0]) * shape, 1.0, 2), np.ones(1))[0] for part in parts]
     np.testing.assert_allclose(guesses, parts, rtol=0.0, atol=1e-9)
 
 

@@ -19,7 +19,9 @@ def days(table: pl.DataFrame) -> list[str]:
 
 def conjunctions(almanac: Almanac, pair: list[str], first: str, last: str, frame: str) -> pl.DataFrame:
     span = jd_of_date(first), jd_of_date(last)
-    return almanac(*span, ["conjunction"], BOTH, pair).filter(frame=frame).sort("jd_tt")
+    found = almanac(*span, ["conjunction"], BOTH, pair)
+    assert set(found["body"]) <= set(pair[:1]) and set(found["other"]) <= set(pair[1:])
+    return found.filter(frame=frame).sort("jd_tt")
 
 
 @pytest.mark.parametrize("frame", BOTH)
@@ -41,9 +43,7 @@ def test_both_definitions_and_the_least_separations_of_an_encounter_are_one_meet
 
 
 def test_part_of_a_meeting_is_numbered_as_in_the_whole(published_almanac: Almanac) -> None:
-    found = conjunctions(
-        published_almanac, ["jupiter", "saturn"], "1981-02-01", "1981-04-01", "ecliptic"
-    )
+    found = conjunctions(published_almanac, ["jupiter", "saturn"], "1981-02-01", "1981-04-01", "ecliptic")
     assert found["meeting_part"].to_list() == ["2 of 3"]
 
 

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+
 import numpy as np
 import polars as pl
 import pytest
@@ -42,8 +44,10 @@ def table(store: TrackStore) -> pl.DataFrame:
 
 
 @pytest.fixture(scope="module")
-def direct(kernel: Kernel) -> Direct:
-    return Direct(SpiceKernel(str(kernel.path)))
+def direct(kernel: Kernel) -> Iterator[Direct]:
+    planets = SpiceKernel(str(kernel.path))
+    yield Direct(planets)
+    planets.close()
 
 
 def test_columns_are_those_of_the_schema(table: pl.DataFrame) -> None:
@@ -149,7 +153,9 @@ def test_both_shapes_are_among_those_compared(table: pl.DataFrame) -> None:
 
 def test_closest_mars_of_2003_is_published(table: pl.DataFrame) -> None:
     # 2003 August 27, 55.758 million km = 0.37272 au, 25.1 arcsec, magnitude -2.9 (press figures, from memory).
-    row = table.filter(pl.col("body") == "mars", pl.col("middle_utc").str.starts_with("2003")).row(0, named=True)
+    row = table.filter(pl.col("body") == "mars", pl.col("middle_utc").str.starts_with("2003")).row(
+        0, named=True
+    )
     assert row["closest_au"] == pytest.approx(0.37272, abs=1e-5)
     assert row["peak_diameter_arcsec"] == pytest.approx(25.1, abs=0.06)
     assert row["peak_magnitude"] == pytest.approx(-2.9, abs=0.06)

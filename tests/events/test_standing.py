@@ -35,7 +35,9 @@ def slowly(group: list[int], jd: list[float], figure: list[float]) -> tuple[list
     st.lists(st.tuples(st.integers(0, 2), st.integers(0, 5)), min_size=1, max_size=40),
     st.randoms(use_true_random=False),
 )
-def test_nearest_better_is_what_a_look_at_all_pairs_finds(rows: list[tuple[int, int]], random: object) -> None:
+def test_nearest_better_is_what_a_look_at_all_pairs_finds(
+    rows: list[tuple[int, int]], random: object
+) -> None:
     jd = [float(day) for day in range(len(rows))]
     random.shuffle(jd)  # type: ignore[attr-defined]
     group, figure = [row[0] for row in rows], [float(row[1]) for row in rows]

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+
 import numpy as np
 import polars as pl
 import pytest
@@ -39,8 +41,10 @@ def table(store: TrackStore) -> pl.DataFrame:
 
 
 @pytest.fixture(scope="module")
-def direct(kernel: Kernel) -> Direct:
-    return Direct(SpiceKernel(str(kernel.path)))
+def direct(kernel: Kernel) -> Iterator[Direct]:
+    planets = SpiceKernel(str(kernel.path))
+    yield Direct(planets)
+    planets.close()
 
 
 def alternates(words: list[str]) -> bool:
@@ -60,8 +64,7 @@ def test_every_retrogradation_holds_one_middle(table: pl.DataFrame, body: str) -
     # The Earth passes an outer planet, or is passed by an inner one, once a loop (common practice).
     own = table.filter(kind="station", body=body, frame="ecliptic").sort("jd_tt")
     middles = table.filter(
-        (pl.col("body") == body)
-        & ((pl.col("kind") == "opposition") | (pl.col("detail") == "inferior"))
+        (pl.col("body") == body) & ((pl.col("kind") == "opposition") | (pl.col("detail") == "inferior"))
     )["jd_tt"].to_numpy()
     starts = own.filter(detail="retrograde")["jd_tt"].to_numpy()
     ends = own.filter(detail="direct")["jd_tt"].to_numpy()
@@ -117,9 +120,7 @@ def test_perigees_and_apogees_alternate(table: pl.DataFrame, body: str) -> None:
 
 @pytest.mark.parametrize("frame", list(Frame))
 @pytest.mark.parametrize("body", ["mercury", "mars", "saturn"])
-def test_longitude_turns_at_a_station(
-    table: pl.DataFrame, direct: Direct, body: str, frame: Frame
-) -> None:
+def test_longitude_turns_at_a_station(table: pl.DataFrame, direct: Direct, body: str, frame: Frame) -> None:
     # Skyfield's own longitudes an eighth of a day to both sides lie on the one side of the station's.
     own = table.filter(kind="station", body=body, frame=frame.value)
     jd = own["jd_tt"].to_numpy()
@@ -140,5 +141,9 @@ def test_venus_is_brightest_between_elongation_and_inferior_conjunction(table: p
     near = inferior[np.abs(brightest[:, None] - inferior).argmin(axis=1)]
     assert (np.abs(brightest - near) < 60.0).all()
     for jd, middle in zip(brightest, near, strict=True):
-        edge = east[east < middle].max(initial=-np.inf) if jd < middle else west[west > middle].min(initial=np.inf)
+        edge = (
+            east[east < middle].max(initial=-np.inf)
+            if jd < middle
+            else west[west > middle].min(initial=np.inf)
+        )
         assert abs(jd - middle) < abs(edge - middle)
