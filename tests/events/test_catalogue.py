@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import replace
 
 import polars as pl
@@ -73,10 +74,7 @@ def test_separation_equal_to_what_positions_of_one_frame_give(table: pl.DataFram
 
 
 def test_parts_of_a_span_put_together_are_the_whole(store: TrackStore, table: pl.DataFrame) -> None:
-    parts = [
-        almanac(store, replace(ALL, jd_from=low, jd_to=high))
-        for low, high in zip(EDGES[:-1], EDGES[1:], strict=True)
-    ]
+    parts = [almanac(store, replace(ALL, jd_from=low, jd_to=high)) for low, high in itertools.pairwise(EDGES)]
     joined = pl.concat(parts)
     named = ["event_id", "kind", "detail", "body", "other", "frame", "meeting_id", "meeting_part"]
     assert_frame_equal(joined.sort("event_id").select(named), table.sort("event_id").select(named))

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from collections.abc import Iterator
 
 import numpy as np
@@ -57,7 +58,7 @@ def test_columns_are_those_of_the_schema(table: pl.DataFrame) -> None:
 
 
 def test_marks_come_in_order(table: pl.DataFrame) -> None:
-    for earlier, later in zip(MARKS[:-1], MARKS[1:], strict=True):
+    for earlier, later in itertools.pairwise(MARKS):
         assert (table[earlier] < table[later]).all()
     assert table["retrograde_days"].equals(table[MARKS[3]] - table[MARKS[1]])
 
@@ -152,7 +153,7 @@ def test_both_shapes_are_among_those_compared(table: pl.DataFrame) -> None:
 
 
 def test_closest_mars_of_2003_is_published(table: pl.DataFrame) -> None:
-    # 2003 August 27, 55.758 million km = 0.37272 au, 25.1 arcsec, magnitude -2.9 (press figures, from memory).
+    # 2003 August 27, 55.758 million km = 0.37272 au, 25.1 arcsec, magnitude -2.9 (press, from memory).
     row = table.filter(pl.col("body") == "mars", pl.col("middle_utc").str.starts_with("2003")).row(
         0, named=True
     )
@@ -164,7 +165,7 @@ def test_closest_mars_of_2003_is_published(table: pl.DataFrame) -> None:
 
 def test_adjoining_spans_share_no_season_and_lose_none(store: TrackStore, table: pl.DataFrame) -> None:
     edges = (SPAN[0], 2_450_001.0, 2_452_879.0, SPAN[1])
-    parts = [seasons(store, *span) for span in zip(edges[:-1], edges[1:], strict=True)]
+    parts = [seasons(store, *span) for span in itertools.pairwise(edges)]
     ids = pl.concat(parts)["season_id"]
     assert sorted(ids) == sorted(table.filter(frame="ecliptic")["season_id"])
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from collections.abc import Iterator
 
 import numpy as np
@@ -48,7 +49,7 @@ def direct(kernel: Kernel) -> Iterator[Direct]:
 
 
 def alternates(words: list[str]) -> bool:
-    return all(one != two for one, two in zip(words[:-1], words[1:], strict=True))
+    return all(one != two for one, two in itertools.pairwise(words))
 
 
 @pytest.mark.parametrize("frame", list(Frame))

@@ -93,20 +93,29 @@ def test_the_page_asks_for_nothing_outside_itself() -> None:
         for attributes in reader.attributes(tag):
             assert attributes.get("src", "data:").startswith("data:")
             assert tag == "script" or attributes.get("href", "data:").startswith("data:")
-    policy = next(m["content"] for m in reader.attributes("meta") if m.get("http-equiv") == "Content-Security-Policy")
+    policy = next(
+        m["content"] for m in reader.attributes("meta") if m.get("http-equiv") == "Content-Security-Policy"
+    )
     assert policy.startswith("default-src 'none'")
 
 
 def test_the_page_names_kernel_checksum_version_frame_scale_and_span() -> None:
     text = page_with().text
-    for fact in ("DE999", CHECKSUM, f"wanderers {__version__}", "true ecliptic and equinox of date", "UTC", "TT"):
+    for fact in (
+        "DE999",
+        CHECKSUM,
+        f"wanderers {__version__}",
+        "true ecliptic and equinox of date",
+        "UTC",
+        "TT",
+    ):
         assert fact in text
     assert "2027-01-01 to 2029-01-01" in text
     assert "Earth rotation data" in text
 
 
 def test_names_are_escaped_in_markup_and_in_data() -> None:
-    evil = "</script><script>alert(1)</script><b title=\"x\">&amp;"
+    evil = '</script><script>alert(1)</script><b title="x">&amp;'
     star = event("conjunction", "2027-05-01T10:00:00.000Z", body="venus", other=evil, frame="ecliptic",
                  separation_deg=0.5, elongation_deg=40.0)  # fmt: skip
     reader = page_with(table(star))
@@ -133,7 +142,9 @@ def test_a_picture_left_out_for_its_weight_is_linked_and_told_in_words() -> None
 
 
 def test_a_lean_drawing_keeps_its_text_and_loses_what_nobody_sees() -> None:
-    drawing = "<?xml version='1.0'?><!-- made --><svg><metadata>x</metadata>\n\n <path d='M 1.23456 -7.899'/></svg>"
+    drawing = (
+        "<?xml version='1.0'?><!-- made --><svg><metadata>x</metadata>\n\n <path d='M 1.23456 -7.899'/></svg>"
+    )
     assert lean(drawing) == "<svg>\n<path d='M 1.23 -7.89'/></svg>\n"
 
 
@@ -164,9 +175,9 @@ def test_instants_come_back_to_the_millisecond(events: pl.DataFrame) -> None:
 
 def test_what_is_said_of_each_event_comes_back(events: pl.DataFrame) -> None:
     data = table_data(events)
-    for row, given in enumerate(events.iter_rows(named=True)):
-        assert value_of(data["what"], row) == words.summary(given)
-        assert value_of(data["note"], row) == facts.note(given)
+    for row, told in enumerate(events.iter_rows(named=True)):
+        assert value_of(data["what"], row) == words.summary(told)
+        assert value_of(data["note"], row) == facts.note(told)
 
 
 @pytest.fixture(scope="module")
@@ -185,7 +196,9 @@ def value_of(column: Any, row: int) -> Any:
     return word if word is None or "fill" not in column else word.replace("{}", column["fill"][row], 1)
 
 
-ids_or_words = st.one_of(st.none(), st.from_regex(r"[a-z_]{1,8}-c-?[0-9]{1,4}-[0-9]", fullmatch=True), st.text("ab 1.", max_size=6))
+ids_or_words = st.one_of(
+    st.none(), st.from_regex(r"[a-z_]{1,8}-c-?[0-9]{1,4}-[0-9]", fullmatch=True), st.text("ab 1.", max_size=6)
+)
 
 
 @given(st.lists(ids_or_words, max_size=20))
@@ -226,7 +239,7 @@ def test_the_body_filter_lists_only_bodies_that_occur() -> None:
     assert offered == [body.value for body in Body if body.value in present]
 
 
-# Looks: contrast by the formula of WCAG 2.2, "relative luminance" and "contrast ratio"; 1.4.3 asks 4.5 of text,
+# Looks: contrast by the formulas of WCAG 2.2, "relative luminance", "contrast ratio"; 1.4.3 asks 4.5 of text,
 # 1.4.11 asks 3 of the edges of controls.
 PAIRS = [
     ("ink", "paper", 4.5),

@@ -78,7 +78,9 @@ def opened(browser: Any, report: Path) -> Iterator[Open]:
 
 
 def shown_ids(page: Any) -> list[str]:
-    ids: list[str] = page.execute_script(f"return [...document.querySelectorAll('{SHOWN}')].map(r => r.dataset.id)")
+    ids: list[str] = page.execute_script(
+        f"return [...document.querySelectorAll('{SHOWN}')].map(r => r.dataset.id)"
+    )
     return ids
 
 
@@ -101,10 +103,14 @@ def saved(page: Any, button: str) -> str:
     """Press a button that saves, and return the text that would have become a file."""
     page.execute_script(
         "window.savedText = null; HTMLAnchorElement.prototype.click = () => {};"
-        "URL.createObjectURL = (blob) => { blob.text().then((text) => { window.savedText = text; }); return '#'; };"
+        "URL.createObjectURL = (blob) => {"
+        " blob.text().then((text) => { window.savedText = text; }); return '#'; };"
     )
     page.find_element("css selector", button).click()
-    wait = "const done = arguments[0]; const look = () => window.savedText ? done(window.savedText) : setTimeout(look, 20); look();"
+    wait = (
+        "const done = arguments[0];"
+        "const look = () => window.savedText ? done(window.savedText) : setTimeout(look, 20); look();"
+    )
     text: str = page.execute_async_script(wait)
     return text
 
@@ -122,8 +128,10 @@ def test_it_opens_from_disk_and_asks_for_nothing_else(opened: Open, report: Path
 def test_every_picture_can_be_drawn(opened: Open) -> None:
     page = opened()
     broken = page.execute_async_script(
-        "const done = arguments[0]; const all = [...document.images]; all.forEach((i) => { i.loading = 'eager'; });"
-        "Promise.all(all.map((i) => i.decode().then(() => null, () => i.alt))).then((r) => done([all.length, r.filter(Boolean)]));"
+        "const done = arguments[0]; const all = [...document.images];"
+        "all.forEach((i) => { i.loading = 'eager'; });"
+        "Promise.all(all.map((i) => i.decode().then(() => null, () => i.alt)))"
+        ".then((r) => done([all.length, r.filter(Boolean)]));"
     )
     assert broken[0] >= 7
     assert broken[1] == []
@@ -156,7 +164,9 @@ def test_bodies_and_kinds_are_filtered(opened: Open, events: pl.DataFrame) -> No
     assert shown_ids(page) == wanted["event_id"].to_list()
 
 
-def test_dates_words_and_limits_are_filtered_and_what_each_left_out_is_told(opened: Open, events: pl.DataFrame) -> None:
+def test_dates_words_and_limits_are_filtered_and_what_each_left_out_is_told(
+    opened: Open, events: pl.DataFrame
+) -> None:
     page = opened()
     write(page, "from", "2027-02")
     write(page, "to", "2027-03-15")
@@ -217,7 +227,9 @@ def test_an_address_made_by_hand_cannot_break_the_page(opened: Open, events: pl.
     assert count(page) == events.height
 
 
-def test_the_selection_is_saved_as_csv_with_the_columns_of_the_file(opened: Open, events: pl.DataFrame) -> None:
+def test_the_selection_is_saved_as_csv_with_the_columns_of_the_file(
+    opened: Open, events: pl.DataFrame
+) -> None:
     page = opened("#body=venus&sort=-separation")
     text = saved(page, "#save-csv")
     table = pl.read_csv(text.encode(), schema_overrides=schema.EVENT_COLUMNS)
@@ -229,7 +241,9 @@ def test_the_selection_is_saved_as_csv_with_the_columns_of_the_file(opened: Open
     assert (table["jd_tt"] - wanted["jd_tt"]).abs().max() < 1.2e-8  # a millisecond
 
 
-def test_the_selection_is_saved_as_the_very_entries_of_the_calendar(opened: Open, report: Path, events: pl.DataFrame) -> None:
+def test_the_selection_is_saved_as_the_very_entries_of_the_calendar(
+    opened: Open, report: Path, events: pl.DataFrame
+) -> None:
     page = opened("#kind=station,opposition")
     text = saved(page, "#save-ics")
     wanted = events.filter(pl.col("kind").is_in(["station", "opposition"]))
@@ -245,7 +259,8 @@ def test_every_row_near_the_sun_carries_the_caution(opened: Open, events: pl.Dat
     near = events.filter(pl.col("elongation_deg") < 20.0).height
     assert near > 20
     rows = page.execute_script(
-        f"return [...document.querySelectorAll('{SHOWN}')].map((r) => [r.querySelector('.note')?.textContent ?? '', r.textContent])"
+        f"return [...document.querySelectorAll('{SHOWN}')]"
+        ".map((r) => [r.querySelector('.note')?.textContent ?? '', r.textContent])"
     )
     for note, text in rows[: min(near, 100)]:
         assert "local rules" in note, text
@@ -256,7 +271,8 @@ def colours(page: Any) -> list[list[int]]:
     const seen = new Set();
     for (const part of document.querySelectorAll('body *')) {
       const style = getComputedStyle(part);
-      if (part.checkVisibility() && part.tagName !== 'IMG') for (const c of [style.color, style.backgroundColor, style.borderTopColor]) seen.add(c);
+      if (part.checkVisibility() && part.tagName !== 'IMG')
+        for (const c of [style.color, style.backgroundColor, style.borderTopColor]) seen.add(c);
     }
     return [...seen].map((c) => c.match(/[\\d.]+/g).map(Number)).filter((c) => c.length < 4 || c[3] > 0);
     """
@@ -285,7 +301,9 @@ def test_the_look_follows_the_system_unless_chosen(opened: Open) -> None:
     page = opened()
     features = [{"name": "prefers-color-scheme", "value": "dark"}]
     page.execute_cdp_cmd("Emulation.setEmulatedMedia", {"media": "screen", "features": features})
-    paper = page.execute_script("return getComputedStyle(document.body).backgroundColor.match(/\\d+/g).map(Number)")
+    paper = page.execute_script(
+        "return getComputedStyle(document.body).backgroundColor.match(/\\d+/g).map(Number)"
+    )
     assert max(paper) < 64
 
 
@@ -329,7 +347,10 @@ def test_on_paper_the_controls_go_and_the_whole_selection_stands(opened: Open, e
     page.execute_cdp_cmd("Emulation.setEmulatedMedia", {"media": "print"})
     page.execute_script("dispatchEvent(new Event('beforeprint'))")
     assert len(shown_ids(page)) == moon
-    hidden = "return [...document.querySelectorAll('nav, form, .looks, .pager')].every((c) => !c.checkVisibility())"
+    hidden = (
+        "return [...document.querySelectorAll('nav, form, .looks, .pager')]"
+        ".every((c) => !c.checkVisibility())"
+    )
     assert page.execute_script(hidden)
     assert page.execute_script("return [...document.querySelectorAll('details')].every((d) => d.open)")
     for red, green, blue, *_ in colours(page):

@@ -5,7 +5,15 @@ from __future__ import annotations
 import polars as pl
 import pytest
 
-from tests.report.calendar_samples import CONJUNCTION, NEAR_SUN, ONE_OF_EVERY_KIND, STATION, TRANSIT, event, table
+from tests.report.calendar_samples import (
+    CONJUNCTION,
+    NEAR_SUN,
+    ONE_OF_EVERY_KIND,
+    STATION,
+    TRANSIT,
+    event,
+    table,
+)
 from tests.report.report_samples import MARS_SEASON, REQUEST, made_up, seasons_table, with_instants
 from wanderers.ephemeris.bodies import Body
 from wanderers.events.kinds import Kind
@@ -80,7 +88,9 @@ def test_every_event_near_the_sun_carries_the_caution_and_no_other_does() -> Non
 
 @pytest.mark.parametrize(("elongation", "cautioned"), [(19.99, True), (20.0, False)])
 def test_the_caution_begins_below_twenty_degrees(elongation: float, cautioned: bool) -> None:
-    row = event("station", "2027-01-10T12:59:03.120Z", detail="direct", frame="ecliptic", elongation_deg=elongation)
+    row = event(
+        "station", "2027-01-10T12:59:03.120Z", detail="direct", frame="ecliptic", elongation_deg=elongation
+    )
     assert (facts.NEAR_SUN_NOTE in facts.note(row)) == cautioned
 
 
@@ -124,14 +134,19 @@ def test_at_a_glance_tells_the_first_of_each_sort() -> None:
     assert lines["Next station"].event_id == STATION["event_id"]
     assert lines["Next conjunction under 1 degree"].event_id == early["event_id"]
     assert lines["Next of two planets under 1 degree"].event_id == CONJUNCTION["event_id"]
-    assert lines["Next transit"].caution.startswith("Not observable") or facts.SUN_NOTE in lines["Next transit"].caution
+    assert (
+        lines["Next transit"].caution.startswith("Not observable")
+        or facts.SUN_NOTE in lines["Next transit"].caution
+    )
     assert lines["Next inferior conjunction"].what == NONE_FOUND
     assert lines["Retrograde as the span begins"].what == "no planet"
 
 
 def test_at_a_glance_knows_who_is_retrograde_when_the_span_begins() -> None:
     season = MARS_SEASON | {"station_retrograde_utc": "2026-12-01T00:00:00.000Z"}
-    lines = at_a_glance(with_instants(ONE_OF_EVERY_KIND), seasons_table(season), REQUEST.jd_from, REQUEST.kinds)
+    lines = at_a_glance(
+        with_instants(ONE_OF_EVERY_KIND), seasons_table(season), REQUEST.jd_from, REQUEST.kinds
+    )
     assert lines[0].what == "Mars"
 
 
@@ -166,7 +181,12 @@ def test_a_season_sheet_rounds_each_figure_and_names_its_column() -> None:
     assert told["Closest"].words == "0.678 au: 101 million km, 5.6 light-minutes"
     # 10^(0.4 x 0.90) = 2.3
     assert told["Brightest"].words.endswith("2.3 times as bright as at the first turn")
-    assert {fact.source for fact in sheet.facts} >= {"retrograde_days", "arc_deg", "closest_au", "peak_magnitude"}
+    assert {fact.source for fact in sheet.facts} >= {
+        "retrograde_days",
+        "arc_deg",
+        "closest_au",
+        "peak_magnitude",
+    }
     assert sheet.caution == ""
 
 

@@ -101,9 +101,10 @@ def jobs(contents: Contents) -> list[Job]:
 
 def _overview_job(contents: Contents) -> Job:
     tracks = {body: contents.within_span(course) for body, course in contents.courses.items()}
-    alt = overview.overview_alt_text(tracks, contents.arcs, contents.events)
+    span = {"span_jd": (contents.request.jd_from, contents.request.jd_to)}
+    alt = overview.overview_alt_text(tracks, contents.arcs, contents.events, **span)
     picture = Picture("overview", "Ecliptic longitude of all planets", alt)
-    return Job(picture, overview.draw_overview, (tracks, overview.planet_conjunctions(contents.events)))
+    return Job(picture, overview.draw_overview, (tracks, overview.planet_conjunctions(contents.events)), span)
 
 
 def _planet_jobs(contents: Contents, body: Body) -> list[Job]:

@@ -34,7 +34,7 @@ def print_table(table: pl.DataFrame, heading: str, stream: IO[str]) -> None:
 
 
 def _lines(columns: list[list[str]], numeric: list[bool]) -> Iterator[str]:
-    """Yield the lines of a table: numbers to the right, words to the left, the widest words wrapped to fit."""
+    """Yield the lines of a table: numbers to the right, words to the left, the widest words wrapped."""
     widths = [max(map(len, column)) for column in columns]
     excess = sum(widths) + len(GAP) * (len(widths) - 1) - WIDTH
     if excess > 0:
