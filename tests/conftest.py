@@ -9,10 +9,11 @@ from pathlib import Path
 import hypothesis
 import polars as pl
 import pytest
+from jplephem.commandline import main as excerpt
 from skyfield.api import load_file
-from skyfield_data import get_skyfield_data_path
 
 from tests.direct import Direct
+from tests.ephemeris.kernel_files import DE421
 from wanderers.ephemeris.bodies import BODIES, Body
 from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.kernels import Kernel, find_kernel, inspect_kernel
@@ -63,8 +64,16 @@ def store(kernel: Kernel, cache_folder: Path) -> TrackStore:
 
 @pytest.fixture(scope="session")
 def de421_store(cache_folder: Path) -> TrackStore:
-    path = Path(get_skyfield_data_path()) / "de421.bsp"
-    return TrackStore(inspect_kernel(path, cache_folder), cache_folder)
+    return TrackStore(inspect_kernel(DE421, cache_folder), cache_folder)
+
+
+@pytest.fixture(scope="session")
+def small_kernel(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """DE421 from 2000 to 2003 with Earth, Sun, Mercury to Jupiter: no Moon, nothing beyond Jupiter."""
+    path = tmp_path_factory.mktemp("kernels") / "small.bsp"
+    targets = "1,2,3,4,5,10,199,299,399"
+    excerpt(["excerpt", "--targets", targets, "2000/1/1", "2004/1/1", str(DE421), str(path)])
+    return path
 
 
 @pytest.fixture(scope="session")

@@ -8,6 +8,7 @@ from typing import Final
 
 import click
 
+from wanderers.cli.almanac import STARS_FOR
 from wanderers.cli.options import (
     Span,
     Workplace,
@@ -33,6 +34,13 @@ LINE_WIDTH: Final = 60
 @body_option
 @kind_option
 @frame_option
+@click.option(
+    "--stars",
+    type=click.Choice(list(STARS_FOR)),
+    default="planets",
+    show_default=True,
+    help="Whose meetings with stars to list: Moon's and planets', planets' only, nobody's.",
+)
 @workplace_options
 @click.option(
     "--out",
@@ -48,6 +56,7 @@ def command(
     bodies: tuple[Body, ...],
     kinds: tuple[Kind, ...],
     frames: tuple[Frame, ...],
+    stars: str,
     workplace: Workplace,
     out: Path | None,
 ) -> None:
@@ -57,7 +66,9 @@ def command(
     Example: everything of 2027 and 2028, in reports/2027-01-01_to_2029-01-01/index.html
         wanderers report --from 2027 --to 2029
     """  # noqa: D301 - click reads the backspace as "do not wrap"
-    request = Request(span.jd_from, span.jd_to, context.params["scale"], bodies, kinds, frames)
+    request = Request(
+        span.jd_from, span.jd_to, context.params["scale"], bodies, kinds, frames, STARS_FOR[stars]
+    )
     folder = out or REPORTS / request.stem
     require_replaceable(folder)
     require_in_kernel(workplace, span)

@@ -50,6 +50,7 @@ class Request:
         bodies: bodies wanted, in the written order.
         kinds: kinds of events wanted.
         frames: frames wanted; the first leads: tracks, paths and pictures are in it.
+        stars_for: bodies whose meetings with stars are wanted.
     """
 
     jd_from: float
@@ -58,6 +59,7 @@ class Request:
     bodies: tuple[Body, ...]
     kinds: tuple[Kind, ...]
     frames: tuple[Frame, ...]
+    stars_for: tuple[Body, ...] = PLANETS
 
     @property
     def planets(self) -> tuple[Body, ...]:
@@ -156,7 +158,7 @@ def _query(request: Request) -> Query:
         request.jd_to,
         frozenset(request.kinds),
         frozenset(request.frames),
-        Choice(request.bodies),
+        Choice(request.bodies, stars_for=request.stars_for),
     )
 
 
