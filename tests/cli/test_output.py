@@ -126,7 +126,10 @@ def test_help_has_an_example(name: str, cache_folder: Path) -> None:
 @pytest.mark.parametrize(
     ("one", "two"),
     [
-        (("--body", "venus", "--body", "mars", "--body", "moon"), ("--body", "moon", "--body", "mars", "--body", "venus")),
+        (
+            ("--body", "venus", "--body", "mars", "--body", "moon"),
+            ("--body", "moon", "--body", "mars", "--body", "venus"),
+        ),
         (("--kind", "node", "--kind", "station"), ("--kind", "station", "--kind", "node")),
         (("--frame", "equator", "--frame", "ecliptic"), ("--frame", "ecliptic", "--frame", "equator")),
     ],
@@ -134,7 +137,10 @@ def test_help_has_an_example(name: str, cache_folder: Path) -> None:
 def test_the_order_of_repeated_options_does_not_matter(
     one: tuple[str, ...], two: tuple[str, ...], cache_folder: Path
 ) -> None:
-    tables = [program("almanac", *SPAN, *given, "--format", "csv", cache=cache_folder).stdout for given in (one, two)]
+    tables = [
+        program("almanac", *SPAN, *given, "--format", "csv", cache=cache_folder).stdout
+        for given in (one, two)
+    ]
     assert tables[0] == tables[1] != ""
 
 

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import numpy as np
-import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 from numpy.polynomial import Polynomial
@@ -16,9 +15,6 @@ def ends(curve: Polynomial, step: float, order: int) -> tuple[np.ndarray, np.nda
     return tuple(np.array([[one(at)] for one in derivatives]) for at in (0.0, step))  # type: ignore[return-value]
 
 
-BOUNCES = "a guess that has converged is bisected away: Newton's next point equals an end of the bracket"
-
-
 @given(st.floats(0.05, 0.95), st.floats(0.1, 8.0), st.floats(1.0, 5.0), st.booleans())
 def test_guess_stays_between_the_ends(part: float, step: float, far: float, up: bool) -> None:
     # One root inside, the other two complex: the slope is never zero.
@@ -28,7 +24,6 @@ def test_guess_stays_between_the_ends(part: float, step: float, far: float, up: 
     assert 0.0 <= guess[0] <= step
 
 
-@pytest.mark.xfail(strict=True, reason=BOUNCES)
 def test_guess_is_the_root_where_the_curve_is_a_cubic() -> None:
     parts = np.linspace(0.05, 0.95, 61)
     guesses = [
@@ -38,13 +33,11 @@ def test_guess_is_the_root_where_the_curve_is_a_cubic() -> None:
     np.testing.assert_allclose(guesses, parts, rtol=0.0, atol=1e-9)
 
 
-@pytest.mark.xfail(strict=True, reason=BOUNCES)
 def test_guess_is_the_root_where_the_curve_is_a_line() -> None:
     left, right = np.array([[-1.0, -3.0], [1.0, 1.0]]), np.array([[1.0, 1.0], [1.0, 1.0]])
     np.testing.assert_allclose(hermite_root(left, right, np.array([2.0, 4.0])), [1.0, 3.0])
 
 
-@pytest.mark.xfail(strict=True, reason=BOUNCES)
 def test_guess_is_the_root_where_the_curve_is_a_quintic_and_bends_are_known() -> None:
     parts = np.linspace(0.05, 0.95, 61)
     shape = Polynomial([1.0, 0.0, 0.0, 0.0, 0.5])

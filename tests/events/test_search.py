@@ -184,18 +184,6 @@ def test_no_functions_have_no_roots() -> None:
     assert found.jd.size == found.function.size == found.rising.size == 0
 
 
-@pytest.mark.xfail(
-    strict=True,
-    reason="the docstring of find_roots asks for one turn a step only; where the curvature changes within "
-    "the step, the meeting of the tangents says nothing and the pair is passed over",
-)
-def test_one_turn_a_step_is_enough_to_find_every_root() -> None:
-    # A sine of 2.2 steps: its turns are 1.1 steps apart.
-    period, phase, level = 2.2 * STEP_DAYS, 2.064, 0.973
-    found = search(wave(period, phase, level))
-    assert found.jd.size == roots_of_wave(period, phase, level).size
-
-
 # ---- angles
 
 

@@ -6,7 +6,7 @@ import importlib
 import os
 import sys
 import traceback
-from typing import Final
+from typing import Any, Final
 
 import click
 
@@ -29,6 +29,10 @@ COMMANDS: Final = {
 TRACEBACK_VARIABLE: Final = "WANDERERS_TRACEBACK"
 
 
+class Interrupted(Exception):
+    """The user pressed Ctrl-C."""
+
+
 class LazyCommands(click.Group):
     """A group whose commands live in modules that are imported only when called."""
 
@@ -42,6 +46,13 @@ class LazyCommands(click.Group):
             return None
         command: click.Command = importlib.import_module(f"wanderers.cli.{cmd_name}").command
         return command
+
+    def invoke(self, ctx: click.Context) -> Any:
+        """Run the command; an interruption passes click's own handling, which would print an empty line."""
+        try:
+            return super().invoke(ctx)
+        except KeyboardInterrupt:
+            raise Interrupted from None
 
     def format_commands(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:
         """List the commands without importing them."""
@@ -68,7 +79,7 @@ def main() -> None:
         program.main(standalone_mode=False)
     except click.ClickException as error:
         _leave(_one_line(error), error.exit_code)
-    except (click.Abort, KeyboardInterrupt):
+    except (click.Abort, KeyboardInterrupt, Interrupted):
         _leave("interrupted: nothing half-written was kept", 130)
     except click.exceptions.Exit as request:
         sys.exit(request.exit_code)

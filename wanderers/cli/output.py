@@ -13,6 +13,7 @@ from typing import Any, Final, TypeVar
 import click
 import polars as pl
 
+from wanderers.errors import OutputError
 from wanderers.events.old_dates import has_old_dates, with_julian_dates
 from wanderers.files import reported_as_output_error, require_writable, write_atomically
 from wanderers.report.tables import print_table
@@ -65,11 +66,22 @@ def output_options(command: Command) -> Command:
     @functools.wraps(command)
     def wrapped(*args: Any, form: str | None, path: Path | None, calendar: str, **kwargs: Any) -> Any:
         if path is not None:
+            require_folder(path)
             require_writable(path)
         chosen = form or (SUFFIXES.get(path.suffix.lower(), "table") if path else "table")
         return command(*args, destination=Destination(chosen, path, calendar), **kwargs)
 
     return wrapped  # type: ignore[return-value]
+
+
+def require_folder(path: Path) -> None:
+    """Check that the folder of a file to be written is there.
+
+    Raises:
+        OutputError: it is not.
+    """
+    if not path.parent.is_dir():
+        raise OutputError(f"cannot write {path}: there is no folder {path.parent}; make it or choose another")
 
 
 def write_table(table: pl.DataFrame, destination: Destination, heading: str) -> None:

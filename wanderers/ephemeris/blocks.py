@@ -20,7 +20,7 @@ from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.chebyshev import Series
 from wanderers.ephemeris.spk_files import open_spk
 
-FORMAT_VERSION: Final = 3
+FORMAT_VERSION: Final = 4
 """Raise it whenever what a block holds changes: older files are then rebuilt."""
 
 ORIGIN_JD: Final = 2_287_184.5

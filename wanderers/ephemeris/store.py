@@ -1,18 +1,20 @@
 """Tracks on disk: blocks are computed once, kept, checked when read, and extended when more is asked.
 
-A block file is a plain ``.npz`` archive whose members carry CRC-32 sums; it is named by the kernel's
-SHA-256 and the format's version and written atomically, so a damaged or foreign file is noticed and
-rebuilt, and an interrupted build keeps every block that was finished.
+A block file is an ``.npz`` archive followed by its BLAKE2b digest; named by the kernel's SHA-256 and the
+format's version and written atomically, so a damaged or foreign file is noticed and rebuilt, and an
+interrupted build keeps every block that was finished.
 """
 
 from __future__ import annotations
 
-import zipfile
-import zlib
+import hashlib
+import io
+import threading
 from collections.abc import Callable, Iterable
 from concurrent.futures import Executor, Future, ThreadPoolExecutor, as_completed
 from dataclasses import dataclass, field
 from pathlib import Path
+from typing import BinaryIO, Final
 
 import numpy as np
 
@@ -27,7 +29,8 @@ from wanderers.files import write_atomically
 Progress = Callable[[int, int], None]
 """Told, after each block, how many are done of how many."""
 
-BLOCKS_IN_MEMORY = 4
+BLOCKS_IN_MEMORY: Final = 4
+DIGEST_BYTES: Final = 16
 
 
 def silent(done: int, total: int) -> None:
@@ -53,6 +56,7 @@ class TrackStore:
     progress: Progress = silent
     warn: Callable[[str], None] = lambda line: None
     _recent: dict[int, Block] = field(default_factory=dict, repr=False, compare=False)
+    _lock: threading.Lock = field(default_factory=threading.Lock, repr=False, compare=False)
 
     @property
     def span_jd(self) -> tuple[float, float]:
@@ -113,14 +117,15 @@ class TrackStore:
 
     def _read(self, index: int) -> Block | None:
         """Return a block that is at hand, or None."""
-        if index in self._recent:
-            return self._recent[index]
+        with self._lock:
+            if index in self._recent:
+                return self._recent[index]
         path = self._path(index)
         if not path.exists():
             return None
         try:
             block = read_block(path, index, self._stamp(), self.kernel.bodies)
-        except (OSError, ValueError, KeyError, EOFError, zipfile.BadZipFile, zlib.error):
+        except (OSError, ValueError):
             self.warn(f"cache file {path} is damaged or foreign: rebuilt")
             return None
         self._remember(block)
@@ -136,9 +141,10 @@ class TrackStore:
             self.warn(f"cache folder {path.parent} cannot be written ({error.strerror}): tracks are not kept")
 
     def _remember(self, block: Block) -> None:
-        self._recent[block.index] = block
-        while len(self._recent) > BLOCKS_IN_MEMORY:
-            self._recent.pop(next(iter(self._recent)), None)
+        with self._lock:
+            self._recent[block.index] = block
+            while len(self._recent) > BLOCKS_IN_MEMORY:
+                del self._recent[next(iter(self._recent))]
 
     def _stamp(self) -> str:
         return f"{self.kernel.sha256} v{blocks.FORMAT_VERSION}"
@@ -161,16 +167,29 @@ def write_block(path: Path, block: Block, stamp: str) -> None:
     for name, series in (("planets", block.planets), ("moon", block.moon), ("observer", block.observer)):
         if series is not None:
             members |= _members(name, series)
-    write_atomically(path, lambda file: np.savez(file, **members))  # type: ignore[arg-type]
+    archive = io.BytesIO()
+    np.savez(archive, **members)  # type: ignore[arg-type]
+    content = archive.getvalue()
+
+    def write(file: BinaryIO) -> None:
+        file.write(content)
+        file.write(_digest(content))
+
+    write_atomically(path, write)
 
 
 def read_block(path: Path, index: int, stamp: str, bodies: tuple[Body, ...]) -> Block:
     """Read a block and check that it is whole and the right one.
 
     Raises:
-        OSError, ValueError, KeyError, EOFError, zipfile.BadZipFile: it is not.
+        OSError: it cannot be read.
+        ValueError: it is not what was written, or another kernel's or version's.
     """
-    with np.load(path, allow_pickle=False) as archive:
+    whole = path.read_bytes()
+    content = whole[:-DIGEST_BYTES]
+    if _digest(content) != whole[-DIGEST_BYTES:]:
+        raise ValueError("the digest does not fit")
+    with np.load(io.BytesIO(content), allow_pickle=False) as archive:
         if str(archive["stamp"]) != f"{stamp} {index}":
             raise ValueError("another kernel's or version's block")
         held = tuple(Body(name) for name in archive["bodies"].tolist())
@@ -179,6 +198,10 @@ def read_block(path: Path, index: int, stamp: str, bodies: tuple[Body, ...]) -> 
     if set(held) | ({Body.MOON} if moon else set()) != set(bodies):
         raise ValueError("other bodies")
     return block
+
+
+def _digest(content: bytes) -> bytes:
+    return hashlib.blake2b(content, digest_size=DIGEST_BYTES).digest()
 
 
 def _members(name: str, series: Series) -> dict[str, object]:
@@ -193,7 +216,5 @@ def _members(name: str, series: Series) -> dict[str, object]:
 def _series(name: str, archive: np.lib.npyio.NpzFile) -> Series:
     origin, segment_days, first = archive[f"{name}_head"].tolist()
     coefficients = archive[f"{name}_coefficients"]
-    if not np.isfinite(coefficients).all():
-        raise ValueError("coefficients are not finite")
     middle, half = archive[f"{name}_middle"], archive[f"{name}_half"]
     return Series(origin, segment_days, int(first), middle, half, coefficients)

@@ -77,9 +77,14 @@ class Tracks:
 
         Returns:
             shape (order + 1, components, n).
+
+        Raises:
+            LookupError: a body that the kernel does not hold.
         """
         is_moon = rows == Body.MOON.order
         functions = self._function_of_order()[rows]
+        if ((functions < 0) & ~is_moon).any():
+            raise LookupError("the kernel holds no such body")
         if not is_moon.any():
             return self.planets.evaluate(functions, jd, components, order, located)
         out = np.empty((order + 1, components.stop - components.start, jd.size))
@@ -99,8 +104,8 @@ class Tracks:
         return self.planets, self.bodies.index(body)
 
     def _function_of_order(self) -> Ints:
-        """Return, for each body in written order, its function among the planets' series (0 if absent)."""
-        out = np.zeros(len(Body), dtype=np.int64)
+        """Return, for each body in written order, its function among the planets' series, -1 if absent."""
+        out = np.full(len(Body), -1, dtype=np.int64)
         for function, body in enumerate(self.bodies):
             out[body.order] = function
         return out

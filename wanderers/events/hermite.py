@@ -36,7 +36,7 @@ def hermite_root(left: Floats, right: Floats, step: Floats) -> Floats:
         beyond_low = (value >= 0.0) == positive_left
         low, high = np.where(beyond_low, s, low), np.where(beyond_low, high, s)
         newton = s - np.divide(value, slope, out=np.full_like(s, np.inf), where=slope != 0.0)
-        s = np.where((newton > low) & (newton < high), newton, (low + high) / 2.0)
+        s = np.where((newton >= low) & (newton <= high), newton, (low + high) / 2.0)
     return np.asarray(s * step)
 
 

@@ -134,11 +134,23 @@ def marked_quasi(conjunctions: list[Batch], appulse: Batch) -> Batch:
 
 
 def _approach_keys(batch: Batch, appulse: Batch) -> Ints:
-    """Number approaches: pair and count of greatest separations before each event, shape (n,)."""
-    farthest = appulse.detail == FARTHEST
-    marks = np.sort(_pair_times(appulse.chosen(farthest)))
+    """Number approaches: pair and count of their borders before each event, shape (n,)."""
     pair = batch.body * 1000 + batch.other
-    return np.asarray(np.searchsorted(marks, _pair_times(batch)) + pair * 10_000_000)
+    return np.asarray(np.searchsorted(_borders(appulse), _pair_times(batch)) + pair * 10_000_000)
+
+
+def _borders(appulse: Batch) -> Floats:
+    """Return where one approach gives way to the next, as pair times, rising, shape (k,).
+
+    That is at the greatest separations. Those from stars are not followed beyond their reach: where none is
+    known between two least separations the middle between them stands in.
+    """
+    order = np.argsort(_pair_times(appulse), kind="stable")
+    placed, farthest = _pair_times(appulse)[order], appulse.detail[order] == FARTHEST
+    pair = (appulse.body * 1000 + appulse.other)[order]
+    unparted = ~farthest[1:] & ~farthest[:-1] & (pair[1:] == pair[:-1])
+    middles = (placed[1:] + placed[:-1])[unparted] / 2.0
+    return np.sort(np.concatenate([placed[farthest], middles]))
 
 
 def _pair_times(batch: Batch) -> Floats:

@@ -28,6 +28,9 @@ BRACKET_DAYS: Final = 1e-9
 """Length at which a bracket that is only halved counts as its root: twice the spacing of Julian dates."""
 
 MOST_STEPS: Final = 60
+FOREIGN_ROOT_NUDGE: Final = 1e-6
+"""Part of a step by which an end that is another interval's root is moved inward."""
+
 TANGENT_SLACK: Final = 1e-3
 """By how much, relatively, the tangents' reach may be short: slopes may be off by as much."""
 
@@ -117,7 +120,8 @@ def find_roots(
         bends: second derivatives per day squared, shape (functions, n), for better first guesses.
 
     Returns:
-        all roots between the first and last sample. Complete if no function turns twice within one step.
+        all roots between the first and last sample. Complete if, wherever a function turns, its curvature
+        keeps one sign throughout that step: a step of a fifth of its shortest period is short enough.
     """
     return solve(evaluate, [candidates(jd, values, slopes, period=period, usable=usable, bends=bends)])
 
@@ -223,9 +227,21 @@ def sign_changes(
     derivatives = [values, slopes] if bends is None else [values, slopes, bends]
     ends = [np.stack([stack[row, column + side] for stack in derivatives]) for side in (0, 1)]
     left, right = jd[column], jd[column + 1]
-    return Brackets(
-        row, left, right, ends[0][0], ends[1][0], left + hermite_root(ends[0], ends[1], right - left)
-    )
+    guess = left + hermite_root(ends[0], ends[1], right - left)
+    left, right = _off_foreign_roots(left, right, ends)
+    return Brackets(row, left, right, ends[0][0], ends[1][0], guess.clip(left, right))
+
+
+def _off_foreign_roots(left: Floats, right: Floats, ends: Sequence[Floats]) -> tuple[Floats, Floats]:
+    """Move ends that are themselves roots, but another interval's, a little inward.
+
+    Zero counts as positive: a function that leaves a zero upward, or comes down to one, changes its sign
+    somewhere else in between.
+    """
+    nudge = FOREIGN_ROOT_NUDGE * (right - left)
+    left = np.where((ends[0][0] == 0.0) & (ends[0][1] > 0.0), left + nudge, left)
+    right = np.where((ends[1][0] == 0.0) & (ends[1][1] < 0.0), right - nudge, right)
+    return left, right
 
 
 def turns_toward_zero(jd: Floats, values: Floats, slopes: Floats, usable: Bools) -> Turns:

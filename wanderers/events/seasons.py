@@ -18,7 +18,7 @@ from wanderers.ephemeris.sky import Sky
 from wanderers.ephemeris.store import TrackStore
 from wanderers.events import cycles
 from wanderers.events.almanac import time_texts
-from wanderers.events.catalogue import PAD_DAYS, scene_of
+from wanderers.events.catalogue import scene_of
 from wanderers.events.scene import Choice, Scene
 from wanderers.events.search import Brackets, refine
 from wanderers.events.solar_aspects import find_oppositions, find_solar_conjunctions
@@ -26,6 +26,13 @@ from wanderers.events.stations import find_stations
 
 PASS_SAMPLES: Final = 400
 """Longitudes at which the three passes are compared: a loop narrower than 1/400 of its arc is a zigzag."""
+
+SEASON_PAD_DAYS: Final = 2600.0
+"""How far beyond a span the path is followed: Pluto takes up to 1,700 days from first mark to last, and the
+loop before and after must be seen to tell which passage is the first and which the last."""
+
+LOOP_ALLOWANCE: Final = 1.1
+"""How much longer, at most, a neighbouring season's arc is taken to be."""
 
 RUN_SAMPLES: Final = 257
 """Instants at which distance and brightness are sampled before their extremum is refined."""
@@ -96,7 +103,9 @@ def seasons(
         table with ``schema.SEASON_COLUMNS``, in order of the retrograde stations.
     """
     low, high = store.span_jd
-    scene = scene_of(store, max(jd_from - PAD_DAYS, low), min(jd_to + PAD_DAYS, high), Choice(bodies))
+    scene = scene_of(
+        store, max(jd_from - SEASON_PAD_DAYS, low), min(jd_to + SEASON_PAD_DAYS, high), Choice(bodies)
+    )
     middles = _middles(scene)
     parts = []
     for batch in find_stations(scene):
@@ -161,7 +170,7 @@ def _threefold(scene: Scene, frame: Frame, turns: Turns) -> tuple[Floats, Floats
 
     Longitude is unwrapped along the grid. Its running maximum first reaches a level where the longitude
     does; seen from the far end, its running minimum tells when a level is left for good. NaN where the grid,
-    which ends with the kernel, begins beyond the first mark or ends before the last.
+    which ends with the kernel, begins or ends too near to tell.
     """
     body = int(turns.body[0])
     jd = scene.samples.jd
@@ -172,8 +181,10 @@ def _threefold(scene: Scene, frame: Frame, turns: Turns) -> tuple[Floats, Floats
     left = np.searchsorted(np.minimum.accumulate(path[::-1])[::-1], retrograde, side="right")
     start = _crossing(scene, frame, body, direct, (reached - 1, reached), path)
     end = _crossing(scene, frame, body, retrograde, (left - 1, left), path)
-    start[reached == 0] = np.nan
-    end[left == jd.size] = np.nan
+    # Beyond the grid's ends the planet may have been ahead, or behind, by the arc of one more loop.
+    arc = LOOP_ALLOWANCE * (retrograde - direct)
+    start[(reached == 0) | (path[0] + arc >= direct)] = np.nan
+    end[(left == jd.size) | (path[-1] - arc <= retrograde)] = np.nan
     return start, end
 
 

@@ -19,6 +19,8 @@ def find_stations(scene: Scene) -> list[Batch]:
     The rate is that of the apparent longitude itself: light-time, aberration, deflection and nutation all
     change with time, and near a station their rates decide the hour.
     """
+    if scene.planets().size == 0:
+        return []
     return [_stations_in(scene, frame) for frame in Frame]
 
 
@@ -29,7 +31,7 @@ def _stations_in(scene: Scene, frame: Frame) -> Batch:
         longitude = scene.sky.longitude_deg(planets[row], jd, frame, order=2)
         return longitude[1], longitude[2]
 
-    sampled = scene.samples.longitudes_deg(planets.tolist(), frame) if planets.size else np.empty((0, 3, 0))
+    sampled = scene.samples.longitudes_deg(planets.tolist(), frame)
     roots = find_roots(rate, scene.samples.jd, sampled[:, 1], sampled[:, 2])
     body = planets[roots.function]
     return batch(Kind.STATION, frame, roots.jd, body, detail=roots.rising.astype(np.int64), details=DETAILS)
