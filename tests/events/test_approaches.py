@@ -1,4 +1,4 @@
-"""Least and greatest separations: appulses and greatest elongations, and which appulses are quasi."""
+"""Least and greatest separations: appulses, greatest elongations, and which appulses are quasi."""
 
 from __future__ import annotations
 
@@ -59,8 +59,8 @@ def test_separation_is_least_at_an_appulse(direct: Direct, appulses: pl.DataFram
 def test_square_of_the_separation_turns_within_the_promised_second(
     direct: Direct, appulses: pl.DataFrame
 ) -> None:
-    # Its vertex by five instants over two hours (Abramowitz and Stegun 1964, 25.3.6 and 25.3.24). Pairs of slow
-    # planets are left to the dense search: their separation changes too little within hours.
+    # Its vertex by five instants over two hours (Abramowitz and Stegun 1964, 25.3.6 and 25.3.24). Pairs of
+    # slow planets are left to the dense search: their separation changes too little within hours.
     some = appulses.filter(~appulses["body"].is_in([body.value for body in BODIES[4:]]))
     h = HOUR_DAYS / 2.0
     f = [separations(direct, some, n * h) ** 2 for n in (-2.0, -1.0, 0.0, 1.0, 2.0)]
@@ -148,7 +148,7 @@ def path(direct: Direct, name: str, jd: Floats) -> Floats:
 
 
 def lonely_by_definition(direct: Direct, met: pl.DataFrame, pair: tuple[str, str]) -> list[bool]:
-    """Whether no conjunction lies between the greatest separations beside each appulse of a pair."""
+    """Whether no conjunction lies between the greatest separations beside a pair's appulses."""
     grid = np.arange(SPAN[0] - 900.0, SPAN[1] + 900.0, 0.5)
     apart = angle_rad(path(direct, pair[0], grid), path(direct, pair[1], grid))
     greatest = grid[1:-1][(apart[1:-1] > apart[:-2]) & (apart[1:-1] >= apart[2:])]

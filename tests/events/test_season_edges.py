@@ -54,18 +54,10 @@ def test_a_season_without_a_mark_has_no_threefold_length(both: pl.DataFrame) -> 
     assert (both["threefold_days"].is_null() == unknown).all()
 
 
-NULLS = (
-    "a season is searched no more than 1100 days beyond the span asked; where that is too little to tell, as for "
-    "Pluto, its marks are null though the kernel holds them"
-)
-
-
-@pytest.mark.xfail(strict=True, reason=NULLS)
 def test_the_longer_kernel_knows_every_mark(both: pl.DataFrame) -> None:
     assert all(both[f"{mark}_long"].null_count() == 0 for mark in MARKS)
 
 
-@pytest.mark.xfail(strict=True, reason=NULLS)
 def test_a_season_is_the_same_whatever_span_it_was_asked_in(store: TrackStore) -> None:
     years = 2_469_807.5 + 365.25 * np.arange(6)  # 2050 to 2055
     whole = seasons(store, years[0], years[-1], frames=tuple(Frame))
