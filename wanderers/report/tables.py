@@ -180,7 +180,7 @@ def _describe_rest(kind: str, body: str, other: str, detail: str) -> str:
         "gathering": f"Gathering of {detail.replace('+', ', ')}",
         "constellation_entry": f"{body} leaves {detail}",
         "node": f"{body} {detail} node",
-        "occultation": f"{body} hides {other}",
+        "occultation": f"{body} – {other} occultation",
         "transit": f"{body} transit of the Sun",
         "ring_plane_crossing": f"{body}'s ring plane crosses the {detail.capitalize()}",
     }
