@@ -45,7 +45,9 @@ def compared(store: TrackStore, sky: Sky, years: tuple[str, str], *, moon: bool)
     theirs = run(sky, span, names, moon=moon, bodies=[body.value for body in bodies])
     limit = pl.when(pl.col("body") == "moon").then(6.0).otherwise(10.0)
     theirs = theirs.filter((pl.col("kind") != "appulse") | (pl.col("separation_deg") < limit))
-    alike = ours.filter(pl.col("kind").is_in(theirs["kind"].unique().to_list()))
+    # The dense search does not follow the Sun's own distance.
+    of_the_sun = (pl.col("body") == "sun") & pl.col("kind").is_in(["perigee", "apogee"])
+    alike = ours.filter(pl.col("kind").is_in(theirs["kind"].unique().to_list()) & ~of_the_sun)
     return match(alike, theirs, span=span)
 
 
