@@ -16,7 +16,6 @@ from wanderers.ephemeris.bodies import PLANETS
 
 YEARS = ("--from", "2027", "--to", "2030")
 
-
 Rows = Callable[..., pl.DataFrame]
 
 

@@ -77,7 +77,7 @@ def command(
     Example: all stations and conjunctions of Mars in 2027
         wanderers almanac --from 2027 --to 2028 --body mars --kind station --kind conjunction
     """
-    require_in_kernel(workplace, span)
+    require_in_kernel(workplace, span, bodies)
     limits = Limits() if within is None else Limits(within, within, within, within)
     choice = Choice(bodies, STARS_FOR[stars], limits)
     query = Query(span.jd_from, span.jd_to, frozenset(kinds), frozenset(frames), choice)

@@ -94,7 +94,7 @@ def command(
     Example: every gathering of all five naked-eye planets within 25 degrees in the kernel
         wanderers gatherings --from 1550 --to 2650 --at-least 5 --within 25
     """
-    require_in_kernel(workplace, span)
+    require_in_kernel(workplace, span, bodies)
     if at_least > len(bodies):
         raise click.UsageError(
             f"--at-least {at_least} is more than the {len(bodies)} bodies named by --bodies"

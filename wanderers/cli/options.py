@@ -210,10 +210,13 @@ def show_progress(done: int, total: int) -> None:
     )
 
 
-def require_in_kernel(workplace: Workplace, span: Span) -> None:
-    """Check that a span lies within the kernel in use.
+def require_in_kernel(workplace: Workplace, span: Span, bodies: tuple[Body, ...] = BODIES) -> None:
+    """Check that a span, and the bodies that were named, lie within the kernel in use.
 
     Raises:
-        SpanError: it does not; the message gives the kernel's span.
+        SpanError: the span does not; the message gives the kernel's span.
+        KernelError: a body named is not in the kernel.
     """
+    if bodies != BODIES:
+        kernels.require_bodies(workplace.store.kernel, bodies)
     kernels.require_span(workplace.store.kernel, span.jd_from, span.jd_to)

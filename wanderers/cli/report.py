@@ -71,7 +71,7 @@ def command(
     )
     folder = out or REPORTS / request.stem
     require_replaceable(folder)
-    require_in_kernel(workplace, span)
+    require_in_kernel(workplace, span, bodies)
     progress = progress_line(workplace.quiet)
     write_report(gather(workplace.store, request, progress), folder, progress)
     progress("")

@@ -40,7 +40,7 @@ def command(
     Example: the next seasons of Mars and Jupiter
         wanderers seasons --from 2027 --to 2032 --body mars --body jupiter
     """
-    require_in_kernel(workplace, span)
+    require_in_kernel(workplace, span, bodies)
     planets = tuple(body for body in bodies if body in PLANETS)
     table = seasons(workplace.store, span.jd_from, span.jd_to, bodies=planets, frames=frames)
     write_table(table, destination, seasons_heading(table, workplace.store.kernel.name))

@@ -71,6 +71,6 @@ def command(
     Example: Mars every six hours in January 2027, as CSV
         wanderers track mars --from 2027-01 --to 2027-02 --step 6h --format csv
     """
-    require_in_kernel(workplace, span)
+    require_in_kernel(workplace, span, (body,))
     table = time_series(workplace.store, body, span.jd_from, span.jd_to, step, frame)
     write_table(table, destination, track_heading(table, body, workplace.store.kernel.name))
