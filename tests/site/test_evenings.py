@@ -71,7 +71,7 @@ def test_an_instant_belongs_to_the_evening_that_holds_it() -> None:
     found = evenings(HILL, day("2027-03-05"), day("2027-03-08"))
     edges = found.edges_jd
     instants = np.array([edges[0] - 1e-6, edges[0], edges[1] - 1e-6, edges[1], edges[-1]])
-    assert found.index_of(instants).tolist() == [-1, 0, 0, 1, found.count]
+    assert found.index_of(instants).tolist() == [-1, 0, 0, 1, -1]
 
 
 def test_the_grid_of_an_evening_does_not_depend_on_its_neighbours() -> None:
@@ -79,3 +79,13 @@ def test_the_grid_of_an_evening_does_not_depend_on_its_neighbours() -> None:
     among = evenings(HILL, day("2027-03-20"), day("2027-04-10")).grid(12)
     start = int(np.searchsorted(among, alone[0]))
     assert (among[start : start + 13] == alone).all()
+
+
+def test_evenings_left_out_leave_gaps_and_change_nothing_else() -> None:
+    whole = evenings(HILL, day("2027-03-20"), day("2027-04-10"))
+    some = whole.chosen(np.array([2, 3, 9]))
+    np.testing.assert_array_equal(some.index_of(whole.middle_jd[[1, 2, 3, 4, 9]]), [-1, 0, 1, -1, 2])
+    grid = some.grid(12)
+    assert grid.size == 2 * 12 + 1 + 12 + 1  # the two that meet share a noon
+    assert np.all(np.diff(grid) > 0.0)
+    assert np.isin(grid, whole.grid(12)).all()

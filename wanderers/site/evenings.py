@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
-from wanderers.arrays import Floats, Ints
+from wanderers.arrays import Bools, Floats, Ints
 from wanderers.ephemeris.timescales import jd_tt_from_utc
 from wanderers.site.places import Site
 from wanderers.site.zones import UNIX_EPOCH_JD, Days, Zone, zone_named
@@ -22,20 +22,22 @@ POLAR_DEG: Final = 89.0
 
 @dataclass(frozen=True, slots=True)
 class Evenings:
-    """Consecutive evenings at a site.
+    """Evenings at a site, in order of time; between two of them others may be left out.
 
     Attributes:
         site: where.
         zone: the clock.
         days: local calendar date on which each begins, datetime64[D], shape (n,).
-        edges_jd: TT at each noon, the last one's end included, shape (n + 1,), rising.
+        start_jd: TT at the noon at which each begins, shape (n,), rising.
+        end_jd: TT at the noon at which each ends, shape (n,).
         by_sun: whether noon is that of the mean Sun, because the clock is far off it.
     """
 
     site: Site
     zone: Zone
     days: Days
-    edges_jd: Floats
+    start_jd: Floats
+    end_jd: Floats
     by_sun: bool = False
 
     @property
@@ -43,18 +45,43 @@ class Evenings:
         """How many."""
         return int(self.days.size)
 
-    def index_of(self, jd: Floats) -> Ints:
-        """Return the evening of each instant, shape (n,); -1 and ``count`` before and after all."""
-        return np.asarray(np.searchsorted(self.edges_jd, jd, side="right") - 1)
+    @property
+    def edges_jd(self) -> Floats:
+        """TT at every noon, rising: n + 1 where none is left out."""
+        return np.union1d(self.start_jd, self.end_jd)
 
-    def grid(self, steps: int) -> Floats:
-        """Return instants that cut every evening into equal steps, shape (count * steps + 1,).
+    @property
+    def middle_jd(self) -> Floats:
+        """TT in the middle of each, shape (n,)."""
+        return np.asarray((self.start_jd + self.end_jd) / 2.0)
+
+    def chosen(self, which: Bools | Ints | slice) -> Evenings:
+        """Return some of them."""
+        days, start, end = self.days[which], self.start_jd[which], self.end_jd[which]
+        return replace(self, days=days, start_jd=start, end_jd=end)
+
+    def index_of(self, jd: Floats) -> Ints:
+        """Return the evening of each instant, shape (n,); -1 where it is in none."""
+        if self.count == 0:
+            return np.full(np.shape(jd), -1)
+        index = np.searchsorted(self.start_jd, jd, side="right") - 1
+        return np.asarray(np.where((index >= 0) & (jd < self.end_jd[index]), index, -1))
+
+    def raster(self, steps: int) -> Floats:
+        """Return the beginnings of equal steps of every evening, shape (count, steps).
 
         Each evening is cut by itself, so that what is found in it does not depend on where a span begins.
         """
         parts = np.arange(steps) / steps
-        inside = self.edges_jd[:-1, None] + np.diff(self.edges_jd)[:, None] * parts
-        return np.append(inside.ravel(), self.edges_jd[-1])
+        return self.start_jd[:, None] + (self.end_jd - self.start_jd)[:, None] * parts
+
+    def grid(self, steps: int) -> Floats:
+        """Return the raster with every evening's end, rising, shape (count * steps + 1,) where none is left out."""
+        with_ends = np.column_stack([self.raster(steps), self.end_jd])
+        met_again = np.append(self.start_jd[1:] == self.end_jd[:-1], False)
+        kept = np.ones(with_ends.shape, dtype=np.bool_)
+        kept[:, -1] = ~met_again
+        return with_ends[kept]
 
 
 def evenings(site: Site, first: np.datetime64, end: np.datetime64) -> Evenings:
@@ -70,7 +97,8 @@ def evenings(site: Site, first: np.datetime64, end: np.datetime64) -> Evenings:
         noons = np.asarray(UNIX_EPOCH_JD + days.astype(np.int64) + 0.5 - site.longitude_deg / 360.0)
     lasts = np.diff(noons) > 0.5
     kept = np.append(lasts, True)
-    return Evenings(site, zone, days[:-1][lasts], jd_tt_from_utc(noons[kept]), by_sun)
+    edges = jd_tt_from_utc(noons[kept])
+    return Evenings(site, zone, days[:-1][lasts], edges[:-1], edges[1:], by_sun)
 
 
 def _off_the_sun(site: Site, days: npt.NDArray[np.datetime64], noons_jd_utc: Floats) -> bool:

@@ -53,7 +53,7 @@ class Passages:
 def passages(some: Evenings, jd: Floats) -> Passages:
     """Sort rising instants, shape (n,), into evenings."""
     evening = some.index_of(jd)
-    inside = (evening >= 0) & (evening < some.count)
+    inside = evening >= 0
     evening, jd = evening[inside], jd[inside]
     order = np.arange(evening.size) - np.searchsorted(evening, evening)
     out = np.full((2, some.count), np.nan)
@@ -72,7 +72,7 @@ def ledger(sky: Sky, some: Evenings, bodies: Sequence[int], rules: Rules) -> pl.
     culminations = find_culminations(sky, some.site, grid, bodies)
     bounds = windows.bounds_of(some, bodies, crossings, first_bound)
     tried = windows.dark_moments(sky, some, windows.dark_stretches(sky, bounds, rules))
-    at_start = heaven(sky, some.site, some.edges_jd[:-1])
+    at_start = heaven(sky, some.site, some.start_jd)
     sun = _sun_columns(some, crossings) | {"sun_up": _is_up(sky, at_start, SUN)}
     parts = []
     for index, body in enumerate(bodies):
@@ -133,7 +133,7 @@ def _window_columns(best: windows.Windows) -> dict[str, Floats]:
 
 def _look(sky: Sky, some: Evenings, body: int, best_jd: Floats, rules: Rules) -> dict[str, Floats]:
     """Describe a body at the best moments; where there is none in the middle of the evening, for cautions."""
-    jd = np.where(np.isnan(best_jd), (some.edges_jd[:-1] + some.edges_jd[1:]) / 2.0, best_jd)
+    jd = np.where(np.isnan(best_jd), some.middle_jd, best_jd)
     over = heaven(sky, some.site, jd)
     seen = view_body(sky, over, body)
     looks = appearance(sky, np.full(jd.size, body), jd)

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import replace
 from typing import Final
 
 import numpy as np
@@ -48,7 +47,7 @@ def nights(
         UnknownNameError: the site's zone does not exist.
     """
     whole = evenings(site, *span)
-    kernels.require_span(store.kernel, float(whole.edges_jd[0]), float(whole.edges_jd[-1]))
+    kernels.require_span(store.kernel, float(whole.start_jd[0]), float(whole.end_jd[-1]))
     numbers = sorted({body.order for body in bodies if body in store.kernel.bodies})
     parts = [_night_table(store, some, numbers, rules or Rules()) for some in _cut(whole)]
     return pl.concat(parts) if parts else pl.DataFrame(schema=columns.NIGHT_COLUMNS)
@@ -57,18 +56,14 @@ def nights(
 def _cut(whole: Evenings) -> list[Evenings]:
     """Cut many evenings into handfuls, so that memory stays small."""
     return [
-        replace(
-            whole,
-            days=whole.days[start : start + EVENINGS_AT_ONCE],
-            edges_jd=whole.edges_jd[start : start + EVENINGS_AT_ONCE + 1],
-        )
-        for start in range(0, whole.count, EVENINGS_AT_ONCE)
+        whole.chosen(slice(first, first + EVENINGS_AT_ONCE))
+        for first in range(0, whole.count, EVENINGS_AT_ONCE)
     ]
 
 
 def _night_table(store: TrackStore, some: Evenings, bodies: Sequence[int], rules: Rules) -> pl.DataFrame:
     """Describe a handful of evenings."""
-    sky = Sky(store.tracks(float(some.edges_jd[0]), float(some.edges_jd[-1])))
+    sky = Sky(store.tracks(float(some.start_jd[0]), float(some.end_jd[-1])))
     numbers = ledger(sky, some, bodies, rules).sort("evening", "body_number")
     table = numbers.with_columns(**_words(some, numbers), **_times(some, numbers))
     table = table.with_columns(

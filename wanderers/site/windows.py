@@ -138,7 +138,7 @@ def watchable_stretches(sky: Sky, bounds: Bounds, index: int, rules: Rules) -> S
 
 def dark_moments(sky: Sky, evenings: Evenings, dark: Stretches) -> Moments:
     """Return the moments to be tried: the raster within the dark stretches, and their ends."""
-    raster = evenings.grid(RASTER_STEPS)[:-1]
+    raster = evenings.raster(RASTER_STEPS).ravel()
     evening = np.repeat(np.arange(evenings.count), RASTER_STEPS)
     inside = dark.holding(evening, raster) >= 0
     jd = np.concatenate([raster[inside], dark.start_jd, dark.end_jd])
@@ -259,7 +259,8 @@ def _between(evenings: Evenings, *crossings_jd: Floats) -> Stretches:
     """Cut the evenings at instants."""
     cuts = np.unique(np.concatenate([evenings.edges_jd, *crossings_jd]))
     start, end = cuts[:-1], cuts[1:]
-    return Stretches(evenings.index_of((start + end) / 2.0), start, end)
+    evening = evenings.index_of((start + end) / 2.0)
+    return Stretches(evening, start, end).chosen(evening >= 0)
 
 
 def _magnitudes(sky: Sky, body: int, evenings: Evenings) -> _Magnitudes:
