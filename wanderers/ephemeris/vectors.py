@@ -86,6 +86,13 @@ def latitude_deg(a: Floats) -> Floats:
     return out
 
 
+def unit_vectors(longitude_deg: Floats, latitude_deg: Floats) -> Floats:
+    """Return unit vectors of directions given by two angles, shape (3, n)."""
+    longitude, latitude = np.radians(longitude_deg), np.radians(latitude_deg)
+    along = np.cos(latitude)
+    return np.stack([along * np.cos(longitude), along * np.sin(longitude), np.sin(latitude)])
+
+
 def separation_deg(a: Floats, b: Floats) -> Floats:
     """Return the angle between unit vectors, shape (3, n) each, exact for small and large angles.
 

@@ -54,6 +54,21 @@ SITE_COLUMNS: Final[Columns] = {
 }
 """What a site adds to a table of events: there ``local_date`` and ``local_time`` are the instant's."""
 
+EVENT_VIEW_COLUMNS: Final[Columns] = {
+    **SITE_COLUMNS,
+    "seen_separation_deg": pl.Float64,
+    "seen_placement": pl.String,
+    "upper": pl.String,
+    "left": pl.String,
+    "other_altitude_deg": pl.Float64,
+    "other_magnitude": pl.Float64,
+    "instant_altitude_deg": pl.Float64,
+    "instant_sun_altitude_deg": pl.Float64,
+}
+"""All that a site adds to a table of events. At ``best_utc``: how far ``other`` stands from ``body``, on
+which side of it, which of them is upper and which left with the horizon level, and the other's altitude and
+magnitude outside the air; at the instant itself: the altitudes of ``body``, as seen, and of the Sun."""
+
 SUN_TIMES: Final = (
     "sunset",
     "civil_dusk",
@@ -133,6 +148,59 @@ CITY_COLUMNS: Final[Columns] = {
     "zone": pl.String,
 }
 """Places of the gazetteer."""
+
+
+LINEUP_COLUMNS: Final[Columns] = {
+    "first_evening": pl.String,
+    "last_evening": pl.String,
+    "evenings": pl.Int64,
+    "bodies": pl.String,
+    "body_count": pl.Int64,
+    "best_evening": pl.String,
+    "best_utc": pl.String,
+    "best_local": pl.String,
+    "morning_or_evening": pl.String,
+    "arc_deg": pl.Float64,
+    "from_compass": pl.String,
+    "to_compass": pl.String,
+    "from_body": pl.String,
+    "to_body": pl.String,
+    "lowest_altitude_deg": pl.Float64,
+    "lowest_body": pl.String,
+    "highest_altitude_deg": pl.Float64,
+    "highest_body": pl.String,
+    "faintest_body": pl.String,
+    "faintest_dimmed_magnitude": pl.Float64,
+    "elongation_deg": pl.Float64,
+    "sun_altitude_deg": pl.Float64,
+    "moon_altitude_deg": pl.Float64,
+    "moon_illuminated": pl.Float64,
+    "verdict": pl.String,
+    "places": pl.String,
+    "evenings_with_most": pl.Int64,
+    "evenings_before_midnight": pl.Int64,
+    "evenings_after_midnight": pl.Int64,
+    "first_utc": pl.String,
+    "first_local": pl.String,
+    "first_bodies": pl.String,
+    "last_utc": pl.String,
+    "last_local": pl.String,
+    "last_bodies": pl.String,
+    "cut_at_start": pl.Boolean,
+    "cut_at_end": pl.Boolean,
+    "site": pl.String,
+    "zone": pl.String,
+    "sunset_local": pl.String,
+    "sunrise_local": pl.String,
+    "caution": pl.String,
+}
+"""One row a run of evenings on which enough bodies stand up at one moment. The bodies (joined by ``+``) and all
+angles are those at ``best_utc``; ``arc_deg`` is the widest angle between two of them, which stand left (``from``)
+and right (``to``) for who faces them. ``elongation_deg`` is that of the one nearest the Sun, ``verdict`` that of
+the worst seen. ``first`` and ``last`` are the best moments of the first and the last evening.
+``evenings_with_most`` counts the evenings with as many bodies as the best, ``evenings_before_midnight`` those with
+such a moment while the Sun is west of the meridian, ``evenings_after_midnight`` while it is east. ``cut_at_start``
+and ``cut_at_end``: the run reaches the border of the span, so it may be longer."""
 
 
 def arranged(table: pl.DataFrame, columns: Columns) -> pl.DataFrame:

@@ -11,7 +11,7 @@ from typing import Final
 import numpy as np
 
 from wanderers import constants
-from wanderers.arrays import Bools, Floats
+from wanderers.arrays import Bools, Floats, Ints
 from wanderers.ephemeris.chebyshev import Series
 from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.sky import Sky, rotation_from
@@ -54,8 +54,8 @@ class Vantage:
         """Barycentric velocity of the site, au/day, shape (3, n)."""
         return np.asarray(self.earth[1] + self.position[1])
 
-    def chosen(self, keep: Bools) -> Vantage:
-        """Return the instants where ``keep`` is true."""
+    def chosen(self, keep: Bools | Ints) -> Vantage:
+        """Return some of the instants."""
         parts = (self.jd, self.to_horizon, self.position, self.earth)
         return Vantage(self.site, *(part[..., keep] for part in parts))
 

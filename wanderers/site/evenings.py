@@ -67,6 +67,13 @@ class Evenings:
         index = np.searchsorted(self.start_jd, jd, side="right") - 1
         return np.asarray(np.where((index >= 0) & (jd < self.end_jd[index]), index, -1))
 
+    def first_in(self, jd: Floats) -> Floats:
+        """Return the first of some instants in each evening, shape (count,), NaN where there is none."""
+        out = np.full(self.count, np.nan)
+        evening = self.index_of(jd)
+        np.fmin.at(out, evening[evening >= 0], jd[evening >= 0])
+        return out
+
     def raster(self, steps: int) -> Floats:
         """Return the beginnings of equal steps of every evening, shape (count, steps).
 
@@ -76,7 +83,7 @@ class Evenings:
         return self.start_jd[:, None] + (self.end_jd - self.start_jd)[:, None] * parts
 
     def grid(self, steps: int) -> Floats:
-        """Return the raster with every evening's end, rising, shape (count * steps + 1,) where none is left out."""
+        """Return the raster with every evening's end, rising; where two evenings meet, their noon once."""
         with_ends = np.column_stack([self.raster(steps), self.end_jd])
         met_again = np.append(self.start_jd[1:] == self.end_jd[:-1], False)
         kept = np.ones(with_ends.shape, dtype=np.bool_)

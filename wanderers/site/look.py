@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Final
+from typing import Final, TypeVar
 
 import numpy as np
 
-from wanderers.arrays import Bools, Floats
+from wanderers.arrays import Bools, Floats, Ints
 from wanderers.ephemeris.appearance import Triangle
 from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.sky import SUN, Sky
@@ -42,8 +42,8 @@ class Heaven:
     moon_altitude_deg: Floats
     moon_phase_angle_deg: Floats
 
-    def chosen(self, keep: Bools) -> Heaven:
-        """Return the instants where ``keep`` is true."""
+    def chosen(self, keep: Bools | Ints) -> Heaven:
+        """Return some of the instants."""
         moon = None if self.moon is None else self.moon.chosen(keep)
         angles = (self.sun_altitude_deg, self.moon_altitude_deg, self.moon_phase_angle_deg)
         return Heaven(self.at.chosen(keep), self.sun.chosen(keep), moon, *(angle[keep] for angle in angles))
@@ -64,6 +64,18 @@ class View:
     altitude_deg: Floats
     lights: Lights
     distance_au: Floats
+
+    def chosen(self, keep: Bools | Ints) -> View:
+        """Return some of the instants."""
+        place, lights = _chosen(self.place, keep), _chosen(self.lights, keep)
+        return View(place, self.altitude_deg[keep], lights, self.distance_au[keep])
+
+
+Part = TypeVar("Part", Horizontal, Lights)
+
+
+def _chosen(part: Part, keep: Bools | Ints) -> Part:
+    return type(part)(*(getattr(part, name)[keep] for name in part.__slots__))
 
 
 def heaven(sky: Sky, site: Site, jd: Floats) -> Heaven:

@@ -36,8 +36,8 @@ class Sight:
     direction: Floats
     distance_au: Floats
 
-    def chosen(self, keep: Bools) -> Sight:
-        """Return the instants where ``keep`` is true."""
+    def chosen(self, keep: Bools | Ints) -> Sight:
+        """Return some of the instants."""
         return Sight(self.direction[..., keep], self.distance_au[keep])
 
 
@@ -59,7 +59,9 @@ class Horizontal:
 
 
 def see_body(sky: Sky, at: Vantage, body: int) -> Sight:
-    """See one body, by number, at all instants."""
+    """See one target, by number, at all instants."""
+    if body >= FIRST_STAR:
+        return see_each(sky, at, np.full(at.jd.size, body))
     position = _track(sky, BODIES[body], at.jd)
     sun = position if body == SUN else _track(sky, Body.SUN, at.jd)
     return _seen(position, sun[0], at, np.full(at.jd.size, body == SUN))
@@ -85,6 +87,12 @@ def see_each(sky: Sky, at: Vantage, target: Ints) -> Sight:
         sight.direction[..., bodies] = some.direction
         sight.distance_au[bodies] = some.distance_au
     return sight
+
+
+def see_fixed(at: Vantage, direction: Floats) -> Sight:
+    """See what is too far for parallax and hardly moves, at apparent geocentric directions, shape (3, n)."""
+    moved = aberrated(direction, at.position[1])
+    return Sight(np.stack([moved, np.zeros_like(moved)]), np.full(at.jd.size, np.inf))
 
 
 def _track(sky: Sky, body: Body, jd: Floats) -> Floats:

@@ -13,7 +13,7 @@ import numpy as np
 
 from wanderers import constants
 from wanderers.arrays import Floats, Ints
-from wanderers.ephemeris.bodies import BODIES, EQUATORIAL_RADIUS_KM, Body
+from wanderers.ephemeris.bodies import EQUATORIAL_RADIUS_KM, Body
 from wanderers.ephemeris.sky import SUN, Sky
 from wanderers.events.search import Roots, find_roots
 from wanderers.site.earth import Vantage, vantage
@@ -55,10 +55,10 @@ class Level:
 
 
 def rise_level(body: int) -> Level:
-    """Return the level at which a body rises and sets by the almanacs' convention."""
+    """Return the level at which a body or star rises and sets by the almanacs' convention."""
     if body == SUN:
         return Level(body, SUN_RISE_DEG)
-    return Level(body, RISE_DEG, by_limb=BODIES[body] is Body.MOON)
+    return Level(body, RISE_DEG, by_limb=body == Body.MOON.order)
 
 
 def steps_for(levels: Sequence[Level]) -> int:

@@ -136,14 +136,14 @@ def watchable_stretches(sky: Sky, bounds: Bounds, index: int, rules: Rules) -> S
     return stretches.chosen(dark & high & (bounds.bodies[index] != SUN))
 
 
-def dark_moments(sky: Sky, evenings: Evenings, dark: Stretches) -> Moments:
+def dark_moments(sky: Sky, evenings: Evenings, dark: Stretches, steps: int = RASTER_STEPS) -> Moments:
     """Return the moments to be tried: the raster within the dark stretches, and their ends."""
-    raster = evenings.raster(RASTER_STEPS).ravel()
-    evening = np.repeat(np.arange(evenings.count), RASTER_STEPS)
+    raster = evenings.raster(steps).ravel()
+    evening = np.repeat(np.arange(evenings.count), steps)
     inside = dark.holding(evening, raster) >= 0
     jd = np.concatenate([raster[inside], dark.start_jd, dark.end_jd])
     evening = np.concatenate([evening[inside], dark.evening, dark.evening])
-    order = np.lexsort((evening, jd))
+    order = np.lexsort((jd, evening))
     return Moments(evening[order], heaven(sky, evenings.site, jd[order]))
 
 

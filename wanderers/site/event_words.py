@@ -1,0 +1,163 @@
+"""Verdicts on events in plain words: how well all that must be seen shows, or what keeps it from that."""
+
+from __future__ import annotations
+
+from typing import Final
+
+import numpy as np
+import polars as pl
+
+from wanderers.arrays import Bools, Floats, Ints
+from wanderers.ephemeris.bodies import Body
+from wanderers.events.kinds import Kind
+from wanderers.events.ledger import target_names
+from wanderers.site import clock, reasons
+from wanderers.site.airmass import dimmed_magnitude
+from wanderers.site.compass import POINTS, compass_point
+from wanderers.site.party import Members, of_member
+from wanderers.site.prospects import NO_ROW, Parties, Prospects
+from wanderers.site.sightings import Watch, look, look_exactly
+from wanderers.site.twilight import STEPS_A_DAY, find_crossings, rise_level
+from wanderers.site.visibility import VERDICTS, Verdict, verdicts
+
+NEVER_TOGETHER: Final = "never high together in a sky dark enough"
+OF_THE_SUN: Final = (Kind.SEASON_POINT.value, Kind.CONSTELLATION_ENTRY.value)
+SUN_INSTANT: Final = "an instant of the Sun's path, nothing to look at"
+TOGETHER: Final = {2: "both ", 3: "all three ", 4: "all four ", 5: "all five "}
+
+
+def verdict_table(
+    watched: Watch, parties: Parties, best: Prospects, members: Members, events: pl.DataFrame
+) -> pl.DataFrame:
+    """Return verdict, reason and caution of every event.
+
+    Args:
+        watched: from where.
+        parties: what must be seen together.
+        best: the best evenings.
+        members: how all stand at the best moments, or in the middle of the nearest evenings where none is.
+        events: the events, for what they are.
+
+    Returns:
+        columns ``verdict``, ``verdict_reason``, ``caution``.
+    """
+    table = _circumstances(watched, parties, best, members).with_columns(events["kind"])
+    reason = reasons.verdict_reason(watched.rules)
+    alone = pl.col("count") == 1
+    named = pl.concat_str(pl.col("name"), pl.lit(": "), reason)
+    seen = pl.col("verdict") == Verdict.NAKED_EYE.value
+    together = pl.concat_str(
+        pl.col("count").replace_strict(TOGETHER, default="all ", return_dtype=pl.String), reason
+    )
+    words = (
+        pl.when((pl.col("body") == Body.SUN.value) & pl.col("kind").is_in(OF_THE_SUN))
+        .then(pl.lit(SUN_INSTANT))
+        .when(pl.col("apart"))
+        .then(pl.lit(NEVER_TOGETHER))
+        .when(alone)
+        .then(reason)
+        .when(seen)
+        .then(together)
+        .otherwise(named)
+    )
+    return table.select(
+        "verdict", words.alias("verdict_reason"), reasons.caution(watched.rules).alias("caution")
+    )
+
+
+def _circumstances(watched: Watch, parties: Parties, best: Prospects, members: Members) -> pl.DataFrame:
+    """Return what the words are made of: the columns that :mod:`wanderers.site.reasons` reads.
+
+    They are those of the member that decides: the one that shows least, or that is never up.
+    """
+    can = np.isfinite(best.best_jd)
+    blocked = ~can & (best.blocker != NO_ROW)
+    deciding = np.where(blocked, best.blocker, members.faintest)
+    target = np.take_along_axis(parties.member, deciding[:, None], axis=1)[:, 0]
+    margin, altitude = of_member(members.margin, deciding), _least(members.altitude_deg)
+    verdict = np.where(
+        can, verdicts(margin, watched.rules.criteria, members.sun_altitude_deg), len(VERDICTS) - 1
+    )
+    magnitude = of_member(members.magnitude, deciding)
+    extinction = watched.rules.criteria.extinction_at(watched.evenings.site.elevation_m)
+    azimuth = of_member(members.azimuth_deg, deciding)
+    numbers = {
+        "altitude_deg": altitude,
+        "magnitude": magnitude,
+        "dimmed_magnitude": dimmed_magnitude(
+            magnitude, of_member(members.altitude_deg, deciding), extinction
+        ),
+        "sun_altitude_deg": members.sun_altitude_deg,
+        "moon_altitude_deg": members.moon_altitude_deg,
+        "moon_illuminated": members.moon_illuminated,
+        "elongation_deg": _least(
+            np.where(parties.member == Body.SUN.order, np.nan, members.sun_separation_deg)
+        ),
+        "margin_sky": of_member(members.margin_sky, deciding),
+        "margin_arcus": of_member(members.margin_arcus, deciding),
+        "margin_crescent": of_member(members.margin_crescent, deciding),
+        "margin": margin,
+        "best_jd": best.best_jd,
+        "sunset_jd": watched.sunset_jd[best.evening],
+        "sunrise_jd": watched.sunrise_jd[best.evening],
+        **_passages(watched, best.evening, target, blocked | ~can),
+    }
+    names = pl.Series(target_names())
+    table = pl.DataFrame({name: pl.Series(values, nan_to_null=True) for name, values in numbers.items()})
+    name = names.gather(target)
+    zone = watched.evenings.zone
+    return table.with_columns(
+        body=name,
+        name=pl.select(
+            pl.when(name.str.to_lowercase() == name).then(name.str.to_titlecase()).otherwise(name)
+        ).to_series(),
+        count=pl.Series(members.there.sum(axis=1)),
+        apart=pl.Series(~can & ~blocked),
+        verdict=pl.Series([verdict.value for verdict in VERDICTS]).gather(verdict),
+        compass=pl.Series(POINTS).gather(pl.Series(compass_point(azimuth))),
+        up=pl.col("up") > 0.5,
+        sun_up=pl.Series(members.sun_altitude_deg > 0.0),
+        sunset_clock=clock.local_minutes(zone, numbers["sunset_jd"]),
+        sunrise_clock=clock.local_minutes(zone, numbers["sunrise_jd"]),
+    )
+
+
+def _passages(watched: Watch, evening: Ints, target: Ints, wanted: Bools) -> dict[str, Floats]:
+    """Return when targets rise and set on evenings, how high they climb in the dark, whether they are up."""
+    out = {name: np.full(evening.size, np.nan) for name in ("rise_jd", "set_jd", "highest_deg", "up")}
+    (row,) = np.nonzero(wanted)
+    if row.size == 0:
+        return out
+    seen = look(watched, evening[row], target[row])
+    place = seen.place_of(evening[row], target[row])
+    out["highest_deg"][row] = seen.highest_deg()[place]
+    for number in np.unique(target[row]).tolist():
+        own = row[target[row] == number]
+        rise, sets, up = _rise_and_set(watched, evening[own], number)
+        out["rise_jd"][own], out["set_jd"][own], out["up"][own] = rise, sets, up
+    return out
+
+
+def _rise_and_set(watched: Watch, evening: Ints, target: int) -> tuple[Floats, Floats, Floats]:
+    """Return when a target first rises and sets in evenings, and whether it is up as they begin, (k,)."""
+    which, place = np.unique(evening, return_inverse=True)
+    some = watched.evenings.chosen(which)
+    found = find_crossings(watched.sky, some.site, some.grid(STEPS_A_DAY), [rise_level(target)])
+    rise, sets = (some.first_in(found.jd[up]) for up in (found.rising, ~found.rising))
+    up = np.where(np.isnan(rise), np.isfinite(sets), np.isfinite(sets) & (sets < rise))
+    always = np.isnan(rise) & np.isnan(sets)
+    if always.any():
+        up[always] = _stands_up(watched, target, some.middle_jd[always])
+    return rise[place], sets[place], up[place].astype(np.float64)
+
+
+def _stands_up(watched: Watch, target: int, jd: Floats) -> Bools:
+    """Return whether a target that neither rises nor sets is up, shape (k,)."""
+    _, seen, _, _ = look_exactly(watched, np.full(jd.size, target), jd)
+    return np.asarray(seen.place.airless_altitude_deg > rise_level(target).airless_altitude_deg)
+
+
+def _least(values: Floats) -> Floats:
+    """Return the least of each party's values, shape (n,), NaN where it has none."""
+    least = np.where(np.isnan(values), np.inf, values).min(axis=1)
+    return np.where(np.isinf(least), np.nan, least)
