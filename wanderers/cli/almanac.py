@@ -4,89 +4,67 @@ from __future__ import annotations
 
 import click
 
-from wanderers.cli.options import (
-    Span,
-    Workplace,
-    body_option,
-    frame_option,
-    kind_option,
-    require_in_kernel,
-    span_options,
-    workplace_options,
-)
-from wanderers.cli.output import Destination, output_options, write_table
-from wanderers.ephemeris.bodies import BODIES, PLANETS, Body
-from wanderers.ephemeris.frames import Frame
-from wanderers.events.almanac import almanac
+from wanderers.cli.event_options import Wanted, event_options
+from wanderers.cli.options import Workplace
+from wanderers.cli.output import MARKDOWN, Destination, write_table
+from wanderers.cli.sentences import sentence_options, write_event_sentences
+from wanderers.cli.view_options import View, heading_of, tell_removed, view_options, viewed
+from wanderers.errors import UsageProblem
 from wanderers.events.catalogue import Query
-from wanderers.events.kinds import Kind
-from wanderers.events.scene import Choice, Limits
 from wanderers.events.side_by_side import side_by_side as definitions_side_by_side
 from wanderers.events.standing import with_standing
-from wanderers.report.tables import almanac_heading, side_by_side_heading
+from wanderers.report.phrases.markdown import Wording
+from wanderers.report.tables import side_by_side_heading
 
-STARS_FOR = {"all": BODIES[1:], "planets": PLANETS, "none": ()}
+HOW_IT_STANDS = (
+    "Add the nearest better events of the same kind and bodies, earlier and later, in the whole kernel."
+)
+ALL_DEFINITIONS = "Print stations and meetings with their definitions next to each other."
 
 
 @click.command("almanac")
-@span_options(default_years=1)
-@body_option
-@kind_option
-@frame_option
-@click.option(
-    "--within",
-    type=click.FloatRange(0.0, 180.0, min_open=True),
-    metavar="DEG",
-    help="Largest separation of an appulse, largest diameter of a gathering. [default: 10; Moon 6, stars 5]",
-)
-@click.option(
-    "--stars",
-    type=click.Choice(["all", "planets", "none"]),
-    default="all",
-    show_default=True,
-    help="Whose meetings with stars to list: Moon's and planets', planets' only, nobody's.",
-)
-@click.option(
-    "--standing",
-    is_flag=True,
-    help="Add the nearest better events of the same kind and bodies, earlier and later, in the whole kernel.",
-)
-@click.option(
-    "--side-by-side",
-    is_flag=True,
-    help="Print stations and meetings with their definitions next to each other.",
-)
-@workplace_options
-@output_options
+@event_options(years=1, stars="all")
+@view_options
+@click.option("--standing", is_flag=True, help=HOW_IT_STANDS)
+@click.option("--side-by-side", is_flag=True, help=ALL_DEFINITIONS)
+@sentence_options
 def command(
     *,
-    span: Span,
-    bodies: tuple[Body, ...],
-    kinds: tuple[Kind, ...],
-    frames: tuple[Frame, ...],
-    within: float | None,
-    stars: str,
+    wanted: Wanted,
+    view: View,
     standing: bool,
     side_by_side: bool,
     workplace: Workplace,
     destination: Destination,
+    wording: Wording,
 ) -> None:
     r"""Print every event of a span: stations, oppositions, conjunctions, appulses and the rest.
 
     \b
     Example: all stations and conjunctions of Mars in 2027
         wanderers almanac --from 2027 --to 2028 --body mars --kind station --kind conjunction
+    \b
+    Example: close pairs for an audience that comes on Fridays and Saturdays after half past six
+        wanderers almanac --from 2027 --to 2028 --kind appulse --within 1 --stars none \
+            --site hilltop --weekdays fri,sat --after 18:30
     """
-    require_in_kernel(workplace, span, bodies)
-    limits = Limits() if within is None else Limits(within, within, within, within)
-    choice = Choice(bodies, STARS_FOR[stars], limits)
-    query = Query(span.jd_from, span.jd_to, frozenset(kinds), frozenset(frames), choice)
-    kernel = workplace.store.kernel.name
+    query = wanted.query(workplace)
     if side_by_side:
-        compared = definitions_side_by_side(workplace.store, query)
-        write_table(compared, destination, side_by_side_heading(compared, kernel))
+        _print_side_by_side(query, workplace, destination)
         return
-    table = almanac(workplace.store, query)
+    table, removed = viewed(workplace.store, query, view, wanted.within_deg)
     if standing:
         table = with_standing(workplace.store, query, table)
-    write_table(table, destination, almanac_heading(table, kernel))
+    if destination.format == MARKDOWN:
+        write_event_sentences(table, workplace.store, wording, destination)
+    else:
+        write_table(table, destination, heading_of(table, view, workplace.store.kernel.name, removed))
+    if destination.format != "table" and not workplace.quiet:
+        tell_removed(removed)
+
+
+def _print_side_by_side(query: Query, workplace: Workplace, destination: Destination) -> None:
+    if destination.format == MARKDOWN:
+        raise UsageProblem("--side-by-side is a table: choose another --format or leave it out")
+    compared = definitions_side_by_side(workplace.store, query)
+    write_table(compared, destination, side_by_side_heading(compared, workplace.store.kernel.name))

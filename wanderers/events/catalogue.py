@@ -125,7 +125,7 @@ def find_events(store: TrackStore, query: Query) -> list[Found]:
     for kinds, finder in SLOW_FINDERS:
         if kinds & query.kinds:
             batches += finder(store, query.choice, jd_from, jd_to)
-    named = _with_meetings([_named(batch) for batch in _joined(batches)])
+    named = _with_meetings([name_events(batch) for batch in _joined(batches)])
     return [one.chosen(_wanted(one.batch, query)) for one in named if _asked_for(one.batch, query)]
 
 
@@ -196,7 +196,8 @@ def _ordered(column: Any, order: Ints) -> Any:
     return None if column is None else column[order]
 
 
-def _named(batch: Batch) -> Found:
+def name_events(batch: Batch) -> Found:
+    """Give a batch its names."""
     rounds = identity.round_numbers(batch, stars_met())
     return Found(batch, rounds, identity.ordinals(batch, rounds))
 

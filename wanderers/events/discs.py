@@ -6,6 +6,7 @@ difference (second and third) of the two semidiameters, as seen from the Earth's
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Final
 
@@ -78,7 +79,7 @@ def occultations(sky: Sky, pairs: Pairs) -> Batch:
         other=met.second,
         detail=detail,
         details=OCCULTATION_DETAILS,
-        contacts_jd=contacts(sky, met),
+        contacts_jd=contacts(geocentric_gaps(sky), met, span_of(sky)),
     )
 
 
@@ -96,27 +97,38 @@ def transits(sky: Sky, pairs: Pairs) -> Batch:
         met.second,
         detail=detail,
         details=TRANSIT_DETAILS,
-        contacts_jd=contacts(sky, met),
+        contacts_jd=contacts(geocentric_gaps(sky), met, span_of(sky)),
         figure_deg=_separations(sky, met, met.jd),
     )
 
 
-def contacts(sky: Sky, met: Pairs) -> Floats:
-    """Return the four contacts of overlapping discs, shape (n, 4), NaN where one disc stays outside."""
-    now = _gaps(sky, met, met.jd)
-    reach = _reach_days(sky, met)
+Gaps = Callable[[Pairs, Floats], Floats]
+"""Takes pairs and instants, n of each; returns the separation of their centres less the sum, and less the
+difference, of their semidiameters, in degrees, shape (2, n)."""
+
+
+def contacts(gaps: Gaps, met: Pairs, span_jd: tuple[float, float]) -> Floats:
+    """Return the four contacts of overlapping discs, shape (n, 4), NaN where one disc stays outside.
+
+    Args:
+        gaps: how far the discs are apart, for whoever looks.
+        met: pairs, at their least separations.
+        span_jd: outside which nothing is known.
+    """
+    now = gaps(met, met.jd)
+    reach = _reach_days(gaps, met, span_jd)
     pair, contact = np.nonzero(np.stack([now[EDGE_OF[number]] < 0.0 for number in range(4)], axis=1))
     edge, side = EDGE_OF[contact], SIDE_OF[contact]
-    far = (met.jd[pair] + side * reach[pair]).clip(sky.tracks.start_jd, sky.tracks.end_jd)
+    far = (met.jd[pair] + side * reach[pair]).clip(*span_jd)
 
     def gap(row: Ints, jd: Floats) -> tuple[Floats, Floats]:
         some, h = met.chosen(pair[row]), SLOPE_STEP_DAYS
-        before, at, after = (_gaps(sky, some, jd + days) for days in (-h, 0.0, h))
+        before, at, after = (gaps(some, jd + days) for days in (-h, 0.0, h))
         own = edge[row], np.arange(jd.size)
         return at[own], (after[own] - before[own]) / (2.0 * h)
 
     gap_now = now[edge, pair]
-    gap_far = _gaps(sky, met.chosen(pair), far)[edge, np.arange(pair.size)]
+    gap_far = gaps(met.chosen(pair), far)[edge, np.arange(pair.size)]
     later = side > 0
     brackets = Brackets(
         np.arange(pair.size),
@@ -131,18 +143,27 @@ def contacts(sky: Sky, met: Pairs) -> Floats:
     return out
 
 
-def _reach_days(sky: Sky, met: Pairs) -> Floats:
+def _reach_days(gaps: Gaps, met: Pairs, span_jd: tuple[float, float]) -> Floats:
     """Return how long after (and before) the middle the discs are surely apart, shape (n,)."""
     reach = np.full(met.jd.size, 0.02)
     for _ in range(DOUBLINGS):
         near = np.zeros(met.jd.size, dtype=np.bool_)
         for side in (-1.0, 1.0):
-            at = (met.jd + side * reach).clip(sky.tracks.start_jd, sky.tracks.end_jd)
-            near |= _gaps(sky, met, at)[0] <= 0.0
+            near |= gaps(met, (met.jd + side * reach).clip(*span_jd))[0] <= 0.0
         if not near.any():
             break
         reach = np.where(near, 2.0 * reach, reach)
     return reach
+
+
+def span_of(sky: Sky) -> tuple[float, float]:
+    """Return between which instants a sky is known, TT."""
+    return sky.tracks.start_jd, sky.tracks.end_jd
+
+
+def geocentric_gaps(sky: Sky) -> Gaps:
+    """Return the gaps seen from the Earth's centre."""
+    return lambda pairs, jd: _gaps(sky, pairs, jd)
 
 
 def _gaps(sky: Sky, met: Pairs, jd: Floats) -> Floats:

@@ -11,6 +11,7 @@ import polars as pl
 
 from wanderers import schema
 from wanderers.ephemeris.bodies import Body
+from wanderers.report import site_tables
 
 WIDTH: Final = 100
 NARROWEST: Final = 12
@@ -102,6 +103,8 @@ def _layout(table: pl.DataFrame) -> list[Column]:
         return GATHERINGS + (STANDING if "better_before_utc" in table.columns else [])
     if "least_separation_utc" in table.columns:
         return SIDE_BY_SIDE
+    if schema.conforms(table, schema.EVENT_COLUMNS) and "verdict" in table.columns:
+        return SITE_EVENTS
     if schema.conforms(table, schema.EVENT_COLUMNS):
         return EVENTS if "better_before_utc" not in table.columns else [*EVENTS[:4], *STANDING]
     if schema.conforms(table, schema.SEASON_COLUMNS):
@@ -140,6 +143,12 @@ def _day(value: str) -> str:
 
 def _what(table: pl.DataFrame) -> list[str]:
     return [describe(row) for row in table.select(*_DESCRIBED).iter_rows(named=True)]
+
+
+def _what_from_site(table: pl.DataFrame) -> list[str]:
+    """Return what happens, and what is seen of it."""
+    seen = [site_tables.verdict_words(row) for row in table.iter_rows(named=True)]
+    return [f"{what}: {words}" for what, words in zip(_what(table), seen, strict=True)]
 
 
 _DESCRIBED: Final = ("kind", "detail", "body", "other", "frame")
@@ -194,6 +203,15 @@ EVENTS: Final[list[Column]] = [
     ("Separation", _fixed("separation_deg", 2), True),
     ("Elongation", _fixed("elongation_deg", 1), True),
     ("Mag", _fixed("magnitude", 1), True),
+]
+
+SITE_EVENTS: Final[list[Column]] = [
+    ("Local", site_tables.local_instants, False),
+    ("What", lambda table: _what_from_site(table), False),
+    ("Evening", site_tables.evenings, False),
+    ("Watch", site_tables.windows, False),
+    ("Best", site_tables.best_times, False),
+    ("Alt", site_tables.places, False),
 ]
 
 STANDING: Final[list[Column]] = [

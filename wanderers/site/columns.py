@@ -69,6 +69,21 @@ EVENT_VIEW_COLUMNS: Final[Columns] = {
 which side of it, which of them is upper and which left with the horizon level, and the other's altitude and
 magnitude outside the air; at the instant itself: the altitudes of ``body``, as seen, and of the Sun."""
 
+CONTACTS: Final = (1, 2, 3, 4)
+LOCAL_DISC_COLUMNS: Final[Columns] = {
+    "local_closest_utc": pl.String,
+    "local_closest_local": pl.String,
+    "local_separation_deg": pl.Float64,
+    **{f"local_contact{number}_utc": pl.String for number in CONTACTS},
+    **{f"local_contact{number}_local": pl.String for number in CONTACTS},
+    **{f"local_contact{number}_altitude_deg": pl.Float64 for number in CONTACTS},
+    "disappears_limb": pl.String,
+    "reappears_limb": pl.String,
+    "circumstances": pl.String,
+}
+"""What becomes of an occultation, a transit or a close pass of the Moon at the site: least separation of the
+centres, contacts and how high they happen, the Moon's ``bright`` or ``dark`` limb, and all of it in words."""
+
 SUN_TIMES: Final = (
     "sunset",
     "civil_dusk",
@@ -194,13 +209,79 @@ LINEUP_COLUMNS: Final[Columns] = {
     "sunrise_local": pl.String,
     "caution": pl.String,
 }
-"""One row a run of evenings on which enough bodies stand up at one moment. The bodies (joined by ``+``) and all
-angles are those at ``best_utc``; ``arc_deg`` is the widest angle between two of them, which stand left (``from``)
-and right (``to``) for who faces them. ``elongation_deg`` is that of the one nearest the Sun, ``verdict`` that of
-the worst seen. ``first`` and ``last`` are the best moments of the first and the last evening.
-``evenings_with_most`` counts the evenings with as many bodies as the best, ``evenings_before_midnight`` those with
-such a moment while the Sun is west of the meridian, ``evenings_after_midnight`` while it is east. ``cut_at_start``
-and ``cut_at_end``: the run reaches the border of the span, so it may be longer."""
+"""One row a run of evenings on which enough bodies stand up at one moment. The bodies (joined by ``+``) and
+all angles are those at ``best_utc``; ``arc_deg`` is the widest angle between two of them, which stand left
+(``from``) and right (``to``) for who faces them. ``elongation_deg`` is that of the one nearest the Sun,
+``verdict`` that of the worst seen; ``first`` and ``last`` are the best moments of the run's two ends.
+``evenings_with_most`` counts the evenings with as many bodies as the best, ``evenings_before_midnight`` those
+with such a moment while the Sun is west of the meridian, ``evenings_after_midnight`` while it is east.
+``cut_at_start`` and ``cut_at_end``: the run reaches the border of the span, so it may be longer."""
+
+SIGHT_ANGLES: Final = (
+    "altitude_deg",
+    "sun_altitude_deg",
+    "azimuth_difference_deg",
+    "arcus_deg",
+    "elongation_deg",
+    "magnitude",
+)
+
+APPARITION_COLUMNS: Final[Columns] = {
+    "body": pl.String,
+    "kind": pl.String,
+    "first_sight_earliest": pl.String,
+    "first_sight_likely": pl.String,
+    "first_sight_latest": pl.String,
+    "last_sight_earliest": pl.String,
+    "last_sight_likely": pl.String,
+    "last_sight_latest": pl.String,
+    "event_kind": pl.String,
+    "event_id": pl.String,
+    "event_utc": pl.String,
+    "event_elongation_deg": pl.Float64,
+    "event_magnitude": pl.Float64,
+    "weeks_from": pl.String,
+    "weeks_to": pl.String,
+    "weeks_nights": pl.Int64,
+    "best_evening": pl.String,
+    "best_utc": pl.String,
+    "best_local": pl.String,
+    "best_at_civil_hour": pl.Boolean,
+    "best_altitude_deg": pl.Float64,
+    "best_azimuth_deg": pl.Float64,
+    "best_compass": pl.String,
+    "best_sun_altitude_deg": pl.Float64,
+    "best_elongation_deg": pl.Float64,
+    "best_magnitude": pl.Float64,
+    "ease_rank": pl.Int64,
+    "first_sight_haze_days": pl.Int64,
+    "last_sight_haze_days": pl.Int64,
+    "first_sight_clear_days": pl.Int64,
+    "last_sight_clear_days": pl.Int64,
+    **{f"first_sight_{name}": pl.Float64 for name in SIGHT_ANGLES},
+    **{f"last_sight_{name}": pl.Float64 for name in SIGHT_ANGLES},
+    "morning_weeks_from": pl.String,
+    "morning_weeks_to": pl.String,
+    "morning_weeks_nights": pl.Int64,
+    "criterion": pl.String,
+    "extinction_mag": pl.Float64,
+    "extinction_clear_mag": pl.Float64,
+    "extinction_hazy_mag": pl.Float64,
+    "site": pl.String,
+    "zone": pl.String,
+    "remark": pl.String,
+    "caution": pl.String,
+}
+"""One row an apparition: ``evening`` or ``morning`` of Mercury and Venus, ``morning_to_evening`` of the
+others, from one conjunction with the Sun to the next. Sights are local calendar dates of the moment itself (a
+morning's own date); ``weeks`` and ``best_evening`` are dates of evenings. ``latest`` first and ``earliest``
+last sight are null where haze may hide it altogether. ``haze_days`` is by how many days haze of
+``extinction_hazy_mag`` delays the first and hastens the last sight, ``clear_days`` the same of usual against
+clear air. Angles of a sight are those at the best moment of the likely date; ``arcus_deg`` is the planet's
+altitude less the Sun's, both without air. ``weeks`` is the run of evenings around the best on which it stands
+above the least altitude and shows at a civil hour to whoever must first find it; ``best`` is at a civil hour
+if it then shows at all. ``ease_rank``: 1 is the easiest of a body's apparitions that stand best within the
+span, by how well it shows and how high at a civil hour, however low."""
 
 
 def arranged(table: pl.DataFrame, columns: Columns) -> pl.DataFrame:

@@ -93,7 +93,7 @@ def _part(
 ) -> pl.DataFrame:
     """Look at a handful of events."""
     parties = parties_of(events)
-    some = _evenings_around(store, site, parties)
+    some = evenings_around(store, site, parties)
     sky = sky_of(store, float(some.start_jd[0]), float(some.end_jd[-1]))
     watched = watch(sky, some, rules, opening.stretches(some))
     best = prospects(watched, parties, opening.allows(some.days))
@@ -106,7 +106,7 @@ def _part(
     return events.hstack(columns.arranged(added, columns.EVENT_VIEW_COLUMNS))
 
 
-def _evenings_around(store: TrackStore, site: Site, parties: Parties) -> Evenings:
+def evenings_around(store: TrackStore, site: Site, parties: Parties) -> Evenings:
     """Return the evenings within reach of any of the events, those outside the kernel left out."""
     low, high = store.span_jd
     ends = np.clip([parties.jd[0] - MARGIN_DAYS, parties.jd[-1] + MARGIN_DAYS], low, high)

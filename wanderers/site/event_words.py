@@ -81,6 +81,7 @@ def _circumstances(watched: Watch, parties: Parties, best: Prospects, members: M
     magnitude = of_member(members.magnitude, deciding)
     extinction = watched.rules.criteria.extinction_at(watched.evenings.site.elevation_m)
     azimuth = of_member(members.azimuth_deg, deciding)
+    with_moon = (parties.member == Body.MOON.order).any(axis=1)
     numbers = {
         "altitude_deg": altitude,
         "magnitude": magnitude,
@@ -89,7 +90,8 @@ def _circumstances(watched: Watch, parties: Parties, best: Prospects, members: M
         ),
         "sun_altitude_deg": members.sun_altitude_deg,
         "moon_altitude_deg": members.moon_altitude_deg,
-        "moon_illuminated": members.moon_illuminated,
+        "moon_illuminated": np.where(with_moon, 0.0, members.moon_illuminated),
+        "moon_separation_deg": of_member(members.moon_separation_deg, deciding),
         "elongation_deg": _least(
             np.where(parties.member == Body.SUN.order, np.nan, members.sun_separation_deg)
         ),

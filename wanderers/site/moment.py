@@ -131,6 +131,7 @@ def _seen(sky: Sky, site: Site, jd: float, targets: Targets, rules: Rules) -> pl
             "sun_altitude_deg": over.sun_altitude_deg,
             "moon_altitude_deg": pl.Series(over.moon_altitude_deg, nan_to_null=True),
             "moon_illuminated": np.cos(np.radians(over.moon_phase_angle_deg) / 2.0) ** 2,
+            "moon_separation_deg": pl.Series(seen.lights.moon_separation_deg, nan_to_null=True),
             "margin": margins.least,
             "margin_sky": margins.sky,
             "margin_arcus": margins.arcus,

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from wanderers.arrays import Bools, Floats, Ints
-from wanderers.site.prospects import ABSENT
+from wanderers.events.members import ABSENT
 from wanderers.site.sightings import Watch, look_exactly
 
 

@@ -12,13 +12,15 @@ from typing import Final
 import numpy as np
 
 from wanderers.arrays import Bools, Floats, Ints
+from wanderers.events.members import ABSENT
 from wanderers.events.search import Brackets, refine
 from wanderers.site.sightings import RASTER_STEPS, Sightings, Watch, headroom_deg, look, look_exactly
-from wanderers.site.visibility import merit, verdicts
+from wanderers.site.visibility import VERDICTS, merit, verdicts
 
 CLIMB_STEPS: Final = tuple(1.0 / RASTER_STEPS / 2.0**halving for halving in (1, 2, 3))
 """From the best moment of the raster steps of 10, 5 and 2.5 minutes lead to the best there is."""
 NO_ROW: Final = -1
+NOT_VISIBLE: Final = len(VERDICTS) - 1
 
 
 @dataclass(frozen=True, slots=True)
@@ -28,19 +30,20 @@ class Parties:
     Attributes:
         jd: TT of the instants, shape (n,).
         reach_days: how far from the instant watching still makes sense, shape (n,).
+        haste_mag_per_day: margin that a day away from the instant outweighs, shape (n,). Where there is any,
+            the nearest evening on which something shows is taken, with whatever aid; else the best.
         member: target numbers, shape (n, most), those of an event first, else ABSENT.
     """
 
     jd: Floats
     reach_days: Floats
+    haste_mag_per_day: Floats
     member: Ints
 
     def chosen(self, which: Bools | Ints) -> Parties:
         """Return some of them."""
-        return Parties(self.jd[which], self.reach_days[which], self.member[which])
-
-
-ABSENT: Final = -1
+        reach, haste = self.reach_days[which], self.haste_mag_per_day[which]
+        return Parties(self.jd[which], reach, haste, self.member[which])
 
 
 @dataclass(frozen=True, slots=True)
@@ -86,7 +89,7 @@ class _Run:
 def prospects(watched: Watch, parties: Parties, allowed: Bools | None = None) -> Prospects:
     """Find the best evening of each event and its best moment.
 
-    The best verdict wins, then the evening whose best moment lies nearest to the instant.
+    The best verdict wins (with haste, any that is seen at all), then the evening nearest to the instant.
 
     Args:
         watched: the evenings and their dark moments.
@@ -153,9 +156,10 @@ def _run(watched: Watch, parties: Parties, rows: _Rows, seen: Sightings) -> _Run
         altitude[has] = np.minimum(altitude[has], seen.altitude_deg[at])
     criteria = watched.rules.criteria
     verdict = verdicts(margin, criteria, watched.moments.over.sun_altitude_deg[moment])
-    worth = merit(margin, altitude, verdict, criteria)
     event = rows.event[row]
-    within = np.abs(watched.jd[moment] - parties.jd[event]) <= parties.reach_days[event]
+    away = np.abs(watched.jd[moment] - parties.jd[event])
+    worth = merit(margin, altitude, verdict, criteria) - parties.haste_mag_per_day[event] * away
+    within = away <= parties.reach_days[event]
     return _Run(row, moment, together, verdict, np.where(together & within, worth, -np.inf))
 
 
@@ -176,7 +180,9 @@ def _best_of_events(watched: Watch, parties: Parties, rows: _Rows, run: _Run, be
     (row,) = np.nonzero(best != NO_ROW)
     event = rows.event[row]
     away = np.abs(watched.jd[run.moment[best[row]]] - parties.jd[event])
-    order = np.lexsort((away, run.verdict[best[row]], event))
+    verdict = run.verdict[best[row]]
+    class_of = np.where(parties.haste_mag_per_day[event] > 0.0, verdict == NOT_VISIBLE, verdict)
+    order = np.lexsort((away, class_of, event))
     first = np.diff(event[order], prepend=NO_ROW) != 0
     out[event[order][first]] = row[order][first]
     return out
@@ -265,7 +271,8 @@ def _merits(watched: Watch, parties: Parties, jd: Floats) -> Floats:
     sun = _least(there, over.sun_altitude_deg)
     margin = _least(there, margins.least)
     criteria = watched.rules.criteria
-    return merit(margin, _least(there, seen.altitude_deg), verdicts(margin, criteria, sun), criteria)
+    worth = merit(margin, _least(there, seen.altitude_deg), verdicts(margin, criteria, sun), criteria)
+    return np.asarray(worth - parties.haste_mag_per_day * np.abs(jd - parties.jd))
 
 
 def _nearest_evenings(watched: Watch, jd: Floats) -> Ints:

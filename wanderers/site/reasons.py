@@ -20,6 +20,8 @@ LOW_DEG: Final = 20.0
 HIGH_DEG: Final = 45.0
 DARK_SUN_DEG: Final = -15.0
 """Below this the last glow hardly counts. Common practice, no source."""
+BESIDE_MOON_DEG: Final = 7.0
+"""A binocular field: nearer the Moon's glare is what hides faint things. Common practice, no source."""
 SOON_MINUTES: Final = 180
 MINUTES_PER_DAY: Final = 1_440.0
 
@@ -90,9 +92,16 @@ def light() -> pl.Expr:
     moonlit = (
         (pl.col("moon_altitude_deg") > 0.0) & (pl.col("moon_illuminated") > 0.5) & (pl.col("body") != "moon")
     )
+    beside = (
+        (pl.col("moon_altitude_deg") > 0.0)
+        & (pl.col("moon_separation_deg") < BESIDE_MOON_DEG)
+        & (pl.col("verdict") != Verdict.NAKED_EYE.value)
+    )
     return (
         pl.when(pl.col("sun_altitude_deg") > SUN_RISE_DEG)
         .then(pl.lit("by day"))
+        .when(beside)
+        .then(pl.lit("beside the Moon"))
         .when(pl.col("sun_altitude_deg") > DARK_SUN_DEG)
         .then(pl.lit("in twilight"))
         .when(moonlit)
