@@ -103,8 +103,16 @@ def verdict_words(row: dict[str, Any]) -> str:
     if row["seen_placement"] is not None:
         apart = f"{row['seen_separation_deg']:.1f} degrees"
         parts.append(f"{_name(row['other'])} {apart} {row['seen_placement']}")
-    text = "; ".join(filter(None, parts))
-    return f"{text}. {row['caution']}" if row["caution"] else text
+    return "; ".join(filter(None, parts)) + _caution(row)
+
+
+def verdict_and_caution(row: dict[str, Any]) -> str:
+    """Return the verdict's reason and the caution."""
+    return f"{row['verdict_reason']}{_caution(row)}"
+
+
+def _caution(row: dict[str, Any]) -> str:
+    return f". {row['caution']}" if row["caution"] else ""
 
 
 def _name(name: str) -> str:

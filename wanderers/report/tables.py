@@ -107,6 +107,8 @@ def _layout(table: pl.DataFrame) -> list[Column]:
         return SITE_EVENTS
     if schema.conforms(table, schema.EVENT_COLUMNS):
         return EVENTS if "better_before_utc" not in table.columns else [*EVENTS[:4], *STANDING]
+    if schema.conforms(table, schema.SEASON_COLUMNS) and "verdict" in table.columns:
+        return SITE_SEASONS
     if schema.conforms(table, schema.SEASON_COLUMNS):
         return SEASONS
     if schema.conforms(table, schema.TRACK_COLUMNS):
@@ -263,6 +265,19 @@ SEASONS: Final[list[Column]] = [
     ("Days", _fixed("retrograde_days", 0), True),
     ("Path", _texts("path_shape", str), False),
     ("Mag", _fixed("peak_magnitude", 1), True),
+]
+
+SITE_SEASONS: Final[list[Column]] = [
+    SEASONS[0],
+    *SEASONS[2:5],
+    ("Evening", site_tables.evenings, False),
+    ("Best", site_tables.best_times, False),
+    ("Alt", site_tables.places, False),
+    (
+        "What",
+        lambda table: [site_tables.verdict_and_caution(row) for row in table.iter_rows(named=True)],
+        False,
+    ),
 ]
 
 TRACK: Final[list[Column]] = [
