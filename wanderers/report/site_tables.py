@@ -106,9 +106,9 @@ def verdict_words(row: dict[str, Any]) -> str:
     return "; ".join(filter(None, parts)) + _caution(row)
 
 
-def verdict_and_caution(row: dict[str, Any]) -> str:
-    """Return the verdict's reason and the caution."""
-    return f"{row['verdict_reason']}{_caution(row)}"
+def verdicts_and_cautions(table: pl.DataFrame) -> list[str]:
+    """Return the reasons of verdicts, and cautions."""
+    return [f"{row['verdict_reason']}{_caution(row)}" for row in table.iter_rows(named=True)]
 
 
 def _caution(row: dict[str, Any]) -> str:

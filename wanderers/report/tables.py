@@ -275,7 +275,7 @@ SITE_SEASONS: Final[list[Column]] = [
     ("Alt", site_tables.places, False),
     (
         "What",
-        lambda table: [site_tables.verdict_and_caution(row) for row in table.iter_rows(named=True)],
+        site_tables.verdicts_and_cautions,
         False,
     ),
 ]

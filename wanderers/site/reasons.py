@@ -163,9 +163,9 @@ def _below_horizon() -> pl.Expr:
         pl.when(neither)
         .then(pl.lit("does not rise"))
         .when(SET_AFTER_SUN.is_between(0, SOON_MINUTES))
-        .then(pl.concat_str(pl.lit("sets "), _minutes(SET_AFTER_SUN), pl.lit(" after the Sun")))
+        .then(_beside("sets", SET_AFTER_SUN, "after"))
         .when(RISE_BEFORE_SUN.is_between(0, SOON_MINUTES))
-        .then(pl.concat_str(pl.lit("rises "), _minutes(RISE_BEFORE_SUN), pl.lit(" before the Sun")))
+        .then(_beside("rises", RISE_BEFORE_SUN, "before"))
         .when((SET_AFTER_SUN < 0) | (RISE_BEFORE_SUN < 0))
         .then(pl.lit("up only by day"))
         .otherwise(pl.lit("below the horizon while the sky is dark enough"))
@@ -178,10 +178,16 @@ def _beside_the_sun() -> pl.Expr:
     before = RISE_BEFORE_SUN.is_between(0, SOON_MINUTES)
     return (
         pl.when(after)
-        .then(pl.concat_str(pl.lit("; sets "), _minutes(SET_AFTER_SUN), pl.lit(" after the Sun")))
+        .then(pl.concat_str(pl.lit("; "), _beside("sets", SET_AFTER_SUN, "after")))
         .when(before)
-        .then(pl.concat_str(pl.lit("; rises "), _minutes(RISE_BEFORE_SUN), pl.lit(" before the Sun")))
+        .then(pl.concat_str(pl.lit("; "), _beside("rises", RISE_BEFORE_SUN, "before")))
     )
+
+
+def _beside(verb: str, minutes: pl.Expr, side: str) -> pl.Expr:
+    """Return how long before or after the Sun something sets or rises."""
+    apart = pl.concat_str(pl.lit(f"{verb} "), _minutes(minutes), pl.lit(f" {side} the Sun"))
+    return pl.when(minutes == 0).then(pl.lit(f"{verb} with the Sun")).otherwise(apart)
 
 
 def _minutes(count: pl.Expr) -> pl.Expr:

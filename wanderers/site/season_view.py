@@ -1,4 +1,4 @@
-"""Retrograde seasons from a site: what can be seen of each at its middle; if that is unknown, at its start."""
+"""Retrograde seasons from a site: what can be seen of each at its middle, else at its start."""
 
 from __future__ import annotations
 
