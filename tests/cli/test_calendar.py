@@ -260,5 +260,5 @@ def test_help_shows_a_worked_example(run: Run) -> None:
     shown = subprocess.run(
         [sys.executable, "-m", "wanderers", "calendar", "--help"], capture_output=True, check=True, timeout=60
     ).stdout.decode()
-    assert shown.count("Example:") == 1
+    assert shown.count("Example:") >= 1
     assert "wanderers calendar --from 2027" in shown

@@ -13,8 +13,13 @@ from typing import Final
 
 from icalendar.parser import Contentline
 
+from wanderers.errors import UsageProblem
+from wanderers.site.zones import zone_named
+
 UID_ENDING: Final = "@wanderers"
 """Follows the event's id in a UID. No host: RFC 7986, 5.3, advises against them."""
+INSTANT: Final = "X-WANDERERS-INSTANT"
+"""Property that says when the event happens, where the entry stands at another time."""
 PROVENANCE: Final = "Computed from "
 """First words of the last line of a description. A new kernel or version alone is no change."""
 
@@ -54,10 +59,24 @@ class Entry:
         """Whether this program wrote it; another hand may have added others."""
         return self.uid.endswith(UID_ENDING)
 
+    def zone(self, name: str) -> str:
+        """Return the TZID of one of its properties; empty where it has none."""
+        heads = (line.partition(":")[0] for line in self.lines[1:])
+        own = next((head for head in heads if re.split(";", head, maxsplit=1)[0] == name), "")
+        found = re.search(r";TZID=([^;:]+)", own)
+        return found[1] if found else ""
+
     @property
     def start(self) -> dt.datetime:
-        """Its DTSTART, UTC."""
-        return instant(self.value("DTSTART"))
+        """Its DTSTART in UTC."""
+        zone = self.zone("DTSTART")
+        return local_instant(self.value("DTSTART"), zone) if zone else instant(self.value("DTSTART"))
+
+    @property
+    def moment(self) -> dt.datetime:
+        """When the event itself happens, UTC: entries of a site stand at the time to watch."""
+        stated = self.value(INSTANT)
+        return instant(stated) if stated else self.start
 
     @property
     def sequence(self) -> int:
@@ -84,8 +103,18 @@ class Entry:
 
     def is_sound(self) -> bool:
         """Return whether what reissuing compares can be read."""
-        dates = self.value("DTSTART"), self.value("DTSTAMP")
-        return all(is_instant(date) for date in dates) and self.value("SEQUENCE").isdecimal()
+        dates = self.value("DTSTAMP"), self.value(INSTANT) or self.value("DTSTAMP")
+        return (
+            self.has_start and all(is_instant(date) for date in dates) and self.value("SEQUENCE").isdecimal()
+        )
+
+    @property
+    def has_start(self) -> bool:
+        """Whether its DTSTART can be read."""
+        try:
+            return bool(self.start)
+        except (ValueError, UsageProblem):
+            return False
 
 
 def entry_of(lines: Sequence[str]) -> Entry:
@@ -101,7 +130,12 @@ def read_entry(octets: bytes) -> Entry:
 
 def in_order(entries: Iterable[Entry]) -> list[Entry]:
     """Return entries in order of time."""
-    return sorted(entries, key=lambda entry: (entry.value("DTSTART"), entry.uid))
+    return sorted(entries, key=_place_in_time)
+
+
+def _place_in_time(entry: Entry) -> tuple[str, str]:
+    """Return what entries are ordered by; those of another hand may begin in ways not read here."""
+    return instant_text(entry.start) if entry.has_start else entry.value("DTSTART"), entry.uid
 
 
 def outside_components(lines: Iterable[str]) -> list[str]:
@@ -141,6 +175,17 @@ def instant(value: str) -> dt.datetime:
     if not _INSTANT.fullmatch(value):
         raise ValueError(f"no UTC instant: {value}")
     return dt.datetime.strptime(value, "%Y%m%dT%H%M%SZ").replace(tzinfo=dt.UTC)
+
+
+def local_instant(value: str, zone: str) -> dt.datetime:
+    """Return the UTC instant of a local time of the form 20270103T130700; the first where it comes twice.
+
+    Raises:
+        ValueError: it has another form.
+        UnknownNameError: there is no such zone.
+    """
+    clock = dt.datetime.strptime(value, "%Y%m%dT%H%M%S")
+    return clock.replace(tzinfo=zone_named(zone).rules).astimezone(dt.UTC)
 
 
 def is_instant(value: str) -> bool:

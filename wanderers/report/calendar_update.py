@@ -168,7 +168,7 @@ def _settled(
 ) -> tuple[Entry, Change | None]:
     """Decide what becomes of a published entry, given what it is now."""
     if new is None:
-        if old.is_cancelled or not _surely_inside(old.start, span):
+        if old.is_cancelled or not _surely_inside(old.moment, span):
             return old, None
         return _cancelled(old, stamp), Change("withdrawn", old.start, old.title)
     if new.content() == old.content():

@@ -1,31 +1,45 @@
 """Event tables as iCalendar files (RFC 5545 and RFC 7986).
 
-Every entry stands for an instant in UTC. Calendar programs show an entry without an end as they please, some
-as an hour, so each lasts a nominal quarter of an hour and says so. The same table gives the same octets.
+Every entry stands for an instant in UTC or, from a site, for the time to watch by its clock. Calendar
+programs show an entry without an end as they please, some as an hour, so an instant lasts a nominal quarter
+of an hour and says so. The same table gives the same octets.
 """
 
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from typing import Final
 
 import polars as pl
-from icalendar import Alarm, Calendar, Event, vDuration, vText
+from icalendar import Alarm, Calendar, Event, Timezone, vDuration, vText
 
 from wanderers import __version__
 from wanderers.ephemeris.kernels import Kernel
 from wanderers.errors import SpanError
-from wanderers.report import words
-from wanderers.report.calendar_entries import PROVENANCE, UID_ENDING, Entry, escaped, read_entry
+from wanderers.report import site_words, words
+from wanderers.report.calendar_entries import (
+    INSTANT,
+    PROVENANCE,
+    UID_ENDING,
+    Entry,
+    escaped,
+    instant_text,
+    read_entry,
+)
 from wanderers.report.calendar_update import PRODID, Change, Published, UtcSpan, merged, read_calendar
 from wanderers.report.definitions import definition
 from wanderers.report.tables import counted
+from wanderers.site.places import Site
+from wanderers.site.zones import zone_named
 
 FIRST_STAMP: Final = dt.datetime(2000, 1, 1, 12, tzinfo=dt.UTC)
 """DTSTAMP of every entry that was never changed: a constant, so that equal tables give equal files."""
 NOMINAL_LENGTH: Final = dt.timedelta(minutes=15)
+NOMINAL: Final = (
+    f"Lasts {NOMINAL_LENGTH.seconds // 60} minutes here only to be shown; the event is the beginning."
+)
 REFRESH: Final = dt.timedelta(days=1)
 """How often subscribers may look for a new issue: a hint."""
 CHECKSUM_DIGITS: Final = 12
@@ -43,11 +57,13 @@ class Style:
         name: its title.
         kernel: what its events were computed from.
         alarms_minutes: how long before each event an alarm is shown, as many as wanted.
+        site: from where the events are seen; entries then stand at the time to watch.
     """
 
     name: str
     kernel: Kernel
     alarms_minutes: tuple[int, ...] = ()
+    site: Site | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -185,16 +201,36 @@ def _entry(event: words.Event, style: Style) -> Entry:
     component.add("UID", f"{event['event_id']}{UID_ENDING}")
     component.add("DTSTAMP", FIRST_STAMP)
     component.add("SEQUENCE", 0)
-    component.add("DTSTART", dt.datetime.fromisoformat(f"{shown}:00+00:00"))
-    component.add("DURATION", NOMINAL_LENGTH)
+    _add_times(component, event, style, shown)
     component.add("STATUS", "CONFIRMED")
     component.add("TRANSP", "TRANSPARENT")
     component.add("CATEGORIES", _Text(words.category(event)))
     component.add("SUMMARY", _Text(words.summary(event)))
     component.add("DESCRIPTION", _Text("\n".join(_description(event, shown, style.kernel))))
+    if style.site is not None:
+        component.add("LOCATION", _Text(style.site.name))
+        component.add("GEO", (style.site.latitude_deg, style.site.longitude_deg))
     for minutes in style.alarms_minutes:
         component.add_component(_alarm(words.summary(event), minutes))
     return read_entry(component.to_ical(sorted=False))
+
+
+def _add_times(component: Event, event: words.Event, style: Style, shown: str) -> None:
+    """Let an entry stand at the time to watch by the site's clock, else at the instant in UTC."""
+    moment = dt.datetime.fromisoformat(f"{shown}:00+00:00")
+    if style.site is None or not site_words.is_watchable(event):
+        component.add("DTSTART", moment)
+        component.add("DURATION", NOMINAL_LENGTH)
+        return
+    for name, time in zip(("DTSTART", "DTEND"), site_words.window(event), strict=True):
+        component.add(name, _by_clock(time, style.site))
+    component.add(INSTANT, _Text(instant_text(moment)))
+
+
+def _by_clock(time: dt.datetime, site: Site) -> dt.datetime:
+    """Return a time by the site's clock; the second of two in UTC, for RFC 5545, 3.3.5, means the first."""
+    shown = time.replace(tzinfo=zone_named(site.zone).rules)
+    return shown if shown.utcoffset() == time.utcoffset() else time.astimezone(dt.UTC)
 
 
 def _description(event: words.Event, shown: str, kernel: Kernel) -> list[str]:
@@ -207,8 +243,9 @@ def _description(event: words.Event, shown: str, kernel: Kernel) -> list[str]:
         *([_held_back(shown)] if words.is_held_back(event["utc"]) else []),
         *words.contacts(event),
         *([doubt] if doubt else []),
-        *words.cautions(event),
-        f"Lasts {NOMINAL_LENGTH.seconds // 60} minutes here only to be shown; the event is the beginning.",
+        *site_words.where_to_look(event),
+        *(site_words.caution(event) or words.cautions(event)),
+        *([] if site_words.is_watchable(event) else [NOMINAL]),
         f"{PROVENANCE}{kernel.name} (SHA-256 {kernel.sha256[:CHECKSUM_DIGITS]}) by wanderers {__version__}.",
     ]
 
@@ -226,7 +263,27 @@ def _alarm(text: str, minutes: int) -> Alarm:
     return alarm
 
 
-def _file(name: str, ordered: Iterable[Entry]) -> bytes:
+def _zones(ordered: Sequence[Entry]) -> list[Timezone]:
+    """Return the zones that entries use, with their real rules over the years from first to last.
+
+    Source: RFC 5545, 3.6.5 and 3.2.19: each TZID must be defined in the file.
+    """
+    used: dict[str, list[int]] = {}
+    for entry in ordered:
+        for zone in {entry.zone("DTSTART"), entry.zone("DTEND")} - {""}:
+            used.setdefault(zone, []).append(entry.start.year)
+    return [
+        Timezone.from_tzinfo(
+            zone_named(zone).rules,
+            zone,
+            first_date=dt.date(max(min(years) - 1, 1), 1, 1),
+            last_date=dt.date(min(max(years) + 1, 9999), 1, 1),
+        )
+        for zone, years in sorted(used.items())
+    ]
+
+
+def _file(name: str, ordered: Sequence[Entry]) -> bytes:
     """Return a calendar file around its entries."""
     title = _Text(" ".join(name.split()))
     calendar = Calendar()
@@ -237,5 +294,7 @@ def _file(name: str, ordered: Iterable[Entry]) -> bytes:
     calendar.add("X-WR-CALNAME", title)
     calendar.add("REFRESH-INTERVAL", vDuration(REFRESH), parameters={"VALUE": "DURATION"})
     calendar.add("X-PUBLISHED-TTL", vDuration(REFRESH))
+    for zone in _zones(ordered):
+        calendar.add_component(zone)
     head, end, after = calendar.to_ical(sorted=False).partition(b"END:VCALENDAR")
     return b"".join([head, *(entry.octets for entry in ordered), end, after])
