@@ -39,7 +39,7 @@ TIME_COLUMNS = (*columns.SUN_TIMES, *columns.BODY_TIMES, "window_start", "best",
 
 
 @pytest.fixture(scope="module")
-def kernel() -> Iterator[Any]:
+def jpl() -> Iterator[Any]:
     with closing(load_file(de440)) as opened:
         yield opened
 
@@ -70,13 +70,13 @@ def skyfield_time(table: pl.DataFrame, name: str) -> Any:
     return load.timescale(builtin=True).tt_jd(jd_tt_from_utc(np.array(jd)))
 
 
-def target_of(kernel: Any, name: str) -> Any:
-    return kernel[f"{name} barycenter" if name in SYSTEMS else name]
+def target_of(jpl: Any, name: str) -> Any:
+    return jpl[f"{name} barycenter" if name in SYSTEMS else name]
 
 
-def airless(kernel: Any, site: Site, name: str, time: Any) -> np.ndarray:
-    observer = kernel["earth"] + skyfield_place(site)
-    return np.asarray(observer.at(time).observe(target_of(kernel, name)).apparent().altaz()[0].degrees)
+def airless(jpl: Any, site: Site, name: str, time: Any) -> np.ndarray:
+    observer = jpl["earth"] + skyfield_place(site)
+    return np.asarray(observer.at(time).observe(target_of(jpl, name)).apparent().altaz()[0].degrees)
 
 
 def test_there_is_a_row_for_each_evening_and_body_in_order(table: pl.DataFrame, site: Site) -> None:
@@ -105,14 +105,14 @@ def test_everything_lies_between_the_noons_of_its_evening(table: pl.DataFrame, n
 
 
 def test_windows_open_and_close_where_sun_or_body_pass_their_limits(
-    table: pl.DataFrame, kernel: Any, site: Site
+    table: pl.DataFrame, jpl: Any, site: Site
 ) -> None:
     some = table.filter(pl.col("best_utc").is_not_null())
     for name in ("window_start_utc", "window_end_utc"):
         for body, rows in some.group_by("body"):
             time = skyfield_time(rows, name)
-            height = refracted_deg(airless(kernel, site, str(body[0]), time), site.elevation_m)
-            sun = airless(kernel, site, "sun", time)
+            height = refracted_deg(airless(jpl, site, str(body[0]), time), site.elevation_m)
+            sun = airless(jpl, site, "sun", time)
             # A second of time is at most 15 arcseconds; texts are cut at the millisecond.
             inside = (height > 10.0 - 1e-3) & (sun < -6.0 + 1e-3)
             at_limit = (np.abs(height - 10.0) < 1e-3) | (np.abs(sun + 6.0) < 1e-3)
@@ -129,16 +129,16 @@ def test_the_best_moment_lies_in_the_window_and_above_its_limits(table: pl.DataF
     ).item()
 
 
-def test_no_window_is_missed(table: pl.DataFrame, kernel: Any, site: Site) -> None:
+def test_no_window_is_missed(table: pl.DataFrame, jpl: Any, site: Site) -> None:
     # Independently: skyfield's altitudes every ten minutes of the month.
     time_scale = load.timescale(builtin=True)
     edges = table.filter(pl.col("body") == "sun")["culmination_utc"]
     start = dt.datetime.fromisoformat(edges[0])
     moments = [start + dt.timedelta(minutes=10 * step) for step in range(6 * 24 * 28)]
     time = time_scale.from_datetimes(moments)
-    dark = airless(kernel, site, "sun", time) < -6.05
+    dark = airless(jpl, site, "sun", time) < -6.05
     for name in ("mercury", "venus", "jupiter"):
-        high = refracted_deg(airless(kernel, site, name, time), site.elevation_m) > 10.05
+        high = refracted_deg(airless(jpl, site, name, time), site.elevation_m) > 10.05
         rows = table.filter((pl.col("body") == name) & pl.col("best_utc").is_not_null())
         opens, closes = instants(rows, "window_start_utc"), instants(rows, "window_end_utc")
         several = rows["remark"].fill_null("").str.contains("a second window").any()
@@ -147,24 +147,24 @@ def test_no_window_is_missed(table: pl.DataFrame, kernel: Any, site: Site) -> No
             assert found or several, (name, moment)
 
 
-def test_angles_at_the_best_moment_agree_with_skyfield(table: pl.DataFrame, kernel: Any, site: Site) -> None:
-    observer = kernel["earth"] + skyfield_place(site)
+def test_angles_at_the_best_moment_agree_with_skyfield(table: pl.DataFrame, jpl: Any, site: Site) -> None:
+    observer = jpl["earth"] + skyfield_place(site)
     for body, rows in table.filter(pl.col("best_utc").is_not_null()).group_by("body"):
         time = skyfield_time(rows, "best_utc")
-        seen = observer.at(time).observe(target_of(kernel, str(body[0]))).apparent()
-        moon = observer.at(time).observe(kernel["moon"]).apparent()
+        seen = observer.at(time).observe(target_of(jpl, str(body[0]))).apparent()
+        moon = observer.at(time).observe(jpl["moon"]).apparent()
         altitude, azimuth, _ = seen.altaz()
         np.testing.assert_allclose(rows["airless_altitude_deg"], altitude.degrees, atol=1e-5)
         apart = (rows["azimuth_deg"].to_numpy() - azimuth.degrees + 180.0) % 360.0 - 180.0
         np.testing.assert_allclose(apart * np.cos(np.radians(altitude.degrees)), 0.0, atol=1e-5)
-        np.testing.assert_allclose(rows["sun_altitude_deg"], airless(kernel, site, "sun", time), atol=1e-5)
+        np.testing.assert_allclose(rows["sun_altitude_deg"], airless(jpl, site, "sun", time), atol=1e-5)
         np.testing.assert_allclose(
             rows["moon_altitude_deg"],
             refracted_deg(moon.altaz()[0].degrees, site.elevation_m),
             atol=1e-4,
         )
         # Seen from the Earth's centre the phase angle differs by up to a degree.
-        lit = moon.fraction_illuminated(kernel["sun"])
+        lit = moon.fraction_illuminated(jpl["sun"])
         np.testing.assert_allclose(rows["moon_illuminated"], lit, atol=0.002)
         if body[0] != "moon":
             np.testing.assert_allclose(
@@ -175,11 +175,11 @@ def test_angles_at_the_best_moment_agree_with_skyfield(table: pl.DataFrame, kern
 
 
 def test_magnitudes_are_dimmed_by_published_air_mass_and_extinction(
-    table: pl.DataFrame, kernel: Any, site: Site
+    table: pl.DataFrame, jpl: Any, site: Site
 ) -> None:
     some = table.filter(pl.col("body") == "jupiter").filter(pl.col("best_utc").is_not_null())
     time = skyfield_time(some, "best_utc")
-    magnitude = planetary_magnitude(kernel["earth"].at(time).observe(kernel["jupiter barycenter"]))
+    magnitude = planetary_magnitude(jpl["earth"].at(time).observe(jpl["jupiter barycenter"]))
     np.testing.assert_allclose(some["magnitude"], magnitude, atol=0.01)
     altitude = some["altitude_deg"].to_numpy()
     # Kasten and Young 1989; Green 1992.
@@ -209,18 +209,18 @@ def test_what_has_no_window_has_no_angles_and_a_reason(year: pl.DataFrame) -> No
 
 
 def test_the_caution_stands_wherever_the_sun_is_near_or_up(
-    year: pl.DataFrame, kernel: Any, site: Site
+    year: pl.DataFrame, jpl: Any, site: Site
 ) -> None:
     some = year.filter(pl.col("best_utc").is_not_null())
     near = (some["elongation_deg"] < 20.0) | (some["sun_altitude_deg"] > -50.0 / 60.0)
     assert (some["caution"].is_not_null() == near).all()
     # Without a best moment: the middle of the evening decides.
-    observer = kernel["earth"] + skyfield_place(site)
+    observer = jpl["earth"] + skyfield_place(site)
     none = year.filter(pl.col("best_utc").is_null() & (pl.col("body") == "mercury"))
     noons = [dt.datetime.fromisoformat(day) for day in none["evening_date"]]
     middle = [noon.replace(tzinfo=dt.UTC) + dt.timedelta(days=1) - offset(site, noon) for noon in noons]
     at = observer.at(load.timescale(builtin=True).from_datetimes(middle))
-    sun, mercury = (at.observe(kernel[name]).apparent() for name in ("sun", "mercury"))
+    sun, mercury = (at.observe(jpl[name]).apparent() for name in ("sun", "mercury"))
     elongation, height = mercury.separation_from(sun).degrees, sun.altaz()[0].degrees
     due = (elongation < 20.0) | (height > -50.0 / 60.0)
     clear = (np.abs(elongation - 20.0) > 0.1) & (np.abs(height + 50.0 / 60.0) > 1.0)
@@ -375,13 +375,13 @@ def test_the_moon_skips_a_rising_and_a_setting_each_month(store: TrackStore) -> 
     assert (skipped["remark"] == "does not rise between these noons").all()
 
 
-def test_a_body_that_sets_twice_between_two_noons_is_said_to(store: TrackStore, kernel: Any) -> None:
+def test_a_body_that_sets_twice_between_two_noons_is_said_to(store: TrackStore, jpl: Any) -> None:
     # Outer planets set four minutes earlier every day: once a year twice in an evening.
     jupiter = nights(store, HILL, YEAR, [Body.JUPITER])
     twice = jupiter.filter(pl.col("remark").fill_null("").str.contains("twice"))
     assert twice.height >= 1
     time_scale = load.timescale(builtin=True)
-    observer = kernel["earth"] + skyfield_place(HILL)
+    observer = jpl["earth"] + skyfield_place(HILL)
     for row in twice.iter_rows(named=True):
         noon = dt.datetime.fromisoformat(row["evening_date"]) + dt.timedelta(hours=12)
         ends = [
@@ -389,7 +389,7 @@ def test_a_body_that_sets_twice_between_two_noons_is_said_to(store: TrackStore, 
             for day in (noon, noon + dt.timedelta(days=1))
         ]
         search = almanac.find_settings if "sets twice" in row["remark"] else almanac.find_risings
-        times, _ = search(observer, kernel["jupiter barycenter"], *ends)
+        times, _ = search(observer, jpl["jupiter barycenter"], *ends)
         assert len(times) == 2
         again = times[1].utc_datetime() + offset(HILL, noon) + dt.timedelta(seconds=30)
         assert f"again at {again:%H:%M}" in row["remark"]
@@ -437,10 +437,10 @@ def test_outside_the_kernel_nothing_is_guessed(store: TrackStore) -> None:
         nights(store, HILL, (np.datetime64("2700-01-01"), np.datetime64("2700-01-02")))
 
 
-def test_constellations_are_given(table: pl.DataFrame, kernel: Any) -> None:
+def test_constellations_are_given(table: pl.DataFrame, jpl: Any) -> None:
     some = table.filter((pl.col("body") == "jupiter") & pl.col("best_utc").is_not_null())
     time = skyfield_time(some, "best_utc")
     at = load_constellation_map()
     assert some["constellation"].to_list() == list(
-        at(kernel["earth"].at(time).observe(kernel["jupiter barycenter"]))
+        at(jpl["earth"].at(time).observe(jpl["jupiter barycenter"]))
     )

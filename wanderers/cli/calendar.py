@@ -10,7 +10,6 @@ from typing import Final
 import click
 import numpy as np
 
-from wanderers.cli.almanac import STARS_FOR
 from wanderers.cli.calendar_files import (
     DEFAULT_NAME,
     SPLIT_FOLDER,
@@ -21,24 +20,12 @@ from wanderers.cli.calendar_files import (
     warn_about,
     write_calendars,
 )
-from wanderers.cli.options import (
-    Span,
-    Workplace,
-    body_option,
-    frame_option,
-    kind_option,
-    require_in_kernel,
-    span_options,
-    workplace_options,
-)
+from wanderers.cli.event_options import Wanted, event_options
+from wanderers.cli.options import Span, Workplace
+from wanderers.cli.printable import Printable, printable_options, write_printable
+from wanderers.cli.view_options import View, tell_removed, view_options, viewed
 from wanderers.ephemeris import timescales
-from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.dates import datetime64_from_jd, iso_strings
-from wanderers.ephemeris.frames import Frame
-from wanderers.events.almanac import almanac
-from wanderers.events.catalogue import Query
-from wanderers.events.kinds import Kind
-from wanderers.events.scene import Choice, Limits
 from wanderers.files import require_writable
 from wanderers.report import calendars
 from wanderers.report.calendar_parts import PARTS
@@ -47,25 +34,6 @@ from wanderers.report.calendars import Style
 
 LONGEST_ALARM_MINUTES: Final = 4 * 7 * 24 * 60
 JUST_BEFORE_DAYS: Final = 1e-3
-
-
-def meeting_options(command: Callable[..., None]) -> Callable[..., None]:
-    """Add the options that choose meetings of two bodies."""
-    within = click.option(
-        "--within",
-        type=click.FloatRange(0.0, 180.0, min_open=True),
-        metavar="DEG",
-        help="Largest separation of an appulse, largest diameter of a gathering. "
-        "[default: 10; Moon 6, stars 5]",
-    )
-    stars = click.option(
-        "--stars",
-        type=click.Choice(list(STARS_FOR)),
-        default="all",
-        show_default=True,
-        help="Whose meetings with stars to list: Moon's and planets', planets' only, nobody's.",
-    )
-    return within(stars(command))
 
 
 def calendar_options(command: Callable[..., None]) -> Callable[..., None]:
@@ -112,52 +80,56 @@ def calendar_options(command: Callable[..., None]) -> Callable[..., None]:
 
 
 @click.command("calendar")
-@span_options(default_years=1)
-@body_option
-@kind_option
-@frame_option
-@meeting_options
+@event_options(years=1, stars="all")
+@view_options
 @calendar_options
-@workplace_options
+@printable_options
 def command(
     *,
-    span: Span,
-    bodies: tuple[Body, ...],
-    kinds: tuple[Kind, ...],
-    frames: tuple[Frame, ...],
-    within: float | None,
-    stars: str,
+    wanted: Wanted,
+    view: View,
     name: str | None,
     alarms_minutes: tuple[int, ...],
     part: str | None,
     update: Path | None,
     out: Path | None,
+    printable: Printable | None,
     workplace: Workplace,
 ) -> None:
     """Write events as an iCalendar file (RFC 5545) to import or to subscribe to.
 
-    Entries stand at the instant in UTC, to the minute, and do not block time. Without --update the same
-    request gives the same file, octet by octet.
+    Entries stand at the instant in UTC, to the minute; with --site, what can be seen stands at the time to
+    watch by the site's clock. They do not block time. Without --update the same request gives the same file,
+    octet by octet.
 
     \b
     Example: a year of oppositions and stations, later the corrected issue of the same file
         wanderers calendar --from 2027 --to 2028 --kind opposition --kind station --out sky.ics
         wanderers calendar --from 2027 --to 2028 --kind opposition --kind station --update sky.ics
+    \b
+    Example: what a hill can see, and the same year for the wall
+        wanderers calendar --from 2027 --to 2028 --site hilltop --stars none --visible --out hilltop.ics
+        wanderers calendar --from 2027 --to 2028 --site hilltop --stars none --printable wall.pdf
     """  # noqa: D301  (click takes the backspace itself as a mark)
     plan = Plan(out, update, part)
     previous = read_previous(plan)
     if plan.target is not None:
         require_writable(plan.target, folder=part is not None)
-    require_in_kernel(workplace, span)
-    calendars.require_possible_years(_texts(span))
-    limits = Limits() if within is None else Limits(within, within, within, within)
-    choice = Choice(bodies, STARS_FOR[stars], limits)
-    query = Query(span.jd_from, span.jd_to, frozenset(kinds), frozenset(frames), choice)
-    events = almanac(workplace.store, query)
-    style = Style(name or "", workplace.store.kernel, tuple(sorted(set(alarms_minutes))))
-    issues = issues_of(events, style, plan, previous, _utc(span))
+    query = wanted.query(workplace)
+    calendars.require_possible_years(_texts(wanted.span))
+    if printable is not None:
+        left_out = write_printable(printable, query, workplace, view, wanted.within_deg)
+        if plan.target is None:
+            tell_removed([] if workplace.quiet else left_out)
+            return
+    events, removed = viewed(workplace.store, query, view, wanted.within_deg)
+    alarms = tuple(sorted(set(alarms_minutes)))
+    style = Style(name or "", workplace.store.kernel, alarms, view.site)
+    issues = issues_of(events, style, plan, previous, _utc(wanted.span))
     write_calendars(issues, plan)
     warn_about(events, plan)
+    if not workplace.quiet:
+        tell_removed(removed)
     if update is not None and not workplace.quiet:
         tell_changes(issues)
 

@@ -21,6 +21,8 @@ COMMANDS: Final = {
     "calendar": "Write events as an iCalendar file.",
     "gatherings": "Find several bodies within a small circle, over centuries.",
     "nights": "Print what can be seen from a site, evening by evening, or at an instant.",
+    "lineups": "Find runs of evenings on which several bodies stand up at once.",
+    "apparitions": "Print when each planet comes out and is lost again, and when it stands best.",
     "sites": "List, add and check sites; find a city.",
     "kernels": "Say which kernel is used; check one, add one.",
 }
