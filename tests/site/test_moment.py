@@ -29,7 +29,7 @@ MOMENTS = ("2027-03-05T19:00", "2027-03-06T04:30", "2027-08-15T11:00", "2027-12-
 
 
 @pytest.fixture(scope="module")
-def kernel() -> Iterator[Any]:
+def jpl() -> Iterator[Any]:
     with closing(load_file(de440)) as opened:
         yield opened
 
@@ -38,23 +38,23 @@ def jd_of(utc: str) -> float:
     return float(jd_tt_from_utc(parse_date(utc)))
 
 
-def apparent(kernel: Any, site: Site, jd: float, name: str) -> Any:
-    observer = kernel["earth"] + skyfield_place(site)
-    target = kernel[f"{name} barycenter" if name in SYSTEMS else name]
+def apparent(jpl: Any, site: Site, jd: float, name: str) -> Any:
+    observer = jpl["earth"] + skyfield_place(site)
+    target = jpl[f"{name} barycenter" if name in SYSTEMS else name]
     return observer.at(load.timescale(builtin=True).tt_jd(jd)).observe(target).apparent()
 
 
 @pytest.mark.parametrize("site", [HILL, RIDGE, CAPE, PLATEAU], ids=lambda site: site.name)
 @pytest.mark.parametrize("utc", MOMENTS)
 def test_all_bodies_up_are_listed_where_skyfield_sees_them(
-    store: TrackStore, kernel: Any, site: Site, utc: str
+    store: TrackStore, jpl: Any, site: Site, utc: str
 ) -> None:
     jd = jd_of(utc)
     table = everything_up(store, site, jd)
     assert table.columns == list(columns.MOMENT_COLUMNS)
     listed = {row["body"]: row for row in table.iter_rows(named=True) if row["kind"] != "star"}
     for body in BODIES[:9]:
-        altitude, azimuth, _ = apparent(kernel, site, jd, body.value).altaz()
+        altitude, azimuth, _ = apparent(jpl, site, jd, body.value).altaz()
         if body.value in listed:
             row = listed[body.value]
             assert row["airless_altitude_deg"] == pytest.approx(altitude.degrees, abs=1e-5)
@@ -76,13 +76,13 @@ def test_the_brightest_come_first(store: TrackStore) -> None:
 
 
 def test_neighbours_within_ten_degrees_are_named_with_distance_and_side(
-    store: TrackStore, kernel: Any
+    store: TrackStore, jpl: Any
 ) -> None:
     # Both early in March 2027: Mars and Jupiter in Leo.
     jd = jd_of(MOMENTS[0])
     table = everything_up(store, HILL, jd)
     said = table.filter(pl.col("body") == "mars")["neighbours"][0]
-    mars, jupiter = (apparent(kernel, HILL, jd, name) for name in ("mars", "jupiter"))
+    mars, jupiter = (apparent(jpl, HILL, jd, name) for name in ("mars", "jupiter"))
     degrees = float(mars.separation_from(jupiter).degrees)
     (mine,) = [part for part in said.split("; ") if part.startswith("Jupiter")]
     assert mine.startswith(f"Jupiter {degrees:.1f} degrees ")
@@ -119,7 +119,7 @@ def test_the_southern_sky_stands_on_its_head(store: TrackStore) -> None:
     assert [("right" in side, "left" in side) for side in sides] == [(True, False), (False, True)]
 
 
-def test_the_nearest_bright_star_is_the_nearest(store: TrackStore, kernel: Any) -> None:
+def test_the_nearest_bright_star_is_the_nearest(store: TrackStore, jpl: Any) -> None:
     jd = jd_of(MOMENTS[0])
     table = everything_up(store, HILL, jd)
     row = table.filter(pl.col("body") == "mars").row(0, named=True)

@@ -44,7 +44,7 @@ def astropy_offline() -> Iterator[None]:
 
 
 @pytest.fixture(scope="module")
-def kernel() -> Iterator[Any]:
+def jpl() -> Iterator[Any]:
     with closing(load_file(de440)) as opened:
         yield opened
 
@@ -85,12 +85,12 @@ def test_altitude_and_azimuth_agree_with_astropy(sky_at: SkyAt, site: Site, body
 
 @pytest.mark.parametrize("body", BODIES, ids=str)
 @pytest.mark.parametrize("site", EVERYWHERE, ids=lambda site: site.name)
-def test_altitude_and_azimuth_agree_with_skyfield(sky_at: SkyAt, kernel: Any, site: Site, body: Body) -> None:
+def test_altitude_and_azimuth_agree_with_skyfield(sky_at: SkyAt, jpl: Any, site: Site, body: Body) -> None:
     # No polar motion on either side. Skyfield bends light by Jupiter and Saturn too: 8 mas in this stretch.
     name = f"{body.value} barycenter" if body.value in SYSTEMS else body.value
     time = load.timescale(builtin=True).tt_jd(INSTANTS)
-    observer = kernel["earth"] + skyfield_place(site)
-    altitude, azimuth, _ = observer.at(time).observe(kernel[name]).apparent().altaz()
+    observer = jpl["earth"] + skyfield_place(site)
+    altitude, azimuth, _ = observer.at(time).observe(jpl[name]).apparent().altaz()
     at = vantage(sky_at(INSTANTS), site, INSTANTS)
     ours = horizontal(at, see_body(sky_at(INSTANTS), at, body.order).direction[0])
     assert apart_arcsec(ours, altitude.degrees, azimuth.degrees).max() < 0.02
@@ -98,10 +98,10 @@ def test_altitude_and_azimuth_agree_with_skyfield(sky_at: SkyAt, kernel: Any, si
 
 @pytest.mark.parametrize("site", [HILL, RIDGE], ids=lambda site: site.name)
 def test_distance_hour_angle_and_declination_agree_with_skyfield(
-    sky_at: SkyAt, kernel: Any, site: Site
+    sky_at: SkyAt, jpl: Any, site: Site
 ) -> None:
     time = load.timescale(builtin=True).tt_jd(INSTANTS)
-    apparent = (kernel["earth"] + skyfield_place(site)).at(time).observe(kernel["moon"]).apparent()
+    apparent = (jpl["earth"] + skyfield_place(site)).at(time).observe(jpl["moon"]).apparent()
     hour_angle, declination, distance = apparent.hadec()
     at = vantage(sky_at(INSTANTS), site, INSTANTS)
     sight = see_body(sky_at(INSTANTS), at, Body.MOON.order)

@@ -42,13 +42,13 @@ TWILIGHTS = (CIVIL_DEG, NAUTICAL_DEG, ASTRONOMICAL_DEG)
 
 
 @pytest.fixture(scope="module")
-def kernel() -> Iterator[Any]:
+def jpl() -> Iterator[Any]:
     with closing(load_file(de440)) as opened:
         yield opened
 
 
-def target_of(kernel: Any, body: Body) -> Any:
-    return kernel[f"{body.value} barycenter" if body.value in SYSTEMS else body.value]
+def target_of(jpl: Any, body: Body) -> Any:
+    return jpl[f"{body.value} barycenter" if body.value in SYSTEMS else body.value]
 
 
 def grid_of(site: Site, span: tuple[np.datetime64, np.datetime64] = YEAR) -> Floats:
@@ -61,7 +61,7 @@ def of_level(roots: Roots, number: int, *, rising: bool) -> Floats:
 
 @pytest.mark.parametrize("site", INHABITED, ids=lambda site: site.name)
 def test_rise_set_and_twilight_agree_with_skyfield_within_a_second(
-    sky_at: SkyAt, kernel: Any, site: Site
+    sky_at: SkyAt, jpl: Any, site: Site
 ) -> None:
     # Skyfield's defaults: Sun -50 arcminutes, planets -34, Moon -34 less its own radius then.
     jd = grid_of(site)
@@ -69,10 +69,10 @@ def test_rise_set_and_twilight_agree_with_skyfield_within_a_second(
     found = find_crossings(sky_at(jd), site, jd, levels)
     time_scale = load.timescale(builtin=True)
     ends = (time_scale.tt_jd(jd[0]), time_scale.tt_jd(jd[-1]))
-    observer = kernel["earth"] + skyfield_place(site)
+    observer = jpl["earth"] + skyfield_place(site)
     for number, level in enumerate(levels):
         degrees = None if number < len(WANDERERS) else level.airless_altitude_deg
-        target = target_of(kernel, BODIES[level.body])
+        target = target_of(jpl, BODIES[level.body])
         for rising, search in ((True, almanac.find_risings), (False, almanac.find_settings)):
             times, crosses = search(observer, target, *ends, degrees)
             ours, theirs = of_level(found, number, rising=rising), times.tt[crosses]
@@ -96,14 +96,14 @@ def is_near_miss(observer: Any, target: Any, jd_tt: float) -> bool:
 
 
 @pytest.mark.parametrize("site", [*INHABITED, PLATEAU], ids=lambda site: site.name)
-def test_culminations_agree_with_skyfield_within_a_second(sky_at: SkyAt, kernel: Any, site: Site) -> None:
+def test_culminations_agree_with_skyfield_within_a_second(sky_at: SkyAt, jpl: Any, site: Site) -> None:
     jd = grid_of(site)
     found = find_culminations(sky_at(jd), site, jd, [body.order for body in WANDERERS])
     time_scale = load.timescale(builtin=True)
     ends = (time_scale.tt_jd(jd[0]), time_scale.tt_jd(jd[-1]))
-    observer = kernel["earth"] + skyfield_place(site)
+    observer = jpl["earth"] + skyfield_place(site)
     for number, body in enumerate(WANDERERS):
-        expected = almanac.find_transits(observer, target_of(kernel, body), *ends).tt
+        expected = almanac.find_transits(observer, target_of(jpl, body), *ends).tt
         ours = found.jd[found.function == number]
         assert ours.size == expected.size
         assert np.abs(ours - expected).max() < ONE_SECOND
@@ -111,14 +111,14 @@ def test_culminations_agree_with_skyfield_within_a_second(sky_at: SkyAt, kernel:
 
 @pytest.mark.parametrize("site", [POLE, PLATEAU], ids=lambda site: site.name)
 def test_the_one_sunrise_of_the_year_at_a_pole_agrees_with_skyfield(
-    sky_at: SkyAt, kernel: Any, site: Site
+    sky_at: SkyAt, jpl: Any, site: Site
 ) -> None:
     # Skyfield's quick search looks for the hour angle and finds nothing there; its general one does.
     jd = grid_of(site)
     found = find_crossings(sky_at(jd), site, jd, [rise_level(Body.SUN.order)])
     time_scale = load.timescale(builtin=True)
     place = skyfield_place(site)
-    up = almanac.risings_and_settings(kernel, kernel["sun"], place, horizon_degrees=-50.0 / 60.0)
+    up = almanac.risings_and_settings(jpl, jpl["sun"], place, horizon_degrees=-50.0 / 60.0)
     times, rises = almanac.find_discrete(time_scale.tt_jd(jd[0]), time_scale.tt_jd(jd[-1]), up)
     assert len(times) == 2
     for rising in (True, False):

@@ -7,9 +7,11 @@ from typing import Any
 import click
 
 from wanderers.cli.options import BODY, Span, Workplace, require_in_kernel, span_options, workplace_options
-from wanderers.cli.output import Destination, output_options, write_table
+from wanderers.cli.output import MARKDOWN, Destination, write_table
+from wanderers.cli.sentences import sentence_options, write_event_sentences
 from wanderers.ephemeris.bodies import BODIES, NAKED_EYE_PLANETS, Body
 from wanderers.events.gathering_table import FewestAndWidest, gatherings, removals_in_words
+from wanderers.report.phrases.markdown import Wording
 from wanderers.report.tables import gatherings_heading
 
 
@@ -75,7 +77,7 @@ class BodyList(click.ParamType):  # type: ignore[type-arg, unused-ignore] # gene
     help="Add the nearest tighter gatherings of the same bodies, earlier and later, in the whole kernel.",
 )
 @workplace_options
-@output_options
+@sentence_options
 def command(
     *,
     span: Span,
@@ -87,6 +89,7 @@ def command(
     standing: bool,
     workplace: Workplace,
     destination: Destination,
+    wording: Wording,
 ) -> None:
     r"""Find when several bodies stand within a small circle, over years or centuries.
 
@@ -105,4 +108,7 @@ def command(
         table = table.sort("separation_deg", "jd_tt")
     if not workplace.quiet:
         click.echo(f"wanderers: {removals_in_words(removals)}", err=True)
+    if destination.format == MARKDOWN:
+        write_event_sentences(table, workplace.store, wording, destination)
+        return
     write_table(table, destination, gatherings_heading(table, workplace.store.kernel.name))

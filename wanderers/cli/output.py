@@ -5,7 +5,7 @@ from __future__ import annotations
 import functools
 import io
 import sys
-from collections.abc import Callable
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any, Final, TypeVar
@@ -21,8 +21,11 @@ from wanderers.report.tables import print_table
 Command = TypeVar("Command", bound=Callable[..., Any])
 
 FORMATS: Final = ("table", "csv", "parquet", "json")
+MARKDOWN: Final = "markdown"
+"""Sentences to paste; only of commands that take ``--length`` and ``--language``."""
 CALENDAR_WORDS: Final = {"gregorian": "proleptic Gregorian", "julian": "Julian"}
 SUFFIXES: Final = {".csv": "csv", ".parquet": "parquet", ".json": "json", ".txt": "table"}
+MARKDOWN_SUFFIXES: Final = {".md": MARKDOWN, ".markdown": MARKDOWN}
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,7 +33,7 @@ class Destination:
     """Where a table goes, and how.
 
     Attributes:
-        format: one of FORMATS.
+        format: one of FORMATS, or MARKDOWN.
         path: the file, or None for standard output.
         calendar: in which dates before 1582-10-15 are printed.
     """
@@ -42,11 +45,19 @@ class Destination:
 
 def output_options(command: Command) -> Command:
     """Add ``--format`` and ``--out``; the command receives ``destination``, already checked."""
+    return _with_formats(command, FORMATS, SUFFIXES)
 
+
+def output_and_markdown_options(command: Command) -> Command:
+    """Add what :func:`output_options` adds, with Markdown among the formats."""
+    return _with_formats(command, (*FORMATS, MARKDOWN), SUFFIXES | MARKDOWN_SUFFIXES)
+
+
+def _with_formats(command: Command, formats: Sequence[str], suffixes: Mapping[str, str]) -> Command:
     @click.option(
         "--format",
         "form",
-        type=click.Choice(FORMATS),
+        type=click.Choice(formats),
         help="How to write it. [default: by the ending of --out, else table]",
     )
     @click.option(
@@ -68,7 +79,7 @@ def output_options(command: Command) -> Command:
         if path is not None:
             require_folder(path)
             require_writable(path)
-        chosen = form or (SUFFIXES.get(path.suffix.lower(), "table") if path else "table")
+        chosen = form or (suffixes.get(path.suffix.lower(), "table") if path else "table")
         return command(*args, destination=Destination(chosen, path, calendar), **kwargs)
 
     return wrapped  # type: ignore[return-value]
@@ -92,7 +103,14 @@ def write_table(table: pl.DataFrame, destination: Destination, heading: str) -> 
     if destination.path is None:
         _write_to_stdout(table, destination.format, heading)
         return
-    content = _encoded(table, destination.format, heading)
+    write_bytes(_encoded(table, destination.format, heading), destination)
+
+
+def write_bytes(content: bytes, destination: Destination) -> None:
+    """Write finished content to where it goes."""
+    if destination.path is None:
+        click.echo(content, nl=False)
+        return
     with reported_as_output_error(destination.path):
         write_atomically(destination.path, lambda file: _write_all(file.write, content))
 

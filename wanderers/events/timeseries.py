@@ -6,6 +6,7 @@ import numpy as np
 import polars as pl
 
 from wanderers import schema
+from wanderers.arrays import Floats
 from wanderers.ephemeris import constellations, timescales
 from wanderers.ephemeris.appearance import appearance
 from wanderers.ephemeris.bodies import Body
@@ -31,14 +32,16 @@ def time_series(
     on the equator); ``ra_deg`` and ``dec_deg`` are always of date. Columns: ``schema.TRACK_COLUMNS``.
     """
     count = int(np.ceil((jd_to - jd_from) / step_days - 1e-9))
+    every = np.asarray(jd_from + step_days * np.arange(count), dtype=np.float64)
     parts = [
-        _rows(store, body, jd_from + step_days * np.arange(start, min(start + ROWS_AT_ONCE, count)), frame)
+        circumstances(store, body, every[start : start + ROWS_AT_ONCE], frame)
         for start in range(0, count, ROWS_AT_ONCE)
     ]
     return pl.concat(parts)
 
 
-def _rows(store: TrackStore, body: Body, jd: np.ndarray, frame: Frame) -> pl.DataFrame:
+def circumstances(store: TrackStore, body: Body, jd: Floats, frame: Frame = Frame.ECLIPTIC) -> pl.DataFrame:
+    """Return a body's circumstances at rising TT instants, shape (n,): ``schema.TRACK_COLUMNS``."""
     sky = Sky(store.tracks(float(jd[0]), float(jd[-1])))
     target = np.full(jd.size, body.order)
     seen = appearance(sky, target, jd)

@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from typing import Final
 
 import polars as pl
@@ -19,11 +20,15 @@ from wanderers.ephemeris.store import TrackStore
 from wanderers.events.almanac import almanac
 from wanderers.events.catalogue import Query
 from wanderers.events.kinds import Kind
-from wanderers.events.scene import Choice
+from wanderers.events.scene import Choice, Limits
+from wanderers.events.season_study import Study, study_seasons
 from wanderers.events.seasons import seasons
 from wanderers.events.side_by_side import COLUMNS, side_by_side
 from wanderers.events.timeseries import time_series
 from wanderers.report.charts.path import path_span
+from wanderers.site.almanac import almanac_from_site
+from wanderers.site.places import Site
+from wanderers.site.rules import Rules
 
 Progress = Callable[[str], None]
 """Told what is being done, in a few words."""
@@ -34,6 +39,8 @@ LEAST_ROWS: Final = 100
 
 PATHS_AT_MOST: Final = 120
 """Seasons whose path is drawn, the first of a span: some thirteen years of all planets."""
+DOSSIERS_AT_MOST: Final = 60
+"""Seasons that have a dossier, the first of a span: some six years of all planets."""
 ROWS_BEYOND: Final = 800
 """Rows of a course beyond the span at most: two years of days, the longest season."""
 NAMES_IN_STEM: Final = 3
@@ -51,6 +58,9 @@ class Request:
         kinds: kinds of events wanted.
         frames: frames wanted; the first leads: tracks, paths and pictures are in it.
         stars_for: bodies whose meetings with stars are wanted.
+        limits: largest separations.
+        site: from where the events are watched; None for the Earth's centre alone.
+        rules: what counts as watchable there.
     """
 
     jd_from: float
@@ -60,6 +70,9 @@ class Request:
     kinds: tuple[Kind, ...]
     frames: tuple[Frame, ...]
     stars_for: tuple[Body, ...] = PLANETS
+    limits: Limits = field(default_factory=Limits)
+    site: Site | None = None
+    rules: Rules = field(default_factory=Rules)
 
     @property
     def planets(self) -> tuple[Body, ...]:
@@ -87,6 +100,8 @@ class Request:
             for names, of, noun in chosen
             if names and len(names) != of
         ]
+        if self.site is not None:
+            extras.append(re.sub(r"[^\w.+-]+", "-", self.site.name).strip("-") or "site")
         return "_".join((f"{first}_to_{last}", *extras, *(["tt"] if self.scale == "tt" else [])))
 
 
@@ -97,7 +112,7 @@ class Contents:
     Attributes:
         request: what was asked.
         kernel: what it was computed from.
-        events: ``schema.EVENT_COLUMNS``.
+        events: ``schema.EVENT_COLUMNS``, and from a site what it sees of each.
         seasons: ``schema.SEASON_COLUMNS``: those whose retrograde stretch reaches into the span.
         tracks: ``schema.TRACK_COLUMNS`` over the span in the leading frame, by planet.
         definitions: stations and meetings of planets by every definition, ``side_by_side.COLUMNS``.
@@ -106,6 +121,7 @@ class Contents:
             empty when no planet is wanted.
         paths: tracks against the stars (J2000) through the leading frame's seasons, by ``season_id``;
             PATHS_AT_MOST of them.
+        study: what the dossiers of the leading frame's seasons are made of; DOSSIERS_AT_MOST of them.
     """
 
     request: Request
@@ -117,6 +133,7 @@ class Contents:
     arcs: pl.DataFrame
     courses: dict[Body, pl.DataFrame]
     paths: dict[str, pl.DataFrame]
+    study: Study = field(default_factory=Study)
 
     def within_span(self, course: pl.DataFrame) -> pl.DataFrame:
         """Return the part of a course that lies in the span."""
@@ -129,7 +146,7 @@ def gather(store: TrackStore, request: Request, progress: Progress = lambda word
     planets = tuple(body for body in request.planets if body in store.kernel.bodies)
     span, lead = (request.jd_from, request.jd_to), request.frames[0]
     progress("finding events")
-    events = almanac(store, _query(request))
+    events = _events(store, request)
     progress("measuring seasons")
     frames = tuple({Frame.ECLIPTIC: None} | dict.fromkeys(request.frames))
     found = seasons(store, *span, bodies=planets, frames=frames, touching=True)
@@ -139,6 +156,10 @@ def gather(store: TrackStore, request: Request, progress: Progress = lambda word
     step = track_step_days(span[1] - span[0])
     drawn = wanted.filter(pl.col("frame") == lead.value).head(PATHS_AT_MOST)
     compared = (Body.SUN, *planets) if planets else ()
+    paths = {season.item(0, "season_id"): path_track(store, season) for season in drawn.iter_slices(1)}
+    progress("studying seasons")
+    studied = drawn.head(DOSSIERS_AT_MOST)
+    instants = {season_id: paths[season_id]["jd_tt"].to_numpy() for season_id in studied["season_id"]}
     return Contents(
         request,
         store.kernel,
@@ -148,8 +169,15 @@ def gather(store: TrackStore, request: Request, progress: Progress = lambda word
         definitions_of(store, request),
         arcs,
         {body: course_of(store, body, arcs, span, step) for body in compared},
-        {season.item(0, "season_id"): path_track(store, season) for season in drawn.iter_slices(1)},
+        paths,
+        study_seasons(store, studied, instants, span),
     )
+
+
+def _events(store: TrackStore, request: Request) -> pl.DataFrame:
+    if request.site is None:
+        return almanac(store, _query(request))
+    return almanac_from_site(store, _query(request), request.site, request.rules)
 
 
 def _query(request: Request) -> Query:
@@ -158,7 +186,7 @@ def _query(request: Request) -> Query:
         request.jd_to,
         frozenset(request.kinds),
         frozenset(request.frames),
-        Choice(request.bodies, stars_for=request.stars_for),
+        Choice(request.bodies, stars_for=request.stars_for, limits=request.limits),
     )
 
 

@@ -21,10 +21,12 @@ from wanderers.events.kinds import Kind
 from wanderers.files import reported_as_output_error, require_writable
 from wanderers.report import calendars
 from wanderers.report.contents import Contents, Progress
+from wanderers.report.dossier.pages import dossier_jobs, write_dossiers
 from wanderers.report.page import page_of
 from wanderers.report.page_data import packed, table_data
 from wanderers.report.pictures import draw
 from wanderers.report.render import rendered
+from wanderers.site.zones import zone_named
 
 PAGE: Final = "index.html"
 MANIFEST: Final = "report.json"
@@ -74,7 +76,11 @@ def _listed(folder: Path) -> set[str]:
     return {*map(str, manifest.get("files", ())), MANIFEST}
 
 
-def write_report(contents: Contents, folder: Path, progress: Progress = lambda words: None) -> None:
+def write_report(
+    contents: Contents,
+    folder: Path,
+    progress: Progress = lambda words: None,
+) -> None:
     """Write the report folder of a span; an older report there is replaced as a whole.
 
     Args:
@@ -91,9 +97,11 @@ def write_report(contents: Contents, folder: Path, progress: Progress = lambda w
         tables = _write_tables(contents, building)
         calendar, holds = _write_calendar(contents, building)
         progress("drawing")
-        pictures = draw(contents, building / "pictures", progress)
-        progress("composing the page")
-        files = (*tables, (CALENDAR, holds))
+        pictures = draw(contents, building / "pictures", progress, dossier_jobs(contents))
+        progress("composing the pages")
+        site = contents.request.site
+        behind = write_dossiers(contents, pictures, building, zone_named(site.zone) if site else None)
+        files = (*tables, *behind, (CALENDAR, holds))
         page = page_of(contents, pictures, final.name, files)
         html = rendered(page, table_data(contents.events), packed(calendar))
         (building / PAGE).write_text(html, encoding="utf-8")
@@ -165,7 +173,8 @@ def _write_calendar(contents: Contents, folder: Path) -> tuple[bytes, str]:
     events, holds = calendar_events(contents.events)
     first, last = contents.request.ends
     name = f"Wandering planets {first} to {last}"
-    content = calendars.calendar_bytes(events, name=name, kernel=contents.kernel)
+    style = calendars.Style(name, contents.kernel, site=contents.request.site)
+    content = calendars.issue(events, style).content
     (folder / CALENDAR).write_bytes(content)
     return content, holds
 
@@ -209,6 +218,7 @@ def _write_manifest(contents: Contents, folder: Path) -> None:
         "bodies": request.bodies,
         "kinds": request.kinds,
         "frames": request.frames,
+        "site": request.site.name if request.site else None,
         "kernel": kernel.name,
         "kernel_sha256": kernel.sha256,
         "files": files,

@@ -9,7 +9,8 @@ import polars as pl
 
 from wanderers.ephemeris.bodies import PLANETS, Body
 from wanderers.events.kinds import Kind
-from wanderers.report import facts, words
+from wanderers.report import facts, site_words, words
+from wanderers.site.visibility import Verdict
 
 CLOSE_DEG: Final = 1.0
 NONE_FOUND: Final = "none in this span"
@@ -26,6 +27,7 @@ class Glance:
         figures: separation, elongation, magnitude in words.
         caution: what must be said beside it.
         event_id: the row it comes from.
+        local: the instant by the site's clock, and when to watch; empty without a site.
     """
 
     label: str
@@ -34,6 +36,7 @@ class Glance:
     figures: str = ""
     caution: str = ""
     event_id: str = ""
+    local: str = ""
 
 
 def at_a_glance(
@@ -47,7 +50,24 @@ def at_a_glance(
         _turned_back(seasons, jd_from),
         *(_line(first.title, events.filter(first.rule)) for first in FIRSTS if first.kind in kinds),
         *([_closest(events)] if Kind.CONJUNCTION in kinds or Kind.APPULSE in kinds else []),
+        *(_watchable(events) if "verdict" in events.columns else []),
     )
+
+
+def _watchable(events: pl.DataFrame) -> list[Glance]:
+    """Return the lines for the next sights and the closest pair that a site can watch."""
+    seen = events.filter(pl.col("verdict") != Verdict.NOT_VISIBLE.value)
+    pairs = seen.filter(IS_MEETING, OTHER_IS_PLANET).sort("seen_separation_deg", "jd_tt")
+    stations = [
+        _line(f"Next station of {body.label}", events.filter(IS_STATION, pl.col("body") == body.value))
+        for body in PLANETS
+        if not events.filter(IS_STATION, pl.col("body") == body.value).is_empty()
+    ]
+    return [
+        _line("Closest pair to watch from here", pairs.head(1)),
+        _line("Closest two planets to watch from here", pairs.filter(IS_PLANET).head(1)),
+        *stations,
+    ]
 
 
 @dataclass(frozen=True, slots=True)
@@ -63,6 +83,7 @@ IS_PLANET: Final = pl.col("body").is_in([body.value for body in PLANETS])
 OTHER_IS_PLANET: Final = pl.col("other").is_in([body.value for body in PLANETS])
 IS_CLOSE: Final = (pl.col("kind") == Kind.CONJUNCTION) & (pl.col("separation_deg") < CLOSE_DEG)
 IS_INFERIOR: Final = (pl.col("kind") == Kind.SOLAR_CONJUNCTION) & (pl.col("detail") == "inferior")
+IS_STATION: Final = pl.col("kind") == Kind.STATION
 IS_OCCULTATION: Final = pl.col("kind") == Kind.OCCULTATION
 IS_MEETING: Final = pl.col("kind").is_in([Kind.CONJUNCTION, Kind.APPULSE])
 DARK: Final = pl.col("elongation_deg") - pl.col("separation_deg").fill_null(0.0) >= words.NEAR_SUN_DEG
@@ -110,4 +131,17 @@ def _line(title: str, found: pl.DataFrame) -> Glance:
         ", ".join(filter(None, figures)),
         facts.note(event),
         event["event_id"],
+        _local(event),
     )
+
+
+def _local(event: words.Event) -> str:
+    """Return an instant by the site's clock, and when to watch."""
+    if not site_words.has_view(event):
+        return ""
+    instant = f"{event['local_date']} {event['local_time'][:5]} local"
+    if not site_words.is_watchable(event):
+        return f"{instant}; not to be seen from {event['site']}: {event['verdict_reason']}"
+    best = site_words.local(event["best_local"])
+    night = site_words.night_words(event["evening_date"], best)
+    return f"{instant}; watch {night} at {site_words.clock(best)}"

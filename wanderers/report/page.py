@@ -15,11 +15,16 @@ from wanderers.ephemeris.frames import Frame
 from wanderers.events.kinds import Kind
 from wanderers.report import facts
 from wanderers.report.comparison import Compared, compared
-from wanderers.report.contents import Contents
+from wanderers.report.contents import Contents, Request
 from wanderers.report.glance import Glance, at_a_glance
 from wanderers.report.glossary import glossary
 from wanderers.report.pictures import Picture
 from wanderers.report.planets import PlanetSection, planet_sections
+from wanderers.report.site_list import SightGroup, sight_groups
+from wanderers.site.places import Site
+from wanderers.site.reasons import depth_words
+from wanderers.site.summary import place_words, zone_words
+from wanderers.site.visibility import Verdict
 
 FRAME_WORDS: Final = {
     Frame.ECLIPTIC: "true ecliptic and equinox of date",
@@ -66,6 +71,9 @@ class Page:
         glossary: terms and their meanings.
         caution: what holds for the whole page.
         files: names of the data files beside the page, and what they hold.
+        site: name of the site, empty where there is none.
+        sights: what it can watch, easiest first.
+        verdicts: tick boxes of the filter by verdict.
     """
 
     title: str
@@ -89,6 +97,9 @@ class Page:
     glossary: tuple[tuple[str, str], ...]
     caution: str
     files: tuple[tuple[str, str], ...]
+    site: str
+    sights: tuple[SightGroup, ...]
+    verdicts: tuple[Choice, ...]
 
 
 def page_of(
@@ -102,16 +113,13 @@ def page_of(
         stem: name of the report, for the files the page lets people save.
         files: names of the files beside the page, and what they hold.
     """
-    request = contents.request
+    request, site = contents.request, contents.request.site
     first, last = request.ends
     span = f"{first} to {last} {SCALE_WORDS[request.scale]}"
     overviews = [picture for picture in pictures if picture.body is None]
     return Page(
-        title=f"The wandering planets, {first} to {last}",
-        lead=(
-            f"Stations, retrograde seasons and meetings of the planets from {span}, seen from the centre of "
-            f"the Earth: {READERS}."
-        ),
+        title=f"The wandering planets, {first} to {last}{f', from {site.name}' if site else ''}",
+        lead=f"Stations, retrograde seasons and meetings from {span}, {_seen_from(site)}: {READERS}.",
         stem=stem,
         first=first,
         last=last,
@@ -131,6 +139,9 @@ def page_of(
         glossary=glossary(kind for kind in Kind if kind.value in set(contents.events["kind"])),
         caution=facts.PAGE_CAUTION,
         files=tuple(files),
+        site=site.name if site else "",
+        sights=sight_groups(contents.events) if site else (),
+        verdicts=verdict_choices() if site else (),
     )
 
 
@@ -141,8 +152,8 @@ def basis(contents: Contents) -> tuple[tuple[str, str], ...]:
     return (
         ("Span", f"{first} to {last} {SCALE_WORDS[request.scale]}"),
         ("Frame", ", ".join(frame.value for frame in request.frames)),
-        ("Seen from", "the centre of the Earth"),
-        ("Times", "UTC"),
+        ("Seen from", place_words(request.site) if request.site else "the centre of the Earth"),
+        ("Times", f"UTC, and local: {zone_words(request.site)}" if request.site else "UTC"),
         ("Kernel", contents.kernel.name),
         ("Events", f"{contents.events.height}"),
     )
@@ -160,6 +171,7 @@ def provenance(contents: Contents) -> tuple[tuple[str, str], ...]:
         ("Span", f"{first} to {last} ({SCALE_WORDS[request.scale]}), the end itself not included"),
         ("Frame", "; ".join(f"{frame.value}: {FRAME_WORDS[frame]}" for frame in request.frames)),
         ("Places", PLACES),
+        *_site_terms(request),
         ("Time scale", "UTC on this page; TT and UTC in the files. " + timescales.time_scale_facts().source),
         ("Kernel", f"{kernel.name} ({kernel.path.name}, {kernel.size_bytes / 1e6:.0f} MB)"),
         ("Kernel checksum", f"SHA-256 {kernel.sha256}"),
@@ -167,6 +179,34 @@ def provenance(contents: Contents) -> tuple[tuple[str, str], ...]:
         *((term, ", ".join(names) if len(names) < of else "all") for term, names, of in wanted),
         ("Magnitudes", "model magnitudes (V), as for the whole disc; weather and dust on Mars are left out"),
     )
+
+
+def _seen_from(site: Site | None) -> str:
+    if site is None:
+        return "seen from the centre of the Earth"
+    return f"for the whole Earth, and what can be seen of them from {place_words(site)}"
+
+
+def _site_terms(request: Request) -> tuple[tuple[str, str], ...]:
+    """Return from where and by which rules it is said what can be seen."""
+    site, rules = request.site, request.rules
+    if site is None:
+        return ()
+    extinction = rules.criteria.extinction_at(site.elevation_m)
+    return (
+        ("Site", f"{place_words(site)}, {zone_words(site)}"),
+        (
+            "Watchable",
+            f"above {rules.min_altitude_deg:g} degrees with the Sun {depth_words(rules.sun_below_deg)}; "
+            f"{extinction:.2f} magnitudes lost per air mass; night sky of {rules.criteria.dark_zenith_mag:g} "
+            "magnitudes a square arcsecond overhead; a forecast of geometry and light, not of weather",
+        ),
+    )
+
+
+def verdict_choices() -> tuple[Choice, ...]:
+    """Return the verdicts from best to worst."""
+    return tuple(Choice(verdict.value, verdict.value.replace("_", " ")) for verdict in Verdict)
 
 
 def kind_label(kind: str) -> str:

@@ -21,6 +21,8 @@ from wanderers.ephemeris import timescales
 from wanderers.ephemeris.bodies import BODIES
 from wanderers.ephemeris.dates import datetime64_from_jd
 from wanderers.report import facts, words
+from wanderers.site import columns
+from wanderers.site.visibility import Verdict
 
 DECIMALS: Final = {
     "longitude_deg": 6,
@@ -37,6 +39,7 @@ DECIMALS: Final = {
 }
 """Angles to 4 milliarcseconds, distances to 1.5 km."""
 
+SEEN_DECIMALS: Final = 2
 GAP: Final = "{}"
 NUMBER_OF_ID: Final = re.compile(r"(?<=-[cm])[\d-]+$")
 LAST_NUMBER: Final = re.compile(r"(?<![\w.])\d[\d.,]*(?=[^\d]*$)")
@@ -59,10 +62,12 @@ def table_data(events: pl.DataFrame) -> dict[str, Any]:
     rows = list(events.iter_rows(named=True))
     tt = _milliseconds(events["jd_tt"].to_numpy())
     utc = _milliseconds(timescales.jd_utc_from_tt(events["jd_tt"].to_numpy()))
+    names = [*schema.EVENT_COLUMNS, *(name for name in SEEN if name in events.columns)]
     present = sorted(filter(None, events["constellation"].unique()))
     return {
-        "names": list(schema.EVENT_COLUMNS),
-        "columns": {name: _column(events[name]) for name in schema.EVENT_COLUMNS if name not in INSTANTS},
+        "names": names,
+        "columns": {name: _column(events[name]) for name in names if name not in INSTANTS},
+        "verdicts": [verdict.value for verdict in Verdict] if "verdict" in events.columns else [],
         "utc": steps(utc),
         "lag": worded((tt - utc).tolist()),
         "what": worded([words.summary(row) for row in rows], LAST_NUMBER),
@@ -74,11 +79,21 @@ def table_data(events: pl.DataFrame) -> dict[str, Any]:
     }
 
 
+SEEN: Final = (
+    *(name for name in columns.SITE_COLUMNS if not name.endswith("_utc")),
+    "seen_separation_deg",
+    "seen_placement",
+    "circumstances",
+)
+"""What the page holds of the site's columns; the rest stands in the files beside it."""
+
 INSTANTS: Final = ("jd_tt", "tt", "utc")
 NUMBERED: Final = ("event_id", "meeting_id")
 
 
 def _column(values: pl.Series) -> Column:
+    if values.dtype.is_float() and values.name in columns.EVENT_VIEW_COLUMNS:
+        values = values.round(SEEN_DECIMALS)
     if values.name in DECIMALS and values.null_count() < values.len():
         return values.round(DECIMALS[values.name]).to_list()
     return worded(values.to_list(), NUMBER_OF_ID if values.name in NUMBERED else None)

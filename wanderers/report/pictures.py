@@ -7,7 +7,7 @@ import re
 import signal
 import threading
 import urllib.parse
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import ProcessPoolExecutor
 from contextlib import contextmanager
 from dataclasses import dataclass, field, replace
@@ -22,7 +22,7 @@ from matplotlib.figure import Figure
 from wanderers.ephemeris.bodies import Body
 from wanderers.report import facts
 from wanderers.report.charts import brightness, longitude, overview, path
-from wanderers.report.charts.export import save
+from wanderers.report.charts.export import Format, save
 from wanderers.report.contents import Contents, Progress
 
 INLINE_BYTES: Final = 4_800_000
@@ -68,18 +68,24 @@ class Picture:
 
 @dataclass(frozen=True, slots=True)
 class Job:
-    """A picture to be drawn, by a function that can be handed to another process."""
+    """A picture to be drawn, by a function that can be handed to another process; svg among its formats."""
 
     picture: Picture
     draw: Callable[..., Figure]
     arguments: tuple[Any, ...]
     options: dict[str, Any] = field(default_factory=dict)
+    formats: tuple[Format, ...] = ("png", "svg")
 
 
-def draw(contents: Contents, folder: Path, progress: Progress = lambda words: None) -> tuple[Picture, ...]:
-    """Draw every picture of a report as PNG and SVG into a folder, which is made."""
+def draw(
+    contents: Contents,
+    folder: Path,
+    progress: Progress = lambda words: None,
+    more: Sequence[Job] = (),
+) -> tuple[Picture, ...]:
+    """Draw every picture of a report, and ``more`` after them, into a folder, which is made."""
     folder.mkdir()
-    wanted = jobs(contents)
+    wanted = [*jobs(contents), *more]
     drawn = []
     room = INLINE_BYTES
     with _mapping(len(wanted)) as mapped:
@@ -144,7 +150,7 @@ def _path_job(contents: Contents, season: pl.DataFrame) -> Job:
 
 def drawn_into(folder: Path, job: Job) -> Picture:
     """Draw one picture into its files, and return it with its drawing."""
-    save(job.draw(*job.arguments, **job.options), job.picture.stem, folder)
+    save(job.draw(*job.arguments, **job.options), job.picture.stem, folder, formats=job.formats)
     file = folder / f"{job.picture.stem}.svg"
     svg = lean(file.read_text(encoding="utf-8"))
     file.write_text(svg, encoding="utf-8")

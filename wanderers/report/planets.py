@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any, Final
 
 import polars as pl
@@ -58,6 +58,7 @@ class SeasonSheet:
         facts: figures of spoken size, each with the column it was read from.
         caution: about optics near the Sun, empty where the planet is far from it.
         picture: its path, None where none was drawn.
+        dossier: address of its dossier from the page, empty where there is none.
     """
 
     season_id: str
@@ -68,6 +69,7 @@ class SeasonSheet:
     facts: tuple[Fact, ...]
     caution: str
     picture: Picture | None
+    dossier: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -100,7 +102,7 @@ def planet_sections(contents: Contents, pictures: Sequence[Picture]) -> tuple[Pl
 
 def _section(contents: Contents, body: Body, pictures: Sequence[Picture]) -> PlanetSection:
     own = [picture for picture in pictures if picture.body is body]
-    paths = {picture.season_id: picture for picture in own if picture.season_id}
+    paths = {picture.season_id: picture for picture in own if "_path_" in picture.stem}
     rows = contents.seasons.filter(pl.col("body") == body.value)
     events = own_events(contents.events, body)
     return PlanetSection(
@@ -108,13 +110,21 @@ def _section(contents: Contents, body: Body, pictures: Sequence[Picture]) -> Pla
         label=body.label,
         summary=_summary(body, rows),
         seasons=tuple(
-            season_sheet(season, contents.paths.get(season["season_id"]), paths.get(season["season_id"]))
+            replace(
+                season_sheet(season, contents.paths.get(season["season_id"]), paths.get(season["season_id"])),
+                dossier=_dossier(contents, season["season_id"]),
+            )
             for season in rows.iter_rows(named=True)
         ),
         events=tuple(event_row(event) for event in events.head(EVENTS_AT_MOST).iter_rows(named=True)),
         event_count=events.height,
         pictures=tuple(picture for picture in own if not picture.season_id),
     )
+
+
+def _dossier(contents: Contents, season_id: str) -> str:
+    """Return the address of a season's dossier from the page, empty where there is none."""
+    return f"seasons/{season_id}.html" if season_id in contents.study.tracks else ""
 
 
 def own_events(events: pl.DataFrame, body: Body) -> pl.DataFrame:

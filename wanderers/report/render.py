@@ -24,7 +24,18 @@ HEADINGS: Final = (
     ("distance", "Distance"),
     ("diameter", "Size"),
 )
-"""Columns of the page's event table: what the page's program calls them, and their titles."""
+SITE_HEADINGS: Final = (
+    ("local", "Local time"),
+    ("what", "Event"),
+    ("watch", "Watch, local"),
+    ("verdict", "Seen with"),
+    ("altitude", "Height"),
+    ("separation", "Apart"),
+    ("elongation", "From the Sun"),
+    ("magnitude", "Mag"),
+    ("time", "Time (UTC)"),
+)
+"""Columns of the page's event table, without a site and with one: names in the page's program, and titles."""
 
 
 def rendered(page: Page, data: dict[str, Any], calendar: str) -> str:
@@ -35,22 +46,22 @@ def rendered(page: Page, data: dict[str, Any], calendar: str) -> str:
         data: the event table as ``page_data.table_data`` gives it.
         calendar: the calendar file as ``page_data.packed`` gives it.
     """
-    program = f"\n{_packaged('page.js')}"
-    template = _environment().get_template("page.html.j2")
+    program = f"\n{packaged('page.js')}"
+    template = environment().get_template("page.html.j2")
     return template.render(
         {name.name: getattr(page, name.name) for name in fields(page)},
-        headings=HEADINGS,
-        data=data | {"span": page.span, "stem": page.stem, "glare_deg": GLARE_DEG},
+        headings=SITE_HEADINGS if page.site else HEADINGS,
+        data=data | {"site": page.site, "span": page.span, "stem": page.stem, "glare_deg": GLARE_DEG},
         calendar=calendar,
         glare_deg=GLARE_DEG,
-        style=Markup(_packaged("page.css")),
+        style=Markup(packaged("page.css")),
         program=Markup(program),
         program_hash=f"sha256-{base64.b64encode(hashlib.sha256(program.encode()).digest()).decode()}",
     )
 
 
-def _environment() -> Environment:
-    """Return the settings of the template; whatever it is given is escaped."""
+def environment() -> Environment:
+    """Return the settings of the templates; whatever they are given is escaped."""
     environment = Environment(
         loader=PackageLoader("wanderers.report"),
         autoescape=True,
@@ -67,6 +78,6 @@ def _environment() -> Environment:
     return environment
 
 
-def _packaged(name: str) -> str:
+def packaged(name: str) -> str:
     """Return a file that lies beside the template."""
     return resources.files("wanderers.report").joinpath("templates", name).read_text(encoding="utf-8")

@@ -73,6 +73,12 @@ def clock(moment: dt.datetime) -> str:
     return f"{moment:%H:%M}"
 
 
+def night_of(start: dt.datetime, end: dt.datetime) -> str:
+    """Return the date on which a window lies; one that goes past midnight is named by its night."""
+    night = "" if start.date() == end.date() else "night after "
+    return f"{night}{day_words(start.date().isoformat())}"
+
+
 def day_words(date: str) -> str:
     """Return a date with its weekday."""
     day = dt.date.fromisoformat(date)

@@ -6,7 +6,7 @@
 const ROWS_PER_SLICE = 100;
 const ROWS_ON_PAPER = 3000;
 const MANY_FOR_A_CALENDAR = 1000;
-const TICKS = ["body", "kind", "without"];
+const TICKS = ["body", "kind", "verdict", "without"];
 const FIELDS = ["from", "to", "text", "separation", "elongation", "magnitude"];
 
 const data = JSON.parse(document.getElementById("data").textContent);
@@ -60,7 +60,7 @@ let searchTexts = null;
 /** Returns the text of a row that a search looks into; composed when the first search asks for it. */
 function searched(row) {
   searchTexts ??= allRows.map((one) =>
-    [what(one), constellation(one), cell.kind(one), cell.detail(one), iso(time[one]), note(one)].join(" ").toLowerCase());
+    [what(one), constellation(one), cell.kind(one), cell.detail(one), iso(time[one]), note(one), seen(one)].join(" ").toLowerCase());
   return searchTexts[row];
 }
 
@@ -71,8 +71,41 @@ for (const field of TICKS) state[field] = new Set();
 for (const field of FIELDS) state[field] = "";
 let selection = allRows;
 
+/** Returns what a site sees of a row in words; nothing without a site. */
+function seen(row) {
+  if (!data.site) return "";
+  const { verdict_reason, circumstances, seen_placement, seen_separation_deg, other } = cell;
+  const reason = verdict_reason(row);
+  const parts = [`${reason[0].toUpperCase()}${reason.slice(1)}.`];
+  if (seen_placement(row)) parts.push(`${named(other(row))} ${seen_separation_deg(row).toFixed(1)}° ${seen_placement(row)}.`);
+  if (circumstances(row) && circumstances(row) !== reason) parts.push(`${circumstances(row)}.`);
+  return parts.join(" ");
+}
+
+const named = (name) => (name === name.toLowerCase() ? name[0].toUpperCase() + name.slice(1) : name);
+const clock = (local) => local.slice(11, 16);
+
+/** Returns a local date with its weekday, as "Fri 2027-03-05". */
+function dated(local) {
+  const day = local.slice(0, local.indexOf("T"));
+  const weekday = new Date(`${day}T00:00:00Z`).toLocaleDateString("en", { weekday: "short", timeZone: "UTC" });
+  return `${weekday} ${day}`;
+}
+
+/** Returns when to watch, as "Fri 2027-03-05 18:58–20:41, best 19:10"; past midnight the night is named. */
+function watch(row) {
+  const [start, best, end] = [cell.window_start_local(row), cell.best_local(row), cell.window_end_local(row)];
+  if (best === null || cell.verdict(row) === "not_visible") return "";
+  const night = dated(start) === dated(end) ? "" : "night after ";
+  return `${night}${dated(start)} ${clock(start)}–${clock(end)}, best ${clock(best)}`;
+}
+
 const sortKeys = {
   time: (row) => time[row],
+  local: (row) => time[row],
+  watch: (row) => (watch(row) ? Date.parse(cell.best_local(row)) : null),
+  verdict: (row) => data.verdicts.indexOf(cell.verdict(row)),
+  altitude: (row) => cell.altitude_deg(row),
   what,
   constellation,
   separation: cell.separation_deg,
@@ -99,6 +132,7 @@ function filters() {
   return [
     ticked("body", (row) => bodiesOf(row).some((name) => state.body.has(name))),
     ticked("kind", (row) => state.kind.has(cell.kind(row))),
+    data.site ? ticked("verdict", (row) => state.verdict.has(cell.verdict(row))) : null,
     state.without.has("moon") ? { words: "without meetings with the Moon", test: (row) => cell.body(row) !== "moon" || cell.other(row) === null } : null,
     state.without.has("stars") ? { words: "without meetings with stars", test: (row) => cell.other(row) === null || wanderers.has(cell.other(row)) } : null,
     state.without.has("glare") ? { words: "without glare", test: (row) => !(cell.elongation_deg(row) < data.glare_deg) || cell.elongation_deg(row) === null } : null,
@@ -180,7 +214,19 @@ function distance(row) {
   return `${Math.round((au * data.au_km) / 100) * 100} km`.replace(/(\d{3}) km/, ",$1 km");
 }
 
-const printed = [
+const fromSite = [
+  { style: "when", text: (row) => `${cell.local_date(row)} ${cell.local_time(row).slice(0, 5)}` },
+  { style: "what", text: what, beside: seen, below: (row) => cell.caution(row) ?? note(row) },
+  { label: "Watch", text: watch },
+  { label: "Seen with", text: (row) => cell.verdict(row).replace("_", " ") },
+  { style: "figure", label: "Height", text: (row) => (watch(row) ? fixed(cell.altitude_deg(row), 0, "°") : "") },
+  { style: "figure", label: "Apart", text: (row) => angle(cell.separation_deg(row)) },
+  { style: "figure", label: "From the Sun", text: (row) => fixed(cell.elongation_deg(row), 1, "°") },
+  { style: "figure", label: "Magnitude", text: (row) => fixed(cell.magnitude(row), 1) },
+  { style: "when", label: "UTC", text: (row) => minute(cell.utc(row)) },
+];
+
+const printed = data.site ? fromSite : [
   { style: "when", text: (row) => minute(cell.utc(row)) },
   { style: "what", text: what, below: note },
   { label: "In", text: constellation },
@@ -207,6 +253,8 @@ function tableRow(row) {
     const box = element("td", column.text(row), column.style);
     box.setAttribute("role", "cell");
     if (column.label) box.dataset.label = column.label;
+    const beside = column.beside?.(row);
+    if (beside) box.append(element("span", beside, "how"));
     const below = column.below?.(row);
     if (below) box.append(element("span", below, "note"));
     line.append(box);
@@ -249,7 +297,8 @@ function showOnPaper() {
 /** Says, in one line with their number, under which limits the rows shown were found. */
 function claim() {
   const limits = filters().map((filter) => filter.words);
-  return [`${selection.length} of ${rowCount} events`, data.span, "geocentric", ...limits].join(" · ");
+  const from = data.site ? `from ${data.site}` : "geocentric";
+  return [`${selection.length} of ${rowCount} events`, data.span, from, ...limits].join(" · ");
 }
 
 // ---- The address -------------------------------------------------------------------------------------

@@ -1,0 +1,1 @@
+"""A season turned into a plan: which nights, which frame, which stars."""
