@@ -54,9 +54,15 @@ def test_it_holds_page_tables_pictures_calendar_and_its_own_list(report: Path) -
         "overview",
         *(f"{p}_{what}" for p in planets for what in ("longitude", "distance_magnitude_diameter")),
     ]
-    drawn += ["jupiter_path_2026-12-13", "mars_path_2027-01-10"]
+    days = {"jupiter": "2026-12-13", "mars": "2027-01-10"}
+    drawn += [f"{planet}_{what}_{day}" for planet, day in days.items() for what in ("path", "above")]
     expected = {f"{stem}.{kind}" for stem in tables for kind in ("csv", "parquet")}
     expected |= {f"pictures/{stem}.{kind}" for stem in drawn for kind in ("png", "svg")}
+    expected |= {f"pictures/{planet}_curves_{day}.svg" for planet, day in days.items()}
+    expected |= {
+        f"seasons/{season_id}.html" for season_id in pl.read_csv(report / "seasons.csv")["season_id"]
+    }
+    expected |= {f"seasons/{stem}.csv" for stem in ("marks", "stars", "meetings", "standing")}
     assert names(report) == expected | {PAGE, MANIFEST, "events.ics"}
 
 
@@ -93,7 +99,11 @@ def test_pictures_are_whole_and_the_page_holds_the_drawings(report: Path) -> Non
             assert struct.unpack(">I", head[16:20])[0] >= 1200  # PNG, 11.2.2: the width in IHDR
         else:
             assert head.startswith(b"<svg")
-    drawings = [path for path in (report / "pictures").iterdir() if path.suffix == ".svg"]
+    drawings = [
+        path
+        for path in (report / "pictures").glob("*.svg")
+        if not {"above", "curves"} & set(path.stem.split("_"))  # those stand in the dossiers
+    ]
     assert (report / PAGE).read_text().count("data:image/svg+xml,") == len(drawings)
 
 
