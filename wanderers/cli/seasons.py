@@ -20,6 +20,8 @@ from wanderers.ephemeris.bodies import PLANETS, Body
 from wanderers.ephemeris.frames import Frame
 from wanderers.errors import UsageProblem
 from wanderers.events.seasons import seasons
+from wanderers.plans.outlook import outlook as compared
+from wanderers.report.outlook_table import outlook_heading
 from wanderers.report.phrases.markdown import Wording
 from wanderers.report.tables import seasons_heading
 from wanderers.site.places import Site
@@ -27,11 +29,16 @@ from wanderers.site.rules import Rules
 from wanderers.site.season_view import seasons_from_site
 from wanderers.site.summary import place_words, zone_words
 
+BESIDE_OTHERS = (
+    "Set the seasons of the span beside those of so many years before and after, as --site sees them, ranked."
+)
+
 
 @click.command("seasons")
 @span_options(default_years=2)
 @body_option
 @frame_option
+@click.option("--outlook", type=click.FloatRange(1.0, 500.0), metavar="YEARS", help=BESIDE_OTHERS)
 @site_options(required=False)
 @rules_options
 @workplace_options
@@ -41,6 +48,7 @@ def command(
     span: Span,
     bodies: tuple[Body, ...],
     frames: tuple[Frame, ...],
+    outlook: float | None,
     site: Site | None,
     rules: Rules,
     min_altitude: float | None,
@@ -54,10 +62,14 @@ def command(
     Example: the next seasons of Mars and Jupiter
         wanderers seasons --from 2027 --to 2032 --body mars --body jupiter
     \b
-    Example: how they stand from a site at their middles
+    Example: how they stand from a site at their middles, and beside those of 20 years around
         wanderers seasons --from 2027 --to 2032 --body mars --site hilltop
+        wanderers seasons --from 2027 --to 2028 --body mars --site hilltop --outlook 20
     """
     require_in_kernel(workplace, span, bodies)
+    if outlook is not None:
+        _print_outlook(span, bodies, outlook, site, workplace, destination)
+        return
     planets = tuple(body for body in bodies if body in PLANETS)
     table = seasons(workplace.store, span.jd_from, span.jd_to, bodies=planets, frames=frames)
     if destination.format == MARKDOWN:
@@ -74,3 +86,20 @@ def command(
             f"{heading}; at the middle, as seen from {place_words(site)}, local times {zone_words(site)}"
         )
     write_table(table, destination, heading)
+
+
+def _print_outlook(
+    span: Span,
+    bodies: tuple[Body, ...],
+    years: float,
+    site: Site | None,
+    workplace: Workplace,
+    destination: Destination,
+) -> None:
+    if site is None:
+        raise UsageProblem("--outlook compares what a site sees: give --site")
+    if destination.format == MARKDOWN:
+        raise UsageProblem("--outlook is a table: choose another --format or leave it out")
+    planets = tuple(body for body in bodies if body in PLANETS)
+    table = compared(workplace.store, site, (span.jd_from, span.jd_to), years, planets)
+    write_table(table, destination, outlook_heading(table, site, workplace.store.kernel.name))

@@ -11,7 +11,7 @@ import polars as pl
 
 from wanderers import schema
 from wanderers.ephemeris.bodies import Body
-from wanderers.report import site_tables
+from wanderers.report import outlook_table, site_tables
 
 WIDTH: Final = 100
 NARROWEST: Final = 12
@@ -107,6 +107,8 @@ def _layout(table: pl.DataFrame) -> list[Column]:
         return SITE_EVENTS
     if schema.conforms(table, schema.EVENT_COLUMNS):
         return EVENTS if "better_before_utc" not in table.columns else [*EVENTS[:4], *STANDING]
+    if "dark_hours_rank" in table.columns:
+        return outlook_table.LAYOUT
     if schema.conforms(table, schema.SEASON_COLUMNS) and "verdict" in table.columns:
         return SITE_SEASONS
     if schema.conforms(table, schema.SEASON_COLUMNS):

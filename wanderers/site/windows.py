@@ -19,7 +19,7 @@ from wanderers.site.places import Site
 from wanderers.site.refraction import airless_deg, refracted_deg
 from wanderers.site.rules import Rules
 from wanderers.site.topocentric import horizontal, see_body
-from wanderers.site.twilight import Level
+from wanderers.site.twilight import Level, find_crossings, steps_for
 from wanderers.site.visibility import merit, verdicts
 
 RASTER_STEPS: Final = 144
@@ -134,6 +134,15 @@ def watchable_stretches(sky: Sky, bounds: Bounds, index: int, rules: Rules) -> S
     floor = np.maximum(rules.min_altitude_deg, site.horizon.altitude_deg(place.azimuth_deg))
     high = refracted_deg(place.airless_altitude_deg, site.elevation_m) > floor
     return stretches.chosen(dark & high & (bounds.bodies[index] != SUN))
+
+
+def body_hours(sky: Sky, evenings: Evenings, body: int, rules: Rules) -> Floats:
+    """Return how many hours of each evening a body is high in a dark sky, shape (evenings,)."""
+    levels = bounding_levels(evenings.site, [body], rules)
+    crossings = find_crossings(sky, evenings.site, evenings.grid(steps_for(levels)), levels)
+    found = watchable_stretches(sky, bounds_of(evenings, [body], crossings, 0), 0, rules)
+    hours = (found.end_jd - found.start_jd) * 24.0
+    return np.asarray(np.bincount(found.evening, weights=hours, minlength=evenings.count))
 
 
 def dark_moments(sky: Sky, evenings: Evenings, dark: Stretches, steps: int = RASTER_STEPS) -> Moments:
