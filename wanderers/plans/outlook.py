@@ -59,8 +59,9 @@ OUTLOOK_COLUMNS: Final[dict[str, type[pl.DataType]]] = {
     "asked_for": pl.Boolean,
 }
 """One row a season. ``culmination_altitude_deg`` at the middle, as seen; ``dark_hours``: above 30 degrees
-with the Sun below -12, over the threefold span and its three parts; ``path_width_deg`` and ``path_height_deg``: the
-smallest box around the path. Ranks: 1 is the best among the planet's seasons listed; null where unknown."""
+with the Sun below -12, over the threefold span and its three parts; ``path_width_deg`` and
+``path_height_deg``: the smallest box around the path. Ranks: 1 is the best among the planet's seasons listed;
+null where unknown."""
 RANKS: Final = (
     ("altitude_rank", "culmination_altitude_deg", True),
     ("dark_hours_rank", "dark_hours", True),
