@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Sequence
-from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, field, replace
 from typing import Any, Final
 
 import numpy as np
 
+from wanderers import processes
 from wanderers.arrays import Bools, Ints
 from wanderers.ephemeris.blocks import BLOCK_DAYS, block_start_jd
 from wanderers.ephemeris.bodies import BODIES
@@ -163,10 +163,7 @@ def _searched(store: TrackStore, query: Query, cuts: Sequence[tuple[float, float
         scene = scene_of(store, *cut, query.choice)
         return [batch.within(*cut) for finder in finders for batch in finder(scene)]
 
-    if len(cuts) == 1:
-        return _joined(search(cuts[0]))
-    with ThreadPoolExecutor() as pool:
-        return _joined([batch for part in pool.map(search, cuts) for batch in part])
+    return _joined([batch for part in processes.side_by_side(search, cuts) for batch in part])
 
 
 def _joined(batches: Iterable[Batch]) -> list[Batch]:

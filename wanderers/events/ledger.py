@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from concurrent.futures import ThreadPoolExecutor
+from itertools import pairwise
 from typing import Final
 
 import numpy as np
 import polars as pl
 
+from wanderers import processes
 from wanderers.arrays import Floats, Ints
 from wanderers.ephemeris import constellations
 from wanderers.ephemeris.appearance import appearance
@@ -146,8 +147,7 @@ def by_block(store: TrackStore, jd: Floats, look_up: Callable[[slice], Arrays]) 
     indices = store.block_indices(float(jd[0]), float(jd[-1]))
     inner = np.searchsorted(jd, [block_start_jd(index) for index in indices[1:]]).tolist()
     edges = sorted({0, *inner, jd.size})
-    with ThreadPoolExecutor() as pool:
-        parts = list(pool.map(look_up, map(slice, edges[:-1], edges[1:])))
+    parts = list(processes.side_by_side(look_up, [slice(*ends) for ends in pairwise(edges)]))
     return {name: np.concatenate([part[name] for part in parts]) for name in parts[0]}
 
 
