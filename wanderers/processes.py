@@ -1,9 +1,9 @@
 """Work side by side on all cores of this machine.
 
 Where the system can copy a running process, as Linux does, work is done by copies of this one: they begin at
-once with everything that is loaded here, and small numpy calls, which hold the interpreter's lock, do not wait
-for each other. Elsewhere it is done by threads. Work given to copies must use nothing that keeps threads of its own,
-as polars does.
+once with everything that is loaded here, and small numpy calls, which hold the interpreter's lock, do not
+wait for each other. Elsewhere it is done by threads. Work given to copies must use nothing that keeps threads
+of its own, as polars does.
 """
 
 from __future__ import annotations

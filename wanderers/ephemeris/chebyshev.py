@@ -109,7 +109,8 @@ class Series:
 
     def between(self, jd_from: float, jd_to: float) -> Series:
         """Return the segments that touch a span; at least one."""
-        keep = slice(*self.segment_of(np.clip([jd_from, jd_to], self.start_jd, self.end_jd)) + [0, 1])
+        first, last = self.segment_of(np.clip([jd_from, jd_to], self.start_jd, self.end_jd)).tolist()
+        keep = slice(first, last + 1)
         return replace(
             self,
             first_segment=self.first_segment + keep.start,
