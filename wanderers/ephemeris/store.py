@@ -30,7 +30,7 @@ from wanderers.files import write_atomically
 Progress = Callable[[int, int], None]
 """Told, after each block, how many are done of how many."""
 
-BLOCKS_IN_MEMORY: Final = 4
+BLOCKS_IN_MEMORY: Final = 8
 DIGEST_BYTES: Final = 16
 SLACK_DAYS: Final = 64.0
 """How far beyond a span tracks are handed out, where the blocks reach."""

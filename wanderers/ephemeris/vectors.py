@@ -62,6 +62,16 @@ def rotate(rotation: Floats, a: Floats) -> Floats:
     return out
 
 
+def turned_about_x(a: Floats, angle_rad: Floats) -> Floats:
+    """Return vectors, shape (1, 3, n), in axes turned back about x by an angle, shape (n,).
+
+    By the obliquity it leads from the ecliptic to the equator.
+    """
+    c, s = np.cos(angle_rad), np.sin(angle_rad)
+    x, y, z = a[0]
+    return np.stack([x, c * y - s * z, s * y + c * z])[None]
+
+
 def longitude_deg(a: Floats) -> Floats:
     """Return the stack of the longitude of a vector stack: value in [0, 360), rates in deg/day^order."""
     x, y = a[:, 0], a[:, 1]

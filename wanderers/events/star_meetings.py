@@ -50,7 +50,10 @@ def find_star_meetings(scene: Scene) -> list[Batch]:
     extended = np.array([kind == "cluster" for kind in catalogue.kind])
     pairing = Pairing(bodies, FIRST_STAR + np.arange(spoken_for.size))
     directions = sample_stars(scene.samples)
-    conjunctions = [_conjunctions(scene, pairing, directions, frame) for frame in FRAMES]
+    frames = [frame for frame in FRAMES if scene.approaches or frame in scene.frames]
+    conjunctions = [_conjunctions(scene, pairing, directions, frame) for frame in frames]
+    if not scene.approaches:
+        return [one.chosen(~spoken_for[one.other - FIRST_STAR]) for one in conjunctions]
     roots = _extrema(scene, pairing, directions)
     every = np.stack(pairing.targets(roots.function))
     numbered = Roots(np.arange(roots.jd.size), roots.jd, roots.rising)
