@@ -10,7 +10,7 @@ import numpy as np
 import polars as pl
 
 from wanderers import processes
-from wanderers.arrays import Floats
+from wanderers.arrays import Floats, Ints
 from wanderers.ephemeris import constellations
 from wanderers.ephemeris.appearance import appearance
 from wanderers.ephemeris.blocks import block_start_jd
@@ -81,8 +81,6 @@ def _entries(found: Found) -> pl.DataFrame:
     batch = found.batch
     names = pl.Series(target_names())
     none = np.full(batch.jd.size, np.nan)
-    other = pl.Series(np.where(batch.other == NOBODY, 0, batch.other))
-    alone = pl.Series(batch.other == NOBODY)
     contacts = np.full((batch.jd.size, 4), np.nan) if batch.contacts_jd is None else batch.contacts_jd
     entries = pl.DataFrame(
         {
@@ -91,7 +89,7 @@ def _entries(found: Found) -> pl.DataFrame:
                 batch.detail
             ),
             "body": names.gather(batch.body),
-            "other": names.gather(other).zip_with(~alone, pl.Series([None], dtype=pl.String)),
+            "other": _of_pairs(names, batch.other),
             "frame": pl.repeat(
                 batch.frame.value if batch.frame else None, batch.jd.size, eager=True, dtype=pl.String
             ),
@@ -106,7 +104,7 @@ def _entries(found: Found) -> pl.DataFrame:
         }
         | {f"contact{number}_jd_tt": contacts[:, number - 1] for number in CONTACTS}
     )
-    return entries.with_columns(event_id=_event_id(batch.kind), **_meeting_columns(found))
+    return entries.with_columns(event_id=_event_id(found), **_meeting_columns(found))
 
 
 def event_ids(found: Found) -> pl.Series:
@@ -122,31 +120,43 @@ def _meeting_columns(found: Found) -> dict[str, pl.Expr | pl.Series]:
     number, part, parts = (
         pl.Series(values) for values in (found.meeting.number, found.meeting.part, found.meeting.parts)
     )
-    pair = pl.concat_str(pl.col("body"), pl.lit("-"), pl.col("other")).str.to_lowercase()
+    names = _nameable(target_names())
+    body, other = names.gather(found.batch.body), names.gather(found.batch.other)
     return {
-        "meeting_id": pl.concat_str(pair.str.replace_all(UNNAMEABLE, "_"), pl.lit("-m"), number),
+        "meeting_id": pl.concat_str(body, pl.lit("-"), other, pl.lit("-m"), number),
         "meeting_part": pl.when(parts > 0).then(pl.concat_str(part, pl.lit(" of "), parts)),
     }
 
 
-def _event_id(kind: Kind) -> pl.Expr:
-    """Compose the name of an event from what never changes about it."""
-    detail = pl.lit(None, dtype=pl.String) if kind is Kind.APPULSE else pl.col("detail")
-    names: tuple[pl.Expr, ...] = (pl.col("kind"), pl.col("frame"), pl.col("body"), pl.col("other"))
-    if kind is Kind.GATHERING:
-        names = (pl.col("kind"),)
-    if kind is Kind.CONSTELLATION_ENTRY:
-        detail = pl.concat_str(detail, pl.lit("-"), _constellation_names("entered"))
-    parts = [*names, detail]
-    named = pl.concat_str(parts, separator="-", ignore_nulls=True).str.to_lowercase()
-    count = pl.concat_str(pl.lit("-c"), pl.col("round"), pl.lit("-"), pl.col("ordinal"))
-    return named.str.replace_all(UNNAMEABLE, "_") + count
+def _event_id(found: Found) -> pl.Expr:
+    """Compose the names of a batch's events from what never changes about them.
+
+    Words are made nameable before they are handed out to the events: there are few of them.
+    """
+    batch = found.batch
+    targets, kind = _nameable(target_names()), _nameable([batch.kind.value])[0]
+    parts: list[pl.Expr | pl.Series] = [pl.lit(kind)]
+    if batch.kind is not Kind.GATHERING:
+        parts += [pl.lit(batch.frame.value)] if batch.frame else []
+        parts += [targets.gather(batch.body), _of_pairs(targets, batch.other)]
+    if batch.kind is not Kind.APPULSE:
+        parts.append(_nameable([word or None for word in batch.details]).gather(batch.detail))
+    if batch.entered is not None:
+        parts.append(_nameable(constellations.ABBREVIATIONS).gather(batch.entered))
+    count = pl.concat_str(pl.lit("c"), pl.col("round"), pl.lit("-"), pl.col("ordinal"))
+    return pl.concat_str([*parts, count], separator="-", ignore_nulls=True)
 
 
-def _constellation_names(column: str) -> pl.Expr:
-    """Return the abbreviations that a column of indices stands for, null where it is NOT_ENTERED."""
-    names = dict(enumerate(constellations.ABBREVIATIONS))
-    return pl.col(column).replace_strict(names, default=None, return_dtype=pl.String)
+def _nameable(words: Sequence[str | None]) -> pl.Series:
+    """Return words as they stand in names of events."""
+    return pl.Series(words, dtype=pl.String).str.to_lowercase().str.replace_all(UNNAMEABLE, "_")
+
+
+def _of_pairs(names: pl.Series, other: Ints) -> pl.Series:
+    """Return the names of second bodies, null where there is none."""
+    alone = pl.Series(other == NOBODY)
+    named = names.gather(np.where(other == NOBODY, 0, other))
+    return named.zip_with(~alone, pl.Series([None], dtype=pl.String))
 
 
 def _appearance_columns(entries: pl.DataFrame, looked_up: Arrays) -> dict[str, pl.Series]:
