@@ -30,6 +30,10 @@ COMMANDS: Final = {
 
 TRACEBACK_VARIABLE: Final = "WANDERERS_TRACEBACK"
 
+LIBRARY_THREADS: Final = "OPENBLAS_NUM_THREADS"
+"""Read by numpy's linear algebra when it is loaded. Work is shared out to all cores by the stretch of time;
+threads of the library's own would only get in each other's way."""
+
 
 class Interrupted(Exception):
     """The user pressed Ctrl-C."""
@@ -77,6 +81,7 @@ def program() -> None:
 
 def main() -> None:
     """Run the program and leave with its exit status: 0 done, 1 failed, 2 the request was wrong."""
+    os.environ.setdefault(LIBRARY_THREADS, "1")
     try:
         program.main(standalone_mode=False)
     except click.ClickException as error:

@@ -6,6 +6,7 @@ import datetime as dt
 import functools
 import os
 import sys
+import time
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 from enum import StrEnum
@@ -194,7 +195,7 @@ def open_workplace(kernel: Path | None, cache: Path | None, quiet: bool) -> Work
     """Find and check the kernel, and open its tracks."""
     folder = cache or kernels.default_cache_dir()
     found = kernels.inspect_kernel(kernels.find_kernel(kernel, folder, os.environ), folder, warn=warn)
-    progress = silent if quiet or not sys.stderr.isatty() else show_progress
+    progress = silent if quiet or not sys.stderr.isatty() else ProgressLine()
     return Workplace(TrackStore(found, folder, progress=progress, warn=warn), quiet)
 
 
@@ -203,11 +204,28 @@ def warn(line: str) -> None:
     click.echo(f"wanderers: warning: {line}", err=True)
 
 
-def show_progress(done: int, total: int) -> None:
-    """Redraw one line of progress on standard error."""
-    click.echo(
-        f"\rcomputing tracks: {done} of {total} blocks" + ("\n" if done == total else ""), nl=False, err=True
-    )
+class ProgressLine:
+    """One line of progress on standard error, redrawn after each block, with the time left."""
+
+    def __init__(self, clock: Callable[[], float] = time.monotonic) -> None:
+        """Start counting time."""
+        self._clock = clock
+        self._start = clock()
+
+    def __call__(self, done: int, total: int) -> None:
+        """Redraw the line."""
+        left = (self._clock() - self._start) * (total - done) / done
+        note = f", about {time_left(left)} left" if done < total else ""
+        line = f"computing tracks: {done} of {total} blocks{note}"
+        click.echo(f"\r{line:<70}" + ("\n" if done == total else ""), nl=False, err=True)
+
+
+def time_left(seconds: float) -> str:
+    """Say a duration as roughly as it is known: ``40 s``, ``12 min``, ``3 h``."""
+    if seconds < 90.0:
+        return f"{max(round(seconds), 1)} s"
+    minutes = seconds / 60.0
+    return f"{round(minutes)} min" if minutes < 90.0 else f"{round(minutes / 60.0)} h"
 
 
 def require_in_kernel(workplace: Workplace, span: Span, bodies: tuple[Body, ...] = BODIES) -> None:

@@ -8,7 +8,7 @@ import sys
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any, Final, TypeVar
+from typing import Any, BinaryIO, Final, TypeVar
 
 import click
 import polars as pl
@@ -103,7 +103,8 @@ def write_table(table: pl.DataFrame, destination: Destination, heading: str) -> 
     if destination.path is None:
         _write_to_stdout(table, destination.format, heading)
         return
-    write_bytes(_encoded(table, destination.format, heading), destination)
+    with reported_as_output_error(destination.path):
+        write_atomically(destination.path, lambda file: _encode(table, destination.format, heading, file))
 
 
 def write_bytes(content: bytes, destination: Destination) -> None:
@@ -111,32 +112,32 @@ def write_bytes(content: bytes, destination: Destination) -> None:
     if destination.path is None:
         click.echo(content, nl=False)
         return
+
+    def write(file: BinaryIO) -> None:
+        file.write(content)
+
     with reported_as_output_error(destination.path):
-        write_atomically(destination.path, lambda file: _write_all(file.write, content))
-
-
-def _write_all(write: Callable[[bytes], int], content: bytes) -> None:
-    write(content)
+        write_atomically(destination.path, write)
 
 
 def _write_to_stdout(table: pl.DataFrame, form: str, heading: str) -> None:
     if form == "table":
         print_table(table, heading, sys.stdout)
         return
-    click.echo(_encoded(table, form, heading), nl=False)
+    buffer = io.BytesIO()
+    _encode(table, form, heading, buffer)
+    click.echo(buffer.getvalue(), nl=False)
 
 
-def _encoded(table: pl.DataFrame, form: str, heading: str) -> bytes:
-    """Return the bytes of a table in a format."""
+def _encode(table: pl.DataFrame, form: str, heading: str, file: BinaryIO) -> None:
+    """Write a table in a format."""
     if form == "table":
         text = io.StringIO()
         print_table(table, heading, text)
-        return text.getvalue().encode()
-    buffer = io.BytesIO()
-    if form == "csv":
-        table.write_csv(buffer)
+        file.write(text.getvalue().encode())
+    elif form == "csv":
+        table.write_csv(file)
     elif form == "parquet":
-        table.write_parquet(buffer)
+        table.write_parquet(file)
     else:
-        table.write_json(buffer)
-    return buffer.getvalue()
+        file.write(table.write_json().encode())

@@ -13,8 +13,8 @@ from wanderers.ephemeris import constellations, vectors
 from wanderers.ephemeris.bodies import BODIES, EQUATORIAL_RADIUS_KM, Body
 from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.magnitudes import Circumstances, apparent_magnitude, pole_latitudes_deg
-from wanderers.ephemeris.sky import SUN, Sky
-from wanderers.ephemeris.tracks import EARTH_POSITION, POSITION
+from wanderers.ephemeris.sky import SUN, Sky, bent, rotation_from
+from wanderers.ephemeris.tracks import EARTH_DISTANCE, EARTH_POSITION, OBLIQUITY, POSITION, ROTATION
 
 TILTED: Final = (Body.SATURN, Body.URANUS)
 RADII_KM: Final = np.array([EQUATORIAL_RADIUS_KM[body] for body in BODIES])
@@ -25,7 +25,8 @@ class Appearance:
     """Geocentric apparent circumstances of bodies, arrays of shape (n,); see the contract's columns.
 
     ``elongation_deg`` is NaN for the Sun, ``magnitude`` NaN outside its formula's range, ``constellation``
-    an index into :data:`wanderers.ephemeris.constellations.ABBREVIATIONS`.
+    an index into :data:`wanderers.ephemeris.constellations.ABBREVIATIONS`; ``direction`` is a unit vector in
+    GCRS axes, shape (3, n).
     """
 
     longitude_deg: Floats
@@ -38,6 +39,7 @@ class Appearance:
     diameter_arcsec: Floats
     illuminated_fraction: Floats
     constellation: Ints
+    direction: Floats
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,13 +66,20 @@ def appearance(sky: Sky, body: Ints, jd: Floats) -> Appearance:
         body: places in the bodies' written order, shape (n,).
         jd: TT, shape (n,).
     """
-    apparent = sky.apparent(body, jd)
-    sun = sky.apparent(np.full(jd.size, SUN), jd)[0]
-    ecliptic = vectors.rotate(sky.rotation(Frame.ECLIPTIC, jd), apparent)
-    equator = vectors.rotate(sky.rotation(Frame.EQUATOR, jd), apparent)
-    distance = sky.earth_distance_au(body, jd)[0]
-    elongation = vectors.separation_deg(apparent[0], sun)
-    shape = triangle(sky, body, jd)
+    located = sky.tracks.locate(jd, 1)
+    track, sun = (
+        sky.tracks.evaluate_each(rows, jd, slice(POSITION.start, EARTH_DISTANCE.stop), 0, located)
+        for rows in (body, np.full(jd.size, SUN))
+    )
+    apparent = bent(track[:, POSITION], sun[:, POSITION], body == SUN)
+    rotation = rotation_from(sky.tracks.observer.evaluate(0, jd, ROTATION, 0, located), Frame.ECLIPTIC)
+    ecliptic = vectors.rotate(rotation, apparent)
+    obliquity = sky.tracks.observer.evaluate(0, jd, OBLIQUITY, 0, located)[0, 0]
+    equator = vectors.turned_about_x(ecliptic, obliquity)
+    distance = track[0, EARTH_DISTANCE][0]
+    elongation = vectors.separation_deg(apparent[0], vectors.unit(sun[:, POSITION])[0])
+    velocity = sky.tracks.observer.evaluate(0, jd, EARTH_POSITION, 1, located)[1]
+    shape = _triangle(track[0, POSITION], sun[0, POSITION], velocity)
     phase_angle = shape.phase_angle_deg
     return Appearance(
         vectors.longitude_deg(ecliptic)[0],
@@ -83,19 +92,23 @@ def appearance(sky: Sky, body: Ints, jd: Floats) -> Appearance:
         diameter_arcsec(body, distance),
         np.cos(np.radians(phase_angle / 2.0)) ** 2,
         np.asarray(constellations.constellation_at(apparent[0]), dtype=np.int64),
+        apparent[0],
     )
 
 
 def triangle(sky: Sky, body: Ints, jd: Floats) -> Triangle:
-    """Return the triangle behind phase and brightness, the observer's aberration taken out again.
-
-    Taking aberration out to first order leaves a billionth of a radian.
-    """
-    velocity = sky.tracks.observer.evaluate(0, jd, EARTH_POSITION, 1)[1]
+    """Return the triangle behind phase and brightness, the observer's aberration taken out again."""
+    located = sky.tracks.locate(jd, 1)
+    velocity = sky.tracks.observer.evaluate(0, jd, EARTH_POSITION, 1, located)[1]
     seen, sun = (
-        _without_aberration(sky.tracks.evaluate_each(rows, jd, POSITION)[0], velocity)
-        for rows in (body, np.full(jd.size, SUN))
+        sky.tracks.evaluate_each(rows, jd, POSITION, 0, located)[0] for rows in (body, np.full(jd.size, SUN))
     )
+    return _triangle(seen, sun, velocity)
+
+
+def _triangle(seen: Floats, sun: Floats, velocity: Floats) -> Triangle:
+    """Take aberration out of track positions; to first order, which leaves a billionth of a radian."""
+    seen, sun = _without_aberration(seen, velocity), _without_aberration(sun, velocity)
     return Triangle(seen, seen - sun)
 
 

@@ -18,9 +18,10 @@ from wanderers.arrays import Floats
 from wanderers.ephemeris import chebyshev, frames, places
 from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.chebyshev import Series
+from wanderers.ephemeris.nutation import nutation_at_nodes
 from wanderers.ephemeris.spk_files import open_spk
 
-FORMAT_VERSION: Final = 4
+FORMAT_VERSION: Final = 6
 """Raise it whenever what a block holds changes: older files are then rebuilt."""
 
 ORIGIN_JD: Final = 2_287_184.5
@@ -41,9 +42,6 @@ class Layout:
 PLANET_LAYOUT: Final = Layout(16.0, 16)
 MOON_LAYOUT: Final = Layout(4.0, 12)
 OBSERVER_LAYOUT: Final = Layout(16.0, 18)  # nutation's 5-day terms need more terms than any planet
-
-NODES_AT_ONCE: Final = 252
-"""Nutation is a 1365-row outer product: a few hundred instants at a time stay in the processor's cache."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -142,12 +140,12 @@ def _body_series(
 def _observer_series(spk: SPK, index: int, usable: tuple[float, float]) -> Series:
     segments = _segments(OBSERVER_LAYOUT, index, usable)
     day, part = _instants(*segments[1:], OBSERVER_LAYOUT.terms)
+    at_nodes = nutation_at_nodes(*segments[1:], chebyshev.nodes(OBSERVER_LAYOUT.terms))
+    rotation, obliquity = frames.ecliptic_of_date(
+        load.timescale(builtin=True).tt_jd(day, part), (at_nodes[0].ravel(), at_nodes[1].ravel())
+    )
     values = np.empty((1, 13, day.size))
-    timescale = load.timescale(builtin=True)
-    for start in range(0, day.size, NODES_AT_ONCE):
-        some = slice(start, start + NODES_AT_ONCE)
-        rotation, obliquity = frames.ecliptic_of_date(timescale.tt_jd(day[some], part[some]))
-        values[0, :9, some] = rotation.reshape(9, -1)
-        values[0, 9, some] = obliquity
+    values[0, :9] = rotation.reshape(9, -1)
+    values[0, 9] = obliquity
     values[0, 10:] = places.observer_at(spk, _as_tdb(day, part)).position
     return _series(OBSERVER_LAYOUT, segments, values)

@@ -6,7 +6,7 @@ Numerics only: nothing here knows what a planet is. Formulas: Press et al., Nume
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -107,6 +107,18 @@ class Series:
         number = np.floor((jd - self.origin_jd) / self.segment_days).astype(np.int64) - self.first_segment
         return np.clip(number, 0, self.middle_jd.size - 1)
 
+    def between(self, jd_from: float, jd_to: float) -> Series:
+        """Return the segments that touch a span; at least one."""
+        first, last = self.segment_of(np.clip([jd_from, jd_to], self.start_jd, self.end_jd)).tolist()
+        keep = slice(first, last + 1)
+        return replace(
+            self,
+            first_segment=self.first_segment + keep.start,
+            middle_jd=self.middle_jd[keep],
+            half_days=self.half_days[keep],
+            coefficients=self.coefficients[..., keep],
+        )
+
     def locate(self, jd: Floats, order: int = 0) -> Located:
         """Prepare instants, shape (n,), at which this or a like-cut series of no more terms is evaluated."""
         segment = self.segment_of(jd)
@@ -175,8 +187,8 @@ def fit(values: Floats) -> Floats:
     return np.asarray(values @ fit_matrix(values.shape[-1]))
 
 
-def joined(parts: list[Series]) -> Series:
-    """Join series of consecutive segments into one.
+def joined(parts: list[Series], jd_from: float = -np.inf, jd_to: float = np.inf) -> Series:
+    """Join series of consecutive segments into one, leaving out segments wholly outside a span.
 
     Raises:
         ValueError: a gap or an overlap between two parts.
@@ -187,6 +199,8 @@ def joined(parts: list[Series]) -> Series:
         if part.first_segment != expected:
             raise ValueError(f"segments {expected} and {part.first_segment} do not join")
         expected += part.middle_jd.size
+    parts = [part.between(jd_from, jd_to) for part in parts]
+    head = parts[0]
     return Series(
         head.origin_jd,
         head.segment_days,

@@ -35,7 +35,7 @@ def ecliptic_of_j2000() -> Floats:
     return np.asarray(rotation_about_x(float(obliquity)) @ framelib.ICRS_to_J2000)
 
 
-def ecliptic_of_date(time: Time) -> tuple[Floats, Floats]:
+def ecliptic_of_date(time: Time, nutation: tuple[Floats, Floats] | None = None) -> tuple[Floats, Floats]:
     """Return the rotation from GCRS axes to the true ecliptic of date, and the true obliquity.
 
     Precession IAU 2006 (Capitaine et al. 2003) and nutation IAU 2000A, all 1365 terms, as skyfield
@@ -43,11 +43,12 @@ def ecliptic_of_date(time: Time) -> tuple[Floats, Floats]:
 
     Args:
         time: a skyfield time, n instants.
+        nutation: in longitude and obliquity, radians, where it is known already.
 
     Returns:
         rotation, shape (3, 3, n), and obliquity in radians, shape (n,).
     """
-    in_longitude, in_obliquity = nutationlib.iau2000a_radians(time)
+    in_longitude, in_obliquity = nutationlib.iau2000a_radians(time) if nutation is None else nutation
     mean = np.radians(nutationlib.mean_obliquity(time.tdb) / constants.ARCSEC_PER_DEG)
     to_mean_equator = np.einsum("ijn,jk->ikn", time.precession_matrix(), framelib.ICRS_to_J2000)
     to_mean_ecliptic = turned(to_mean_equator, mean, (1, 2))

@@ -37,6 +37,12 @@ def barycentric(spk: SPK, chain: tuple[tuple[int, int], ...], at: Instants) -> t
     return position / constants.AU_KM, velocity / constants.AU_KM
 
 
+def barycentric_position(spk: SPK, chain: tuple[tuple[int, int], ...], at: Instants) -> Floats:
+    """Return the position alone, au, shape (3, n)."""
+    steps = [spk[pair].compute(at.day, at.part) for pair in chain]
+    return np.asarray(sum(steps) / constants.AU_KM)
+
+
 @dataclass(frozen=True, slots=True)
 class Observer:
     """The Earth's centre at n instants: barycentric position (au) and velocity (au/day), shape (3, n)."""
@@ -90,7 +96,7 @@ def geocentric_place(spk: SPK, body: Body, observer: Observer) -> Floats:
     light_time = length(relative) / C
     for _ in range(2):
         light_time = length(relative - velocity * light_time) / C
-    then, _ = barycentric(spk, chain, Instants(observer.at.day, observer.at.part - light_time))
+    then = barycentric_position(spk, chain, Instants(observer.at.day, observer.at.part - light_time))
     seen = then - observer.position
     distance = length(seen)
     direction = aberrated(seen / distance, observer.velocity)

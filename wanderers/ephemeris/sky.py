@@ -6,7 +6,6 @@ Targets are numbered: 0 to 9 the bodies in their written order, from 10 on the s
 from __future__ import annotations
 
 from dataclasses import dataclass
-from math import comb
 from typing import Final
 
 import numpy as np
@@ -101,9 +100,7 @@ class Sky:
         around = self._surroundings(jd, 1)
         rotation = self._rotation(frame, jd, 1, around.located)
         one, two = (
-            vectors.longitude_deg(
-                vectors.rotate(rotation, self._apparent(target, jd, 1, around, steering=True))
-            )
+            vectors.longitude_in(rotation, self._apparent(target, jd, 1, around, steering=True))
             for target in (first, second)
         )
         return vectors.wrapped_deg(one[0] - two[0]), one[1] - two[1]
@@ -116,9 +113,7 @@ class Sky:
         """Return the stack of apparent longitude (right ascension on the equator), shape (order + 1, n)."""
         around = self._surroundings(jd, order)
         rotation = self._rotation(frame, jd, order, around.located)
-        return vectors.longitude_deg(
-            vectors.rotate(rotation, self._apparent(target, jd, order, around, steering=False))
-        )
+        return vectors.longitude_in(rotation, self._apparent(target, jd, order, around, steering=False))
 
     def latitude_deg(self, target: Ints, jd: Floats, frame: Frame) -> Floats:
         """Return apparent latitudes (declinations on the equator), shape (n,)."""
@@ -178,28 +173,26 @@ def rotation_from(observer: Floats, frame: Frame) -> Floats:
     ecliptic = observer[:, ROTATION].reshape(observer.shape[0], 3, 3, -1)
     if frame is Frame.ECLIPTIC:
         return np.asarray(ecliptic)
-    turn = _turn_to_equator(observer[:, OBLIQUITY][:, 0])
-    out = np.zeros_like(ecliptic)
-    for d in range(out.shape[0]):
-        for k in range(d + 1):
-            out[d] += comb(d, k) * np.einsum("ijn,jkn->ikn", turn[k], ecliptic[d - k])
-    return out
+    cosine, sine = _cosine_and_sine(observer[:, OBLIQUITY][:, 0])
+    y, z = ecliptic[:, 1], ecliptic[:, 2]
+    rows = (
+        ecliptic[:, 0],
+        vectors.scaled(cosine, y) - vectors.scaled(sine, z),
+        vectors.scaled(sine, y) + vectors.scaled(cosine, z),
+    )
+    return np.stack(rows, axis=1)
 
 
-def _turn_to_equator(obliquity: Floats) -> Floats:
-    """Return the rotation about x from ecliptic to equator axes as a stack, shape (order + 1, 3, 3, n)."""
-    turn = np.zeros((obliquity.shape[0], 3, 3, obliquity.shape[1]))
-    c, s = np.cos(obliquity[0]), np.sin(obliquity[0])
-    turn[0, 0, 0] = 1.0
-    turn[0, 1:, 1:] = [[c, -s], [s, c]]
-    if obliquity.shape[0] > 1:
-        rate = obliquity[1]
-        turn[1, 1:, 1:] = [[-s * rate, -c * rate], [c * rate, -s * rate]]
-    if obliquity.shape[0] > 2:
-        rate, bend = obliquity[1], obliquity[2]
-        dc, ds = -s * bend - c * rate**2, c * bend - s * rate**2
-        turn[2, 1:, 1:] = [[dc, -ds], [ds, dc]]
-    return turn
+def _cosine_and_sine(angle: Floats) -> tuple[Floats, Floats]:
+    """Return the stacks of cosine and sine of a stack of angles, shape (order + 1, n) each."""
+    cosine, sine = np.empty_like(angle), np.empty_like(angle)
+    cosine[0], sine[0] = np.cos(angle[0]), np.sin(angle[0])
+    if angle.shape[0] > 1:
+        cosine[1], sine[1] = -sine[0] * angle[1], cosine[0] * angle[1]
+    if angle.shape[0] > 2:
+        cosine[2] = -sine[0] * angle[2] - cosine[0] * angle[1] ** 2
+        sine[2] = cosine[0] * angle[2] - sine[0] * angle[1] ** 2
+    return cosine, sine
 
 
 def bent(position: Floats, sun: Floats, is_sun: Bools, *, steering: bool = False) -> Floats:

@@ -1,23 +1,24 @@
 """Tracks on disk: blocks are computed once, kept, checked when read, and extended when more is asked.
 
-A block file is an ``.npz`` archive followed by its BLAKE2b digest; named by the kernel's SHA-256 and the
+A block file is an ``.npz`` archive followed by its CRC-32; named by the kernel's SHA-256 and the
 format's version and written atomically, so a damaged or foreign file is noticed and rebuilt, and an
 interrupted build keeps every block that was finished.
 """
 
 from __future__ import annotations
 
-import hashlib
 import io
 import threading
+import zlib
 from collections.abc import Callable, Iterable
-from concurrent.futures import Executor, Future, ThreadPoolExecutor, as_completed
+from concurrent.futures import Executor, Future, as_completed
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import BinaryIO, Final
 
 import numpy as np
 
+from wanderers import processes
 from wanderers.ephemeris import blocks, tracks
 from wanderers.ephemeris.blocks import Block
 from wanderers.ephemeris.bodies import Body
@@ -29,8 +30,10 @@ from wanderers.files import write_atomically
 Progress = Callable[[int, int], None]
 """Told, after each block, how many are done of how many."""
 
-BLOCKS_IN_MEMORY: Final = 4
-DIGEST_BYTES: Final = 16
+BLOCKS_IN_MEMORY: Final = 8
+CHECKSUM_BYTES: Final = 4
+SLACK_DAYS: Final = 64.0
+"""How far beyond a span tracks are handed out, where the blocks reach."""
 
 
 def silent(done: int, total: int) -> None:
@@ -56,6 +59,7 @@ class TrackStore:
     progress: Progress = silent
     warn: Callable[[str], None] = lambda line: None
     _recent: dict[int, Block] = field(default_factory=dict, repr=False, compare=False)
+    _whole: set[int] = field(default_factory=set, repr=False, compare=False)
     _lock: threading.Lock = field(default_factory=threading.Lock, repr=False, compare=False)
 
     @property
@@ -64,10 +68,11 @@ class TrackStore:
         return usable_span_jd_tt(self.kernel)
 
     def tracks(self, jd_from: float, jd_to: float) -> Tracks:
-        """Return tracks over a span, clipped to the kernel, building what is missing."""
+        """Return tracks over a span and a little beyond, clipped to the kernel, building what is missing."""
         indices = self.block_indices(jd_from, jd_to)
         self.ensure(indices)
-        return tracks.joined([self._block(index) for index in indices])
+        held = [self._block(index) for index in indices]
+        return tracks.joined(held, jd_from - SLACK_DAYS, jd_to + SLACK_DAYS)
 
     def block_indices(self, jd_from: float, jd_to: float) -> range:
         """Return the numbers of the blocks that cover a span, clipped to the kernel."""
@@ -78,7 +83,7 @@ class TrackStore:
 
     def ensure(self, indices: Iterable[int]) -> None:
         """Build and keep every block of these that is missing or damaged."""
-        missing = [index for index in indices if self._read(index) is None]
+        missing = [index for index in indices if not self._is_whole(index)]
         if not missing:
             return
         if self.executor is not None:
@@ -87,25 +92,33 @@ class TrackStore:
             self._keep(self._built(missing[0]))
             self.progress(1, 1)
         else:
-            with ThreadPoolExecutor() as pool:
+            with processes.pool(len(missing)) as pool:
                 self._build_on(pool, missing)
 
     def _build_on(self, executor: Executor, missing: list[int]) -> None:
         """Build blocks on an executor; each is kept as soon as it is there."""
         arguments = (self.kernel.path, self.kernel.bodies)
-        futures: list[Future[Block]] = [
+        pending: set[Future[Block]] = {
             executor.submit(blocks.build_block, *arguments, index, self.span_jd) for index in missing
-        ]
+        }
         try:
-            for done, future in enumerate(as_completed(futures), start=1):
+            for done, future in enumerate(as_completed(set(pending)), start=1):
                 self._keep(future.result())
+                pending.discard(future)  # and with it the block, which would fill the memory
                 self.progress(done, len(missing))
         finally:
-            for future in futures:
+            for future in pending:
                 future.cancel()
 
     def _built(self, index: int) -> Block:
         return blocks.build_block(self.kernel.path, self.kernel.bodies, index, self.span_jd)
+
+    def _is_whole(self, index: int) -> bool:
+        """Return whether a block is at hand; a file is read once to know."""
+        with self._lock:
+            if index in self._recent or (index in self._whole and self._path(index).exists()):
+                return True
+        return self._read(index) is not None
 
     def _block(self, index: int) -> Block:
         """Return a block from memory or disk, building it if it vanished meanwhile."""
@@ -116,7 +129,7 @@ class TrackStore:
         return block
 
     def _read(self, index: int) -> Block | None:
-        """Return a block that is at hand, or None."""
+        """Return a block that is in memory or on disk, or None."""
         with self._lock:
             if index in self._recent:
                 return self._recent[index]
@@ -125,6 +138,7 @@ class TrackStore:
             return None
         try:
             block = read_block(path, index, self._stamp(), self.kernel.bodies)
+            self._whole.add(index)
         except (OSError, ValueError):
             self.warn(f"cache file {path} is damaged or foreign: rebuilt")
             return None
@@ -173,7 +187,7 @@ def write_block(path: Path, block: Block, stamp: str) -> None:
 
     def write(file: BinaryIO) -> None:
         file.write(content)
-        file.write(_digest(content))
+        file.write(_checksum(content))
 
     write_atomically(path, write)
 
@@ -186,9 +200,9 @@ def read_block(path: Path, index: int, stamp: str, bodies: tuple[Body, ...]) -> 
         ValueError: it is not what was written, or another kernel's or version's.
     """
     whole = path.read_bytes()
-    content = whole[:-DIGEST_BYTES]
-    if _digest(content) != whole[-DIGEST_BYTES:]:
-        raise ValueError("the digest does not fit")
+    content = whole[:-CHECKSUM_BYTES]
+    if _checksum(content) != whole[-CHECKSUM_BYTES:]:
+        raise ValueError("the checksum does not fit")
     with np.load(io.BytesIO(content), allow_pickle=False) as archive:
         if str(archive["stamp"]) != f"{stamp} {index}":
             raise ValueError("another kernel's or version's block")
@@ -200,8 +214,9 @@ def read_block(path: Path, index: int, stamp: str, bodies: tuple[Body, ...]) -> 
     return block
 
 
-def _digest(content: bytes) -> bytes:
-    return hashlib.blake2b(content, digest_size=DIGEST_BYTES).digest()
+def _checksum(content: bytes) -> bytes:
+    """Return the CRC-32: it notices damage, and takes a quarter of the time of a cryptographic digest."""
+    return zlib.crc32(content).to_bytes(CHECKSUM_BYTES, "big")
 
 
 def _members(name: str, series: Series) -> dict[str, object]:

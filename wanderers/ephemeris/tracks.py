@@ -111,12 +111,12 @@ class Tracks:
         return out
 
 
-def joined(blocks: Sequence[Block]) -> Tracks:
-    """Join blocks that follow one another."""
+def joined(blocks: Sequence[Block], jd_from: float = -np.inf, jd_to: float = np.inf) -> Tracks:
+    """Join blocks that follow one another, leaving out segments wholly outside a span."""
     moons = [block.moon for block in blocks if block.moon is not None]
     return Tracks(
         blocks[0].bodies,
-        chebyshev.joined([block.planets for block in blocks]),
-        chebyshev.joined(moons) if moons else None,
-        chebyshev.joined([block.observer for block in blocks]),
+        chebyshev.joined([block.planets for block in blocks], jd_from, jd_to),
+        chebyshev.joined(moons, jd_from, jd_to) if moons else None,
+        chebyshev.joined([block.observer for block in blocks], jd_from, jd_to),
     )

@@ -50,16 +50,41 @@ def rotate(rotation: Floats, a: Floats) -> Floats:
     """Return a vector stack seen in a rotating frame.
 
     Args:
-        rotation: shape (order + 1, 3, 3, n), or (3, 3) when it does not change.
+        rotation: shape (order + 1, 3, 3, n), or (3, 3) when it does not change; or some rows of it.
         a: shape (order + 1, 3, n).
     """
     if rotation.ndim == 2:
         return np.asarray(np.einsum("ij,djn->din", rotation, a))
-    out = np.zeros_like(a)
+    out = np.zeros((a.shape[0], rotation.shape[1], a.shape[-1]))
     for d in range(a.shape[0]):
         for k in range(d + 1):
             out[d] += comb(d, k) * np.einsum("ijn,jn->in", rotation[k], a[d - k])
     return out
+
+
+def scaled(factor: Floats, a: Floats) -> Floats:
+    """Return the stack of a scalar stack, shape (order + 1, n), times a vector stack of the same order."""
+    out = np.zeros_like(a)
+    for d in range(a.shape[0]):
+        for k in range(d + 1):
+            out[d] += (comb(d, k) * factor[k]) * a[d - k]
+    return out
+
+
+def longitude_in(rotation: Floats, a: Floats) -> Floats:
+    """Return the stack of the longitude of a vector stack in a rotating frame; see :func:`rotate`."""
+    rows = rotation[:2] if rotation.ndim == 2 else rotation[:, :2]  # a longitude needs no height
+    return longitude_deg(rotate(rows, a))
+
+
+def turned_about_x(a: Floats, angle_rad: Floats) -> Floats:
+    """Return vectors, shape (1, 3, n), in axes turned back about x by an angle, shape (n,).
+
+    By the obliquity it leads from the ecliptic to the equator.
+    """
+    c, s = np.cos(angle_rad), np.sin(angle_rad)
+    x, y, z = a[0]
+    return np.stack([x, c * y - s * z, s * y + c * z])[None]
 
 
 def longitude_deg(a: Floats) -> Floats:

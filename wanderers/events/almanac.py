@@ -14,7 +14,7 @@ from wanderers.ephemeris import timescales
 from wanderers.ephemeris.dates import datetime64_from_jd, iso_strings
 from wanderers.ephemeris.store import TrackStore
 from wanderers.events.catalogue import Found, Query, find_events
-from wanderers.events.ledger import CONTACTS, ledger
+from wanderers.events.ledger import CONTACTS, ledgers
 
 SIGNIFICANT_DELTA_T_UNCERTAINTY_S: Final = 1.0
 """Uncertainty of UTC from which it is printed beside it."""
@@ -29,7 +29,7 @@ def event_table(store: TrackStore, found: Sequence[Found]) -> pl.DataFrame:
     """Describe found events as a table."""
     if not found:
         return pl.DataFrame(schema=schema.EVENT_COLUMNS)
-    return printed(ledger(store, found))
+    return pl.concat([printed(entries) for entries in ledgers(store, found)], rechunk=False)
 
 
 def printed(entries: pl.DataFrame) -> pl.DataFrame:

@@ -33,6 +33,7 @@ def find_appulses(scene: Scene) -> list[Batch]:
     approach from the next, and are dropped when that has been used.
     """
     pairs = scene.held_pairs(BODIES[1:])
+    pairs = pairs if scene.approaches else scene.named_by_approaches(pairs)
     if pairs.shape[1] == 0:
         return []
     roots = chord_extrema(scene, pairs, np.full(pairs.shape[1], 180.0))

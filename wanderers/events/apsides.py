@@ -7,6 +7,7 @@ from typing import Final
 import numpy as np
 from jplephem.spk import SPK
 
+from wanderers import processes
 from wanderers.arrays import Bools, Floats, Ints
 from wanderers.ephemeris.bodies import PLANETS, Body
 from wanderers.ephemeris.kernels import open_kernel
@@ -33,8 +34,12 @@ def find_apsides(store: TrackStore, choice: Choice, jd_from: float, jd_to: float
     orbit of an extremum, a deeper one may lie beyond, and nothing is claimed.
     """
     planets = [body for body in PLANETS if body in choice.bodies and body in store.kernel.bodies]
-    with open_kernel(store.kernel) as spk:
-        found = [_apsides_of(spk, body, jd_from, jd_to, store.span_jd) for body in planets]
+
+    def search(body: Body) -> tuple[Floats, Floats]:
+        with open_kernel(store.kernel) as spk:
+            return _apsides_of(spk, body, jd_from, jd_to, store.span_jd)
+
+    found = list(processes.side_by_side(search, planets))
     return [
         batch(
             kind,

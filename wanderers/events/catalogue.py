@@ -3,23 +3,23 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Sequence
-from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, field, replace
 from typing import Any, Final
 
 import numpy as np
 
+from wanderers import processes
 from wanderers.arrays import Bools, Ints
 from wanderers.ephemeris.blocks import BLOCK_DAYS, block_start_jd
-from wanderers.ephemeris.bodies import BODIES
 from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.sky import Sky
 from wanderers.ephemeris.stars import StarCatalogue, ecliptic_stars
 from wanderers.ephemeris.store import TrackStore
-from wanderers.events import identity, meetings
-from wanderers.events.approaches import find_appulses, find_solar_approaches
+from wanderers.events import identity, kinds, meetings
+from wanderers.events.approaches import APPULSE_DETAILS, find_appulses, find_solar_approaches
 from wanderers.events.apsides import find_apsides
 from wanderers.events.brilliancy import find_greatest_brilliancies
+from wanderers.events.conjunctions import FRAMES as CONJUNCTION_FRAMES
 from wanderers.events.conjunctions import find_conjunctions
 from wanderers.events.constellation_entries import find_constellation_entries
 from wanderers.events.distances import find_perigees_and_apogees
@@ -93,6 +93,12 @@ class Query:
     frames: frozenset[Frame] = frozenset({Frame.ECLIPTIC})
     choice: Choice = field(default_factory=Choice)
 
+    @property
+    def needs_approaches(self) -> bool:
+        """Whether all least separations must be found: to be listed, or to part approaches."""
+        compared = Kind.CONJUNCTION in self.kinds and self.frames >= MEETING_FRAMES
+        return compared or bool(self.kinds & {Kind.APPULSE, Kind.OCCULTATION})
+
 
 @dataclass(frozen=True, slots=True)
 class Found:
@@ -110,8 +116,8 @@ class Found:
     ordinals: Ints
     meeting: Meeting | None = None
 
-    def chosen(self, keep: Bools) -> Found:
-        """Return the events where ``keep`` is true."""
+    def chosen(self, keep: Bools | slice) -> Found:
+        """Return the events where ``keep`` is true, or of a slice."""
         meeting = None if self.meeting is None else self.meeting.chosen(keep)
         return Found(self.batch.chosen(keep), self.rounds[keep], self.ordinals[keep], meeting)
 
@@ -122,8 +128,8 @@ def find_events(store: TrackStore, query: Query) -> list[Found]:
     jd_from, jd_to = max(query.jd_from - PAD_DAYS, low), min(query.jd_to + PAD_DAYS, high)
     store.ensure(store.block_indices(jd_from, jd_to))
     batches = _searched(store, query, stretches(store, jd_from, jd_to))
-    for kinds, finder in SLOW_FINDERS:
-        if kinds & query.kinds:
+    for found_kinds, finder in SLOW_FINDERS:
+        if found_kinds & query.kinds:
             batches += finder(store, query.choice, jd_from, jd_to)
     named = _with_meetings([name_events(batch) for batch in _joined(batches)])
     return [one.chosen(_wanted(one.batch, query)) for one in named if _asked_for(one.batch, query)]
@@ -135,13 +141,13 @@ def stretches(store: TrackStore, jd_from: float, jd_to: float) -> list[tuple[flo
     return [(max(start, jd_from), min(start + BLOCK_DAYS, jd_to)) for start in starts]
 
 
-def scene_of(store: TrackStore, jd_from: float, jd_to: float, choice: Choice) -> Scene:
+def scene_of(store: TrackStore, jd_from: float, jd_to: float, query: Query) -> Scene:
     """Sample the sky over a stretch and a little beyond."""
     margin = 4.0 * STEP_DAYS
     sky = sky_of(store, jd_from - margin, jd_to + margin)
     jd = grid(jd_from, jd_to, STEP_DAYS, store.span_jd)
-    held = [body.order for body in BODIES if body in store.kernel.bodies]
-    return Scene(sky, sample(sky, jd, held), choice)
+    held = [body.order for body in query.choice.concerned() if body in store.kernel.bodies]
+    return Scene(sky, sample(sky, jd, held), query.choice, query.frames, query.needs_approaches)
 
 
 def sky_of(store: TrackStore, jd_from: float, jd_to: float) -> Sky:
@@ -157,16 +163,13 @@ def stars_met() -> StarCatalogue:
 def _searched(store: TrackStore, query: Query, cuts: Sequence[tuple[float, float]]) -> list[Batch]:
     """Run the wanted finders over every stretch, and join their batches."""
     needed = query.kinds | (MET if query.kinds & MET else frozenset())
-    finders = [finder for kinds, finder in FINDERS if kinds & needed]
+    finders = [finder for found_kinds, finder in FINDERS if found_kinds & needed]
 
     def search(cut: tuple[float, float]) -> list[Batch]:
-        scene = scene_of(store, *cut, query.choice)
+        scene = scene_of(store, *cut, query)
         return [batch.within(*cut) for finder in finders for batch in finder(scene)]
 
-    if len(cuts) == 1:
-        return _joined(search(cuts[0]))
-    with ThreadPoolExecutor() as pool:
-        return _joined([batch for part in pool.map(search, cuts) for batch in part])
+    return _joined([batch for part in processes.side_by_side(search, cuts) for batch in part])
 
 
 def _joined(batches: Iterable[Batch]) -> list[Batch]:
@@ -206,9 +209,9 @@ def _with_meetings(named: list[Found]) -> list[Found]:
     """Say of every conjunction and appulse which meeting it belongs to, and mark the quasi ones."""
     conjunctions = [one for one in named if one.batch.kind is Kind.CONJUNCTION]
     appulses = [one for one in named if one.batch.kind is Kind.APPULSE]
-    if not appulses:
+    if not conjunctions and not appulses:
         return named
-    (appulse,) = appulses
+    appulse = appulses[0] if appulses else name_events(NO_APPULSES)
     batches = [one.batch for one in conjunctions]
     laps = [identity.encounters(batch, stars_met()) for batch in (*batches, appulse.batch)]
     laps = meetings.inner_clusters(batches, appulse.batch, laps)
@@ -237,4 +240,14 @@ FRAMED: Final = frozenset({Kind.STATION, Kind.CONJUNCTION})
 """Kinds that exist in several frames; the others are listed whatever frames are asked."""
 
 MET: Final = frozenset({Kind.CONJUNCTION, Kind.APPULSE})
-"""Kinds that make up meetings: searched together in all frames, whatever was asked."""
+"""Kinds that make up meetings: searched together, whatever was asked."""
+
+MEETING_FRAMES: Final = frozenset(CONJUNCTION_FRAMES)
+NO_APPULSES: Final = kinds.batch(
+    Kind.APPULSE,
+    None,
+    np.empty(0),
+    np.empty(0, dtype=np.int64),
+    details=APPULSE_DETAILS,
+    figure_deg=np.empty(0),
+)

@@ -16,11 +16,18 @@ FRAMES = (Frame.ECLIPTIC, Frame.EQUATOR)
 
 
 def find_conjunctions(scene: Scene) -> list[Batch]:
-    """Find the conjunctions of every chosen pair of Moon and planets, in longitude and in right ascension."""
+    """Find the conjunctions of every chosen pair of Moon and planets, in longitude and in right ascension.
+
+    Some pairs' meetings cannot be named without both, so theirs are found in both whatever is wanted.
+    """
     pairs = scene.held_pairs(BODIES[1:])
     if pairs.shape[1] == 0:
         return []
-    return [_conjunctions_in(scene, pairs, frame) for frame in FRAMES]
+    in_frames = [
+        (frame, pairs if scene.approaches or frame in scene.frames else scene.named_by_approaches(pairs))
+        for frame in FRAMES
+    ]
+    return [_conjunctions_in(scene, some, frame) for frame, some in in_frames if some.size]
 
 
 def _conjunctions_in(scene: Scene, pairs: Ints, frame: Frame) -> Batch:

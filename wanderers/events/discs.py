@@ -123,7 +123,9 @@ def contacts(gaps: Gaps, met: Pairs, span_jd: tuple[float, float]) -> Floats:
 
     def gap(row: Ints, jd: Floats) -> tuple[Floats, Floats]:
         some, h = met.chosen(pair[row]), SLOPE_STEP_DAYS
-        before, at, after = (gaps(some, jd + days) for days in (-h, 0.0, h))
+        three = Pairs(np.tile(some.first, 3), np.tile(some.second, 3), np.tile(jd, 3))
+        at_three = gaps(three, (jd + h * np.array([-1.0, 0.0, 1.0])[:, None]).ravel())
+        before, at, after = np.split(at_three, 3, axis=1)
         own = edge[row], np.arange(jd.size)
         return at[own], (after[own] - before[own]) / (2.0 * h)
 

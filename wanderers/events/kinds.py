@@ -69,8 +69,8 @@ class Batch:
     figure_deg: Floats | None = None
     entered: Ints | None = None
 
-    def chosen(self, keep: Bools) -> Batch:
-        """Return the events where ``keep`` is true."""
+    def chosen(self, keep: Bools | slice) -> Batch:
+        """Return the events where ``keep`` is true, or of a slice."""
         return replace(
             self,
             jd=self.jd[keep],

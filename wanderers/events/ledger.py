@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
-from concurrent.futures import ThreadPoolExecutor
+from collections.abc import Callable, Iterator, Sequence
+from itertools import pairwise
 from typing import Final
 
 import numpy as np
 import polars as pl
 
+from wanderers import processes
 from wanderers.arrays import Floats, Ints
 from wanderers.ephemeris import constellations
 from wanderers.ephemeris.appearance import appearance
@@ -24,6 +25,19 @@ CONTACTS: Final = (1, 2, 3, 4)
 UNNAMEABLE: Final = r"[^a-z0-9+_-]+"
 """What does not belong in a name of an event: blanks and accents of star names."""
 
+LOOKED_UP: Final = (
+    "longitude_deg",
+    "latitude_deg",
+    "ra_deg",
+    "dec_deg",
+    "separation_deg",
+    "elongation_deg",
+    "distance_au",
+    "magnitude",
+    "diameter_arcsec",
+    "constellation",
+)
+
 Arrays = dict[str, np.ndarray]
 
 
@@ -33,8 +47,28 @@ def ledger(store: TrackStore, found: Sequence[Found]) -> pl.DataFrame:
     Besides columns of the event table there are ``round``, ``ordinal`` and ``approach`` (what names are made
     of), ``figure_deg`` (what the finder measured), the contacts as Julian dates, and the target numbers.
     """
-    entries = pl.concat([_entries(one) for one in found]).sort("jd_tt", "event_id")
-    return entries.with_columns(**_appearance_columns(store, entries))
+    return pl.concat(ledgers(store, found))
+
+
+def ledgers(store: TrackStore, found: Sequence[Found]) -> Iterator[pl.DataFrame]:
+    """Yield the ledger in pieces, a block of tracks each, so that no more need be in memory."""
+    parts = _by_block(store, found)
+    columns = processes.side_by_side(lambda number: _looked_up(store, parts[number]), range(len(parts)))
+    for part, looked_up in zip(parts, columns, strict=True):
+        entries = pl.concat([_entries(one) for one in part])
+        yield entries.with_columns(**_appearance_columns(entries, looked_up)).sort("jd_tt", "event_id")
+
+
+def _by_block(store: TrackStore, found: Sequence[Found]) -> list[list[Found]]:
+    """Cut batches where blocks of tracks meet; the last part may be without events."""
+    ends = [end for one in found if one.batch.jd.size for end in one.batch.jd[[0, -1]].tolist()]
+    ends = ends or [store.span_jd[0]]
+    starts = [block_start_jd(index) for index in store.block_indices(min(ends), max(ends))]
+    edges = [np.searchsorted(one.batch.jd, [-np.inf, *starts[1:], np.inf]) for one in found]
+    return [
+        [one.chosen(slice(*edge[number : number + 2])) for one, edge in zip(found, edges, strict=True)]
+        for number in range(len(starts))
+    ]
 
 
 def target_names() -> tuple[str, ...]:
@@ -47,8 +81,6 @@ def _entries(found: Found) -> pl.DataFrame:
     batch = found.batch
     names = pl.Series(target_names())
     none = np.full(batch.jd.size, np.nan)
-    other = pl.Series(np.where(batch.other == NOBODY, 0, batch.other))
-    alone = pl.Series(batch.other == NOBODY)
     contacts = np.full((batch.jd.size, 4), np.nan) if batch.contacts_jd is None else batch.contacts_jd
     entries = pl.DataFrame(
         {
@@ -57,7 +89,7 @@ def _entries(found: Found) -> pl.DataFrame:
                 batch.detail
             ),
             "body": names.gather(batch.body),
-            "other": names.gather(other).zip_with(~alone, pl.Series([None], dtype=pl.String)),
+            "other": _of_pairs(names, batch.other),
             "frame": pl.repeat(
                 batch.frame.value if batch.frame else None, batch.jd.size, eager=True, dtype=pl.String
             ),
@@ -72,7 +104,7 @@ def _entries(found: Found) -> pl.DataFrame:
         }
         | {f"contact{number}_jd_tt": contacts[:, number - 1] for number in CONTACTS}
     )
-    return entries.with_columns(event_id=_event_id(batch.kind), **_meeting_columns(found))
+    return entries.with_columns(event_id=_event_id(found), **_meeting_columns(found))
 
 
 def event_ids(found: Found) -> pl.Series:
@@ -88,48 +120,53 @@ def _meeting_columns(found: Found) -> dict[str, pl.Expr | pl.Series]:
     number, part, parts = (
         pl.Series(values) for values in (found.meeting.number, found.meeting.part, found.meeting.parts)
     )
-    pair = pl.concat_str(pl.col("body"), pl.lit("-"), pl.col("other")).str.to_lowercase()
+    names = _nameable(target_names())
+    body, other = names.gather(found.batch.body), names.gather(found.batch.other)
     return {
-        "meeting_id": pl.concat_str(pair.str.replace_all(UNNAMEABLE, "_"), pl.lit("-m"), number),
+        "meeting_id": pl.concat_str(body, pl.lit("-"), other, pl.lit("-m"), number),
         "meeting_part": pl.when(parts > 0).then(pl.concat_str(part, pl.lit(" of "), parts)),
     }
 
 
-def _event_id(kind: Kind) -> pl.Expr:
-    """Compose the name of an event from what never changes about it."""
-    detail = pl.lit(None, dtype=pl.String) if kind is Kind.APPULSE else pl.col("detail")
-    names: tuple[pl.Expr, ...] = (pl.col("kind"), pl.col("frame"), pl.col("body"), pl.col("other"))
-    if kind is Kind.GATHERING:
-        names = (pl.col("kind"),)
-    if kind is Kind.CONSTELLATION_ENTRY:
-        detail = pl.concat_str(detail, pl.lit("-"), _constellation_names("entered"))
-    parts = [*names, detail]
-    named = pl.concat_str(parts, separator="-", ignore_nulls=True).str.to_lowercase()
-    count = pl.concat_str(pl.lit("-c"), pl.col("round"), pl.lit("-"), pl.col("ordinal"))
-    return named.str.replace_all(UNNAMEABLE, "_") + count
+def _event_id(found: Found) -> pl.Expr:
+    """Compose the names of a batch's events from what never changes about them.
+
+    Words are made nameable before they are handed out to the events: there are few of them.
+    """
+    batch = found.batch
+    targets, kind = _nameable(target_names()), _nameable([batch.kind.value])[0]
+    parts: list[pl.Expr | pl.Series] = [pl.lit(kind)]
+    if batch.kind is not Kind.GATHERING:
+        parts += [pl.lit(batch.frame.value)] if batch.frame else []
+        parts += [targets.gather(batch.body), _of_pairs(targets, batch.other)]
+    if batch.kind is not Kind.APPULSE:
+        parts.append(_nameable([word or None for word in batch.details]).gather(batch.detail))
+    if batch.entered is not None:
+        parts.append(_nameable(constellations.ABBREVIATIONS).gather(batch.entered))
+    count = pl.concat_str(pl.lit("c"), pl.col("round"), pl.lit("-"), pl.col("ordinal"))
+    return pl.concat_str([*parts, count], separator="-", ignore_nulls=True)
 
 
-def _constellation_names(column: str) -> pl.Expr:
-    """Return the abbreviations that a column of indices stands for, null where it is NOT_ENTERED."""
-    names = dict(enumerate(constellations.ABBREVIATIONS))
-    return pl.col(column).replace_strict(names, default=None, return_dtype=pl.String)
+def _nameable(words: Sequence[str | None]) -> pl.Series:
+    """Return words as they stand in names of events."""
+    return pl.Series(words, dtype=pl.String).str.to_lowercase().str.replace_all(UNNAMEABLE, "_")
 
 
-def _appearance_columns(store: TrackStore, ledger: pl.DataFrame) -> dict[str, pl.Series]:
-    """Look up place, brightness and size of every event's body, block by block."""
-    jd = ledger["jd_tt"].to_numpy()
-    body, other = ledger["body_number"].to_numpy(), ledger["other_number"].to_numpy()
+def _of_pairs(names: pl.Series, other: Ints) -> pl.Series:
+    """Return the names of second bodies, null where there is none."""
+    alone = pl.Series(other == NOBODY)
+    named = names.gather(np.where(other == NOBODY, 0, other))
+    return named.zip_with(~alone, pl.Series([None], dtype=pl.String))
 
-    def look_up(some: slice) -> Arrays:
-        return _looked_up(store, body[some], other[some], jd[some])
 
-    joined = by_block(store, jd, look_up)
-    entered = ledger["entered"].to_numpy()
-    stood_in = np.where(entered == NOT_ENTERED, joined.pop("constellation"), entered)
+def _appearance_columns(entries: pl.DataFrame, looked_up: Arrays) -> dict[str, pl.Series]:
+    """Return columns of place, brightness and size of every event's body."""
+    entered = entries["entered"].to_numpy()
+    stood_in = np.where(entered == NOT_ENTERED, looked_up.pop("constellation"), entered)
     constellation = pl.Series(constellations.ABBREVIATIONS).gather(stood_in)
-    by_finder = ledger["kind"].is_in([Kind.GATHERING.value, Kind.TRANSIT.value])
-    columns = {name: pl.Series(values, nan_to_null=True) for name, values in joined.items()}
-    columns["separation_deg"] = ledger["figure_deg"].zip_with(by_finder, columns["separation_deg"])
+    by_finder = entries["kind"].is_in([Kind.GATHERING.value, Kind.TRANSIT.value])
+    columns = {name: pl.Series(values, nan_to_null=True) for name, values in looked_up.items()}
+    columns["separation_deg"] = entries["figure_deg"].zip_with(by_finder, columns["separation_deg"])
     return columns | {"constellation": constellation}
 
 
@@ -146,32 +183,20 @@ def by_block(store: TrackStore, jd: Floats, look_up: Callable[[slice], Arrays]) 
     indices = store.block_indices(float(jd[0]), float(jd[-1]))
     inner = np.searchsorted(jd, [block_start_jd(index) for index in indices[1:]]).tolist()
     edges = sorted({0, *inner, jd.size})
-    with ThreadPoolExecutor() as pool:
-        parts = list(pool.map(look_up, map(slice, edges[:-1], edges[1:])))
+    parts = list(processes.side_by_side(look_up, [slice(*ends) for ends in pairwise(edges)]))
     return {name: np.concatenate([part[name] for part in parts]) for name in parts[0]}
 
 
-def _looked_up(store: TrackStore, body: Ints, other: Ints, jd: Floats) -> dict[str, np.ndarray]:
-    """Describe the bodies of one block's events."""
+def _looked_up(store: TrackStore, part: Sequence[Found]) -> Arrays:
+    """Look up the bodies of one block's events, batch after batch."""
+    body, other, jd = (
+        np.concatenate([getattr(one.batch, name) for one in part]) for name in ("body", "other", "jd")
+    )
     if jd.size == 0:
-        jd, body, other = np.array([store.span_jd[0]]), np.zeros(1, np.int64), np.zeros(1, np.int64)
-        return {name: values[:0] for name, values in _looked_up(store, body, other, jd).items()}
-    sky = sky_of(store, float(jd[0]), float(jd[-1]))
+        return {name: np.empty(0, dtype=np.int64 if name == "constellation" else float) for name in LOOKED_UP}
+    sky = sky_of(store, float(jd.min()), float(jd.max()))
     seen = appearance(sky, body, jd)
     apart = np.full(jd.size, np.nan)
     pair = other != NOBODY
-    apart[pair] = separation_deg(
-        sky.apparent(body[pair], jd[pair])[0], sky.apparent(other[pair], jd[pair])[0]
-    )
-    return {
-        "longitude_deg": seen.longitude_deg,
-        "latitude_deg": seen.latitude_deg,
-        "ra_deg": seen.ra_deg,
-        "dec_deg": seen.dec_deg,
-        "separation_deg": apart,
-        "elongation_deg": seen.elongation_deg,
-        "distance_au": seen.distance_au,
-        "magnitude": seen.magnitude,
-        "diameter_arcsec": seen.diameter_arcsec,
-        "constellation": seen.constellation,
-    }
+    apart[pair] = separation_deg(seen.direction[:, pair], sky.apparent(other[pair], jd[pair])[0])
+    return {name: getattr(seen, name, apart) for name in LOOKED_UP}

@@ -45,8 +45,8 @@ class Meeting:
     parts: Ints
     approach: Ints
 
-    def chosen(self, keep: Bools) -> Meeting:
-        """Return the entries where ``keep`` is true."""
+    def chosen(self, keep: Bools | slice) -> Meeting:
+        """Return the entries where ``keep`` is true, or of a slice."""
         return Meeting(self.number[keep], self.part[keep], self.parts[keep], self.approach[keep])
 
 

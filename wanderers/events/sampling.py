@@ -38,7 +38,7 @@ class Samples:
 
     def longitude_deg(self, target: int, frame: Frame) -> Floats:
         """Return the stack of longitude or right ascension of a target, shape (3, n)."""
-        return vectors.longitude_deg(vectors.rotate(self.rotations[frame], self.directions[target]))
+        return vectors.longitude_in(self.rotations[frame], self.directions[target])
 
     def longitudes_deg(self, targets: Sequence[int], frame: Frame) -> Floats:
         """Return the stacks of several targets, shape (targets, 3, n)."""

@@ -10,7 +10,8 @@ from typing import Final
 import numpy as np
 
 from wanderers.arrays import Floats, Ints
-from wanderers.ephemeris.bodies import BODIES, PLANETS, Body
+from wanderers.ephemeris.bodies import BODIES, INNER, PLANETS, Body
+from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.sky import FIRST_STAR, Sky
 from wanderers.events.sampling import Samples
 
@@ -59,6 +60,10 @@ class Choice:
     limits: Limits = field(default_factory=Limits)
     fewest_gathered: int = 3
 
+    def concerned(self) -> tuple[Body, ...]:
+        """Return the bodies whose motion matters: the Sun's always does, for elongations."""
+        return BODIES if len(self.bodies) == 1 else tuple(b for b in BODIES if b in (Body.SUN, *self.bodies))
+
     def among(self, allowed: Sequence[Body]) -> Ints:
         """Return the target numbers of the chosen bodies among some, in written order."""
         return np.array([body.order for body in allowed if body in self.bodies], dtype=np.int64)
@@ -82,11 +87,16 @@ class Scene:
         sky: tracks and stars.
         samples: all bodies held, on the common grid.
         choice: what is wanted.
+        frames: in which stations and conjunctions are wanted.
+        approaches: whether the least separations of all pairs are wanted; else only those are found without
+            which conjunctions cannot be named.
     """
 
     sky: Sky
     samples: Samples
     choice: Choice
+    frames: frozenset[Frame] = frozenset(Frame)
+    approaches: bool = True
 
     def planets(self) -> Ints:
         """Return the target numbers of the chosen planets the kernel holds."""
@@ -101,3 +111,11 @@ class Scene:
         pairs = self.choice.pairs(allowed)
         held = [pair for pair in pairs.T.tolist() if all(t in self.samples.directions for t in pair)]
         return np.array(held, dtype=np.int64).reshape(-1, 2).T
+
+    def named_by_approaches(self, pairs: Ints) -> Ints:
+        """Return the pairs whose meetings are told apart by approaches and conjunctions of both frames.
+
+        Those that lap each other are told apart by laps; Mercury and Venus never do.
+        """
+        inner = [body.order for body in INNER]
+        return pairs[:, np.isin(pairs, inner).all(axis=0)]

@@ -223,13 +223,18 @@ def sign_changes(
 ) -> Brackets:
     """Bracket every change of sign between neighbouring samples (zero counts as positive)."""
     positive = values >= 0.0
-    row, column = np.nonzero(usable & (positive[:, :-1] != positive[:, 1:]))
+    row, column = _places(usable & (positive[:, :-1] != positive[:, 1:]))
     derivatives = [values, slopes] if bends is None else [values, slopes, bends]
     ends = [np.stack([stack[row, column + side] for stack in derivatives]) for side in (0, 1)]
     left, right = jd[column], jd[column + 1]
     guess = left + hermite_root(ends[0], ends[1], right - left)
     left, right = _off_foreign_roots(left, right, ends)
     return Brackets(row, left, right, ends[0][0], ends[1][0], guess.clip(left, right))
+
+
+def _places(flags: Bools) -> tuple[Ints, Ints]:
+    """Return row and column of every true value; quicker than numpy's own for two axes."""
+    return np.divmod(np.flatnonzero(flags), flags.shape[1])
 
 
 def _off_foreign_roots(left: Floats, right: Floats, ends: Sequence[Floats]) -> tuple[Floats, Floats]:
@@ -249,10 +254,10 @@ def turns_toward_zero(jd: Floats, values: Floats, slopes: Floats, usable: Bools)
 
     Both ends have one sign, slopes lead toward zero from both, and their tangents reach it.
     """
-    sign = np.where(values >= 0.0, 1.0, -1.0)
-    toward = sign * slopes
-    turning = usable & (sign[:, :-1] == sign[:, 1:]) & (toward[:, :-1] < 0.0) & (toward[:, 1:] > 0.0)
-    row, column = np.nonzero(turning)
+    positive, falling, rising = values >= 0.0, slopes < 0.0, slopes > 0.0
+    toward, away = np.where(positive, falling, rising), np.where(positive, rising, falling)
+    turning = usable & (positive[:, :-1] == positive[:, 1:]) & toward[:, :-1] & away[:, 1:]
+    row, column = _places(turning)
     turns = Turns(
         row,
         jd[column],

@@ -18,7 +18,7 @@ from wanderers.ephemeris.sky import Sky
 from wanderers.ephemeris.store import TrackStore
 from wanderers.events import cycles
 from wanderers.events.almanac import time_texts
-from wanderers.events.catalogue import scene_of
+from wanderers.events.catalogue import Query, scene_of
 from wanderers.events.scene import Choice, Scene
 from wanderers.events.search import Brackets, refine
 from wanderers.events.solar_aspects import find_oppositions, find_solar_conjunctions
@@ -103,8 +103,9 @@ def seasons(
         table with ``schema.SEASON_COLUMNS``, in order of the retrograde stations.
     """
     low, high = store.span_jd
+    start, end = max(jd_from - SEASON_PAD_DAYS, low), min(jd_to + SEASON_PAD_DAYS, high)
     scene = scene_of(
-        store, max(jd_from - SEASON_PAD_DAYS, low), min(jd_to + SEASON_PAD_DAYS, high), Choice(bodies)
+        store, start, end, Query(jd_from, jd_to, frames=frozenset(frames), choice=Choice(bodies))
     )
     middles = _middles(scene)
     parts = []

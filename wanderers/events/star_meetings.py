@@ -50,7 +50,10 @@ def find_star_meetings(scene: Scene) -> list[Batch]:
     extended = np.array([kind == "cluster" for kind in catalogue.kind])
     pairing = Pairing(bodies, FIRST_STAR + np.arange(spoken_for.size))
     directions = sample_stars(scene.samples)
-    conjunctions = [_conjunctions(scene, pairing, directions, frame) for frame in FRAMES]
+    frames = [frame for frame in FRAMES if scene.approaches or frame in scene.frames]
+    conjunctions = [_conjunctions(scene, pairing, directions, frame) for frame in frames]
+    if not scene.approaches:
+        return [one.chosen(~spoken_for[one.other - FIRST_STAR]) for one in conjunctions]
     roots = _extrema(scene, pairing, directions)
     every = np.stack(pairing.targets(roots.function))
     numbered = Roots(np.arange(roots.jd.size), roots.jd, roots.rising)
@@ -62,7 +65,7 @@ def find_star_meetings(scene: Scene) -> list[Batch]:
 def _conjunctions(scene: Scene, pairing: Pairing, directions: Floats, frame: Frame) -> Batch:
     """Find where bodies have a star's longitude or right ascension."""
     rotation = scene.samples.rotations[frame][:2]
-    star = np.stack([vectors.longitude_deg(vectors.rotate(rotation, one)) for one in directions])
+    star = np.stack([vectors.longitude_in(rotation, one) for one in directions])
     found = []
     for place, body in enumerate(pairing.bodies.tolist()):
         moving = scene.samples.longitude_deg(body, frame)
@@ -93,8 +96,7 @@ def _extrema(scene: Scene, pairing: Pairing, directions: Floats) -> Roots:
     for place, body in enumerate(pairing.bodies.tolist()):
         reach = MOON_REACH_DEG if body == Body.MOON.order else REACH_DEG
         moving = scene.samples.directions[body]
-        cosine = np.einsum("in,sin->sn", moving[0], directions[:, 0])
-        near = cosine > np.cos(np.radians(reach))
+        near = _dot(moving[0], directions[:, 0]) > np.cos(np.radians(reach))
         values, slopes = _closing(moving, directions)
         found.append(
             candidates(
@@ -113,8 +115,16 @@ def _extrema(scene: Scene, pairing: Pairing, directions: Floats) -> Roots:
 
 
 def _closing(moving: Floats, directions: Floats) -> tuple[Floats, Floats]:
-    """Return the closing rate of one body to every star and its slope, shape (stars, n) each."""
-    chord, rate = moving[0] - directions[:, 0], moving[1] - directions[:, 1]
-    value = np.einsum("sin,sin->sn", chord, rate)
-    slope = np.einsum("sin,sin->sn", rate, rate) + np.einsum("sin,in->sn", chord, moving[2])
-    return value, slope
+    """Return the closing rate of one body to every star and its slope, shape (stars, n) each.
+
+    Chord times chord rate, with what vanishes left out: a unit vector is square to its rate.
+    """
+    place, rate, bend = moving
+    value = -(_dot(place, directions[:, 1]) + _dot(rate, directions[:, 0]))
+    own = np.einsum("in,in->n", rate, rate) + np.einsum("in,in->n", place, bend)
+    return value, own - _dot(bend, directions[:, 0]) - 2.0 * _dot(rate, directions[:, 1])
+
+
+def _dot(one: Floats, each: Floats) -> Floats:
+    """Return the dot products of one body's vectors, shape (3, n), with every star's, shape (stars, 3, n)."""
+    return np.asarray(np.einsum("in,sin->sn", one, each))

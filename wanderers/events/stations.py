@@ -14,14 +14,14 @@ DETAILS = ("retrograde", "direct")
 
 
 def find_stations(scene: Scene) -> list[Batch]:
-    """Find every station of the chosen planets in all three frames.
+    """Find every station of the chosen planets in the frames wanted.
 
     The rate is that of the apparent longitude itself: light-time, aberration, deflection and nutation all
     change with time, and near a station their rates decide the hour.
     """
     if scene.planets().size == 0:
         return []
-    return [_stations_in(scene, frame) for frame in Frame]
+    return [_stations_in(scene, frame) for frame in Frame if frame in scene.frames]
 
 
 def _stations_in(scene: Scene, frame: Frame) -> Batch:

@@ -13,9 +13,13 @@ from wanderers.constants import SECONDS_PER_DAY
 from wanderers.ephemeris.timescales import jd_tt_from_utc
 from wanderers.site.evenings import Evenings
 from wanderers.site.windows import Stretches
-from wanderers.site.zones import UNIX_EPOCH_JD, Days
+from wanderers.site.zones import UNIX_EPOCH_JD, Days, Zone
 
-NOON: Final = dt.time(12)
+DAYS_TRIED: Final = (-1, 0, 1, 2)
+"""Calendar days from an evening's date on which its clock may show a time."""
+NEAR_CHANGE_DAYS: Final = 1.0
+"""So long before and after a reading the offsets are those that may hold at it: clocks change once then."""
+HALF_SECOND_DAYS: Final = 0.5 / SECONDS_PER_DAY
 EPOCH_WEEKDAY: Final = 3
 """1970-01-01 was a Thursday, counted from Monday as 0."""
 WEEKDAYS: Final = ("mon", "tue", "wed", "thu", "fri", "sat", "sun")
@@ -58,10 +62,29 @@ class Opening:
 
 
 def _clock_jd(some: Evenings, time: dt.time) -> Floats:
-    """Return when the clock of each evening shows a time, TT, shape (n,); the first where it comes twice."""
-    days = some.days.astype("datetime64[D]").astype(np.int64)
-    days = days if time >= NOON else days + 1
+    """Return when the clock of each evening first shows a time, TT, shape (n,).
+
+    Evenings of a clock far off the Sun begin at any hour of it, hence the days tried.
+    """
+    numbers = some.days.astype("datetime64[D]").astype(np.int64)
     fraction = (time.hour * 3_600 + time.minute * 60 + time.second) / SECONDS_PER_DAY
-    shown = UNIX_EPOCH_JD + days + fraction
-    guess = shown - some.zone.offset_s(np.asarray(shown)) / SECONDS_PER_DAY
-    return jd_tt_from_utc(shown - some.zone.offset_s(np.asarray(guess)) / SECONDS_PER_DAY)
+    days = numbers[:, None] + np.array(DAYS_TRIED)
+    jd = jd_tt_from_utc(_shown_at(some.zone, UNIX_EPOCH_JD + days.ravel() + fraction)).reshape(days.shape)
+    inside = jd >= some.start_jd[:, None] - HALF_SECOND_DAYS
+    return np.asarray(np.take_along_axis(jd, np.argmax(inside, axis=1)[:, None], axis=1)[:, 0])
+
+
+def _shown_at(zone: Zone, clock_jd: Floats) -> Floats:
+    """Return when a clock shows readings, UTC, shape (n,).
+
+    The first of two where clocks go back; in the hour they skip, the instant meant by the clock before.
+    """
+    before, after = (
+        clock_jd - zone.offset_s(clock_jd + days) / SECONDS_PER_DAY
+        for days in (-NEAR_CHANGE_DAYS, NEAR_CHANGE_DAYS)
+    )
+    holds = [
+        np.abs(jd + zone.offset_s(jd) / SECONDS_PER_DAY - clock_jd) < HALF_SECOND_DAYS
+        for jd in (before, after)
+    ]
+    return np.where(~holds[0] & holds[1], after, before)

@@ -222,8 +222,8 @@ def standing_text(name: str, figure: str, row: dict[str, Any]) -> str:
     place = LAST[figure] if rank == count > 1 else SUPERLATIVES[figure]
     place = place if rank in (1, count) else f"{ordinal(rank)} {place}"
     text = (
-        f"It is the {place} {ASPECTS[figure]}of the {count} seasons of {name} with their middle between {first} "
-        f"and {last}"
+        f"It is the {place} {ASPECTS[figure]}of the {count} seasons of {name} with their middle between "
+        f"{first} and {last}"
     )
     before, after = (
         facts.spoken_month(row[f"better_{side}_utc"]) if row[f"better_{side}_utc"] else "none"

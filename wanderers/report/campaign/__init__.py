@@ -1,0 +1,1 @@
+"""A campaign as files: page, field sheet, charts, tables, calendar."""
