@@ -51,6 +51,8 @@ class LazyCommands(click.Group):
         if cmd_name not in COMMANDS:
             return None
         command: click.Command = importlib.import_module(f"wanderers.cli.{cmd_name}").command
+        # Docstrings are raw: click's mark for lines to be kept, a backspace, stands in them as it is written.
+        command.help = (command.help or "").replace(r"\b", "\b")
         return command
 
     def invoke(self, ctx: click.Context) -> Any:

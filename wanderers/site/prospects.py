@@ -77,13 +77,17 @@ class _Rows:
 
 @dataclass(frozen=True, slots=True)
 class _Run:
-    """Moments of rows, one row after another: place in the watch, whether all is high, verdict and merit."""
+    """Moments of rows, one row after another: place in the watch, whether all is high, verdict and merit.
+
+    ``ever_high``: whether each member of each event is high at some moment within reach, shape (n, most).
+    """
 
     row: Ints
     moment: Ints
     together: Bools
     verdict: Ints
     merit: Floats
+    ever_high: Bools
 
 
 def prospects(watched: Watch, parties: Parties, allowed: Bools | None = None) -> Prospects:
@@ -111,7 +115,7 @@ def prospects(watched: Watch, parties: Parties, allowed: Bools | None = None) ->
         middle[found] = _climbed(watched, some, first_try, start[found], end[found])
     evening = _nearest_evenings(watched, parties.jd)
     evening[found] = rows.evening[chosen[found]]
-    return Prospects(evening, start, middle, end, _blockers(parties, rows, seen))
+    return Prospects(evening, start, middle, end, _blockers(parties, run.ever_high))
 
 
 def candidate_evenings(start_jd: Floats, end_jd: Floats, jd: Floats, reach_days: Floats) -> tuple[Ints, Ints]:
@@ -146,21 +150,24 @@ def _run(watched: Watch, parties: Parties, rows: _Rows, seen: Sightings) -> _Run
     step = np.arange(row.size) - np.repeat(np.cumsum(count) - count, count)
     moment = watched.first[rows.evening[row]] + step
     margin, altitude = np.full((2, row.size), np.inf)
+    event = rows.event[row]
+    away = np.abs(watched.jd[moment] - parties.jd[event])
+    within = away <= parties.reach_days[event]
     together = np.ones(row.size, dtype=np.bool_)
+    ever_high = np.zeros(parties.member.shape, dtype=np.bool_)
     for slot in range(parties.member.shape[1]):
         pair = rows.pair[row, slot]
         has = pair != NO_ROW
         at = seen.first[pair[has]] + step[has]
         together[has] &= seen.high[at]
+        ever_high[event[has][seen.high[at] & within[has]], slot] = True
         margin[has] = np.fmin(margin[has], seen.margin[at])
         altitude[has] = np.minimum(altitude[has], seen.altitude_deg[at])
     criteria = watched.rules.criteria
     verdict = verdicts(margin, criteria, watched.moments.over.sun_altitude_deg[moment])
-    event = rows.event[row]
-    away = np.abs(watched.jd[moment] - parties.jd[event])
     worth = merit(margin, altitude, verdict, criteria) - parties.haste_mag_per_day[event] * away
-    within = away <= parties.reach_days[event]
-    return _Run(row, moment, together, verdict, np.where(together & within, worth, -np.inf))
+    worth = np.where(together & within, worth, -np.inf)
+    return _Run(row, moment, together, verdict, worth, ever_high)
 
 
 def _best_of_rows(run: _Run, rows: int) -> Ints:
@@ -284,10 +291,7 @@ def _nearest_evenings(watched: Watch, jd: Floats) -> Ints:
     return np.asarray(after - (jd - middle[after - 1] < middle[after] - jd))
 
 
-def _blockers(parties: Parties, rows: _Rows, seen: Sightings) -> Ints:
-    """Return of each event the member that on no evening is high in the dark, shape (n,); NO_ROW for none."""
-    high = np.zeros(parties.member.shape, dtype=np.bool_)
-    ever = np.append(seen.watchable(), False)  # the place NO_ROW is nobody's
-    np.logical_or.at(high, rows.event, ever[rows.pair])
-    blocked = (parties.member != ABSENT) & ~high
+def _blockers(parties: Parties, ever_high: Bools) -> Ints:
+    """Return of each event the member that never is high in the dark, shape (n,); NO_ROW for none."""
+    blocked = (parties.member != ABSENT) & ~ever_high
     return np.where(blocked.any(axis=1), np.argmax(blocked, axis=1), NO_ROW)
