@@ -78,10 +78,6 @@ def chosen_from_site(
     opening = audience.opening
     seen, count = _split(seen, WATCHABLE)
     removed = [Removed(count, "not to be seen from here")]
-    if audience.within_deg is not None:
-        near = (pl.col("seen_separation_deg") <= audience.within_deg).fill_null(value=True)
-        seen, count = _split(seen, near)
-        removed.append(Removed(count, f"farther apart than {audience.within_deg:g} degrees when best seen"))
     limits = []
     if opening.weekdays:
         limits.append((replace(opening, after=None, by=None), f"not on {_days(opening)}"))
@@ -91,6 +87,11 @@ def chosen_from_site(
         again = seen_from_site(store, site, seen.select(events.columns), rules, limit)
         seen, count = _split(again, WATCHABLE)
         removed.append(Removed(count, words))
+    # Last, for on another evening or at another hour a pair stands differently.
+    if audience.within_deg is not None:
+        near = (pl.col("seen_separation_deg") <= audience.within_deg).fill_null(value=True)
+        seen, count = _split(seen, near)
+        removed.append(Removed(count, f"farther apart than {audience.within_deg:g} degrees when best seen"))
     return seen, removed
 
 
