@@ -20,12 +20,14 @@ from wanderers.cli.calendar_files import (
     warn_about,
     write_calendars,
 )
+from wanderers.cli.editions import write_editions
 from wanderers.cli.event_options import Wanted, event_options
 from wanderers.cli.options import Span, Workplace
 from wanderers.cli.printable import Printable, printable_options, write_printable
 from wanderers.cli.view_options import View, tell_removed, view_options, viewed
 from wanderers.ephemeris import timescales
 from wanderers.ephemeris.dates import datetime64_from_jd, iso_strings
+from wanderers.errors import UsageProblem
 from wanderers.files import require_writable
 from wanderers.report import calendars
 from wanderers.report.calendar_parts import PARTS
@@ -68,6 +70,13 @@ def calendar_options(command: Callable[..., None]) -> Callable[..., None]:
             "a folder.",
         ),
         click.option(
+            "--editions",
+            type=click.Path(path_type=Path),
+            metavar="FILE.toml",
+            help="Write calendar, sentences and table of every edition (site, clock, language) that the file "
+            "names, with the same ids, into the folder --out. [default folder: reports/editions]",
+        ),
+        click.option(
             "--out",
             type=click.Path(path_type=Path),
             metavar="PATH",
@@ -92,6 +101,7 @@ def command(
     alarms_minutes: tuple[int, ...],
     part: str | None,
     update: Path | None,
+    editions: Path | None,
     out: Path | None,
     printable: Printable | None,
     workplace: Workplace,
@@ -111,6 +121,12 @@ def command(
         wanderers calendar --from 2027 --to 2028 --site hilltop --stars none --visible --out hilltop.ics
         wanderers calendar --from 2027 --to 2028 --site hilltop --stars none --printable wall.pdf
     """  # noqa: D301  (click takes the backspace itself as a mark)
+    if editions is not None:
+        if update is not None or part is not None or printable is not None or view.site is not None:
+            raise UsageProblem("--editions stands alone: leave out --update, --split, --printable and --site")
+        style = Style(name or DEFAULT_NAME, workplace.store.kernel, tuple(sorted(set(alarms_minutes))))
+        write_editions(editions, out, wanted.query(workplace), view, style, workplace)
+        return
     plan = Plan(out, update, part)
     previous = read_previous(plan)
     if plan.target is not None:

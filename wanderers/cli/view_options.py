@@ -136,10 +136,15 @@ def viewed(
         view = replace(view, audience=replace(view.audience, within_deg=within_deg))
         query = with_parallax(query)
     events = almanac(store, query) if site is None else events_of_site(store, query, site)
+    return selected(store, events, view)
+
+
+def selected(store: TrackStore, events: pl.DataFrame, view: View) -> tuple[pl.DataFrame, list[Removed]]:
+    """Return events as they are wanted, from a site with all it sees of them, and what limits took away."""
     events, removed = chosen_by_figures(store, events, view.audience)
-    if site is None:
+    if view.site is None:
         return events, removed
-    seen, more = chosen_from_site(store, site, events, view.rules, view.audience)
+    seen, more = chosen_from_site(store, view.site, events, view.rules, view.audience)
     return seen, removed + more
 
 

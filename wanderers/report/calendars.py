@@ -30,6 +30,9 @@ from wanderers.report.calendar_entries import (
 )
 from wanderers.report.calendar_update import PRODID, Change, Published, UtcSpan, merged, read_calendar
 from wanderers.report.definitions import definition
+from wanderers.report.phrases.language import Language
+from wanderers.report.phrases.notes import notes
+from wanderers.report.phrases.sentences import sentences
 from wanderers.report.tables import counted
 from wanderers.site.places import Site
 from wanderers.site.zones import zone_named
@@ -58,12 +61,14 @@ class Style:
         kernel: what its events were computed from.
         alarms_minutes: how long before each event an alarm is shown, as many as wanted.
         site: from where the events are seen; entries then stand at the time to watch.
+        words: language of sentences that take the place of the usual headlines and figures; None for those.
     """
 
     name: str
     kernel: Kernel
     alarms_minutes: tuple[int, ...] = ()
     site: Site | None = None
+    words: Language | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -205,8 +210,12 @@ def _entry(event: words.Event, style: Style) -> Entry:
     component.add("STATUS", "CONFIRMED")
     component.add("TRANSP", "TRANSPARENT")
     component.add("CATEGORIES", _Text(words.category(event)))
-    component.add("SUMMARY", _Text(words.summary(event)))
-    component.add("DESCRIPTION", _Text("\n".join(_description(event, shown, style.kernel))))
+    told = None if style.words is None else sentences(event, style.words)
+    component.add("SUMMARY", _Text(words.summary(event) if told is None else told.medium))
+    lines = _description(event, shown, style.kernel)
+    if told is not None and style.words is not None:
+        lines = [told.long, *notes(event, style.words), lines[-1]]
+    component.add("DESCRIPTION", _Text("\n".join(lines)))
     if style.site is not None:
         component.add("LOCATION", _Text(style.site.name))
         component.add("GEO", (style.site.latitude_deg, style.site.longitude_deg))

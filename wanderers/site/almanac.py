@@ -68,7 +68,13 @@ def seen_from_site(
 
 def events_of_site(store: TrackStore, query: Query, site: Site) -> pl.DataFrame:
     """Return the event table of a span with the occultations by the Moon that only the site sees."""
-    events = almanac(store, query)
+    return with_local_occultations(store, query, site, almanac(store, query))
+
+
+def with_local_occultations(
+    store: TrackStore, query: Query, site: Site, events: pl.DataFrame
+) -> pl.DataFrame:
+    """Return the event table of a query with the occultations by the Moon that only a site sees."""
     if Kind.OCCULTATION not in query.kinds or Body.MOON not in store.kernel.bodies:
         return events
     passes = _close_passes(store, query, events)
