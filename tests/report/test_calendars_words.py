@@ -79,7 +79,7 @@ def test_who_is_in_front_is_said_only_where_it_is_certain(body: str, other: str,
 
 
 def test_a_star_keeps_its_name() -> None:
-    assert words.summary(STAR | {"other": "HIP 92041"}) == "Moon passes in front of HIP 92041"
+    assert words.summary(STAR | {"other": "HIP 92041"}) == "Moon passes in front of phi Sgr"
 
 
 def test_an_approach_without_a_conjunction_says_so() -> None:

@@ -21,6 +21,7 @@ from wanderers.ephemeris import timescales
 from wanderers.ephemeris.bodies import BODIES
 from wanderers.ephemeris.dates import datetime64_from_jd
 from wanderers.report import facts, words
+from wanderers.report.tables import CATALOGUE_NUMBER, label
 from wanderers.site import columns
 from wanderers.site.visibility import Verdict
 
@@ -73,6 +74,7 @@ def table_data(events: pl.DataFrame) -> dict[str, Any]:
         "what": worded([words.summary(row) for row in rows], LAST_NUMBER),
         "note": worded([facts.note(row) for row in rows], LAST_NUMBER),
         "constellations": {name: facts.constellation(name) for name in present},
+        "designations": {name: label(name) for name in _catalogue_numbers(events)},
         "count": events.height,
         "au_km": AU_KM,
         "bodies": [body.value for body in BODIES],
@@ -89,6 +91,12 @@ SEEN: Final = (
 
 INSTANTS: Final = ("jd_tt", "tt", "utc")
 NUMBERED: Final = ("event_id", "meeting_id")
+
+
+def _catalogue_numbers(events: pl.DataFrame) -> list[str]:
+    """Return the stars that have no proper name."""
+    met = events["other"].drop_nulls().unique().sort()
+    return met.filter(met.str.starts_with(CATALOGUE_NUMBER)).to_list()
 
 
 def _column(values: pl.Series) -> Column:

@@ -96,9 +96,10 @@ def places(table: pl.DataFrame) -> list[str]:
 
 def verdict_words(row: dict[str, Any]) -> str:
     """Return what is seen of an event, or why nothing is, how two stand to each other, and the caution."""
-    parts = [row["verdict_reason"]]
-    circumstances = row["circumstances"] or ""
-    if row["kind"] in OF_DISCS or circumstances.startswith(("hidden", "partly")):
+    reason, circumstances = row["verdict_reason"], row["circumstances"] or ""
+    parts = [reason]
+    told = circumstances.startswith(reason)
+    if not told and (row["kind"] in OF_DISCS or circumstances.startswith(("hidden", "partly"))):
         parts.insert(0, circumstances)
     if row["seen_placement"] is not None:
         apart = f"{row['seen_separation_deg']:.1f} degrees"

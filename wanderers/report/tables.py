@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import functools
 import textwrap
 from collections.abc import Callable, Iterator
 from itertools import zip_longest
@@ -11,6 +12,7 @@ import polars as pl
 
 from wanderers import schema
 from wanderers.ephemeris.bodies import Body
+from wanderers.ephemeris.stars import ecliptic_stars
 from wanderers.report import outlook_table, site_tables
 
 WIDTH: Final = 100
@@ -160,8 +162,20 @@ FRAME_WORDS: Final = {"ecliptic": "in longitude", "equator": "in RA", "j2000": "
 
 
 def label(name: str) -> str:
-    """Return a body's or star's name as text prints it."""
+    """Return a body's or star's name as text prints it: a designation rather than a catalogue number."""
+    if name.startswith(CATALOGUE_NUMBER):
+        return _designations().get(name, name)
     return name if not name.islower() else name.capitalize()
+
+
+CATALOGUE_NUMBER: Final = "HIP "
+
+
+@functools.cache
+def _designations() -> dict[str, str]:
+    """Return the Bayer designations of the stars that are met and have no proper name."""
+    met = ecliptic_stars()
+    return {name: bayer for name, bayer in zip(met.name, met.bayer, strict=True) if bayer}
 
 
 def describe(event: dict[str, Any]) -> str:
@@ -185,12 +199,16 @@ def describe(event: dict[str, Any]) -> str:
     return _describe_rest(kind, body, other, detail)
 
 
+def _gathered(detail: str) -> str:
+    return ", ".join(label(name) for name in detail.split("+"))
+
+
 def _describe_rest(kind: str, body: str, other: str, detail: str) -> str:
     """Return the words for kinds that need no frame."""
     words = {
         "moon_phase": f"{detail.capitalize()} Moon" if detail in ("new", "full") else detail.capitalize(),
-        "season_point": f"{detail.capitalize()}",
-        "gathering": f"Gathering of {detail.replace('+', ', ')}",
+        "season_point": " ".join(reversed(detail.split())).capitalize(),
+        "gathering": f"Gathering of {_gathered(detail)}",
         "constellation_entry": f"{body} leaves {detail}",
         "node": f"{body} {detail} node",
         "occultation": f"{body} – {other} occultation",
@@ -225,7 +243,7 @@ STANDING: Final[list[Column]] = [
 
 GATHERINGS: Final[list[Column]] = [
     ("UTC", _minutes("utc"), False),
-    ("What", lambda table: [detail.replace("+", ", ") for detail in table["detail"]], False),
+    ("What", lambda table: [_gathered(detail) for detail in table["detail"]], False),
     ("In", _texts("constellation", str), False),
     ("Circle", _fixed("separation_deg", 2), True),
     ("Arc", _fixed("longitude_arc_deg", 2), True),

@@ -64,7 +64,7 @@ def chosen_by_figures(
     if audience.least_elongation_deg is not None:
         clear = (pl.col("least_elongation_deg") >= audience.least_elongation_deg).fill_null(value=True)
         rows, count = _split(rows, clear)
-        removed.append(Removed(count, f"within {audience.least_elongation_deg:g} degrees of the Sun"))
+        removed.append(Removed(count, f"within {_degrees(audience.least_elongation_deg)} of the Sun"))
     return rows.select(events.columns), removed
 
 
@@ -91,7 +91,7 @@ def chosen_from_site(
     if audience.within_deg is not None:
         near = (pl.col("seen_separation_deg") <= audience.within_deg).fill_null(value=True)
         seen, count = _split(seen, near)
-        removed.append(Removed(count, f"farther apart than {audience.within_deg:g} degrees when best seen"))
+        removed.append(Removed(count, f"farther apart than {_degrees(audience.within_deg)} when best seen"))
     return seen, removed
 
 
@@ -103,6 +103,10 @@ def removed_words(removed: list[Removed]) -> str:
 def _split(table: pl.DataFrame, keep: pl.Expr) -> tuple[pl.DataFrame, int]:
     kept = table.filter(keep)
     return kept, table.height - kept.height
+
+
+def _degrees(angle_deg: float) -> str:
+    return f"{angle_deg:g} degree{'' if angle_deg == 1.0 else 's'}"
 
 
 def _days(opening: Opening) -> str:

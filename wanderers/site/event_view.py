@@ -94,12 +94,13 @@ def _part(
     """Look at a handful of events."""
     parties = parties_of(events)
     some = evenings_around(store, site, parties)
-    sky = sky_of(store, float(some.start_jd[0]), float(some.end_jd[-1]))
+    ends = np.array([some.start_jd[0], some.end_jd[-1], *parties.jd[[0, -1]]])
+    sky = sky_of(store, float(ends.min()), float(ends.max()))
     watched = watch(sky, some, rules, opening.stretches(some))
     best = prospects(watched, parties, opening.allows(some.days))
     moment = np.where(np.isnan(best.best_jd), some.middle_jd[best.evening], best.best_jd)
     members = members_at(watched, parties.member, moment)
-    instants = members_at(watched, parties.member[:, :1], _within(some, parties.jd))
+    instants = members_at(watched, parties.member[:, :1], parties.jd)
     view = _View(watched, parties, best, members, instants)
     verdict = verdict_table(watched, parties, best, members, events)
     added = pl.DataFrame(_texts(view) | _angles(view) | _pair(view, events)).hstack(verdict)
@@ -107,19 +108,18 @@ def _part(
 
 
 def evenings_around(store: TrackStore, site: Site, parties: Parties) -> Evenings:
-    """Return the evenings within reach of any of the events, those outside the kernel left out."""
+    """Return the evenings within reach of any of the events, those outside the kernel left out.
+
+    An event at the kernel's end may have none within reach: the nearest is there to tell how things stand.
+    """
     low, high = store.span_jd
     ends = np.clip([parties.jd[0] - MARGIN_DAYS, parties.jd[-1] + MARGIN_DAYS], low, high)
     first, last = datetime64_from_jd(jd_utc_from_tt(ends)).astype("datetime64[D]")
     whole = evenings(site, first - np.timedelta64(1, "D"), last + np.timedelta64(2, "D"))
     whole = whole.chosen((whole.start_jd > low) & (whole.end_jd < high))
     _, needed = candidate_evenings(whole.start_jd, whole.end_jd, parties.jd, parties.reach_days)
-    return whole.chosen(np.unique(needed))
-
-
-def _within(some: Evenings, jd: Floats) -> Floats:
-    """Keep instants at the ends of the kernel inside the evenings that there are."""
-    return np.clip(jd, some.start_jd[0], np.nextafter(some.end_jd[-1], 0.0))
+    nearest = np.searchsorted(whole.end_jd[:-1], parties.jd, side="right")
+    return whole.chosen(np.union1d(needed, nearest))
 
 
 def _texts(view: _View) -> dict[str, pl.Series]:

@@ -83,5 +83,3 @@ def sky_clock(store: TrackStore, campaign: Campaign) -> SkyClock:
         moon_illuminated=lit.reshape(jd.shape)[STEPS // 2],
         above_limit_deg=(seen.altitude_deg - limit).reshape(jd.shape),
     )
-
-

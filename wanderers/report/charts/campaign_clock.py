@@ -12,24 +12,23 @@ from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
 from matplotlib.patches import Patch
 
-from wanderers.arrays import Floats
+from wanderers.arrays import Floats, Ints
 from wanderers.plans.replan import Status
 from wanderers.report.campaign.contents import CampaignContents
 from wanderers.report.campaign.sky_clock import SkyClock
 from wanderers.report.charts import campaign_nights, labels, timeaxis
 from wanderers.report.charts.campaign_nights import Nights
-from wanderers.report.charts.style import LIGHT, WIDTH_IN, Style, axes_at, in_force, new_figure, write_title
+from wanderers.report.charts.style import LIGHT, Style, axes_at, in_force, new_figure, write_title
 from wanderers.site.twilight import ASTRONOMICAL_DEG, CIVIL_DEG, NAUTICAL_DEG, SUN_RISE_DEG
 
 HEIGHT_IN: Final = 6.9
 LEFT_IN, RIGHT_IN, BOTTOM_IN, TOP_IN = 0.95, 0.3, 1.55, 1.15
 LEVELS: Final = (ASTRONOMICAL_DEG, NAUTICAL_DEG, CIVIL_DEG, SUN_RISE_DEG)
-LEVEL_WORDS: Final = ("astronomical", "nautical", "civil", "Sun sets, rises")
-GREYS: Final = ("#f1f1f1", "#e3e3e3", "#d2d2d2", "#bdbdbd")
+GREYS: Final = ("#f4f4f4", "#e9e9e9", "#dddddd", "#cecece")
 REDS: Final = ("#160000", "#2a0000", "#3f0000", "#560000")
 """Fills of astronomical, nautical, civil twilight and day; night itself is the paper."""
-MOON_PT: Final = 2.2
-"""Width of the Moon's stroke on an evening when it is full."""
+MOON_PART: Final = 0.62
+"""Width of the Moon's stroke on an evening when it is full, as a part of the room an evening has."""
 ROOM_HOURS: Final = 0.7
 PHASE_ROW: Final = 1.03
 CULMINATION_DASH: Final = (1.5, 1.8)
@@ -53,11 +52,9 @@ def draw_campaign_clock(contents: CampaignContents, *, style: Style = LIGHT) -> 
             figure,
             f"{campaign.season.body.label} by the clock from {campaign.site.name}, "
             f"{timeaxis.month_span_text(low, high)}",
-            f"Clock of {campaign.site.zone}; a night runs upward from its evening date. Grey strokes: the Moon "
-            "is up, the broader the more of it is lit.\nInside the heavy line the planet stands "
-            f"{campaign.rules.min_altitude_deg:g}° up or more; numbers are those of the plan.".replace(
-                "Grey strokes", "Strokes"
-            ),
+            f"Clock of {campaign.site.zone}; a night runs upward from its evening date. Thin upright strokes: "
+            "the Moon is up, the broader the more of it is lit.\nBetween the heavy lines the planet stands "
+            f"{campaign.rules.min_altitude_deg:g}° up or more; numbers are those of the plan.",
             style,
         )
         _write_key(figure, contents, style)
@@ -77,10 +74,7 @@ def plot_campaign_clock(contents: CampaignContents, ax: Axes, *, style: Style = 
     places = _places(clock, nights)
     campaign_nights.draw(ax, nights, places, style)
     dots = np.asarray(ax.transData.transform(places)).reshape(-1, 2)
-    wanted = [
-        *campaign_nights.number_labels(ax, nights, dots, style),
-        *_level_labels(ax, clock, style),
-    ]
+    wanted = campaign_nights.number_labels(ax, nights, dots, style)
     points = np.concatenate([labels.dense(ax.transData.transform(line), 3.0) for line in heavy] + [dots[:0]])
     boxes = campaign_nights.dot_boxes(dots, ax)
     labels.write_labels(ax, wanted, labels.ground_of(ax, points, boxes))
@@ -109,13 +103,13 @@ def campaign_clock_alt_text(contents: CampaignContents) -> str:
 def _set_axes(ax: Axes, clock: SkyClock, style: Style) -> None:
     low, high = _hours_shown(clock)
     days = clock.day_jd
-    campaign_nights.set_date_axis(ax, float(days[0]) - 1.0, float(days[-1]) + 1.0)
+    campaign_nights.set_date_axis(ax, float(days[0]), float(days[-1]))
     ax.set_ylim(low, high)
     step = 1 if high - low <= 14.0 else 2
     at = np.arange(np.ceil(low), np.floor(high) + 1.0)
     at = at[at % step == 0]
     ax.set_yticks(at, [f"{int(hour) % 24:02d}:00" for hour in at.tolist()])
-    ax.set_ylabel(f"local time, upward ({'evening, then morning'})")
+    ax.set_ylabel("local time, evening to morning upward")
     ax.grid(True, axis="both", color=style.rule, linewidth=0.5)
     ax.set_axisbelow(False)
     for line in (*ax.get_xgridlines(), *ax.get_ygridlines()):
@@ -143,30 +137,39 @@ def _draw_light(ax: Axes, clock: SkyClock, style: Style) -> None:
 
 def _draw_moon(ax: Axes, clock: SkyClock, style: Style) -> None:
     """Draw a stroke for each evening while the Moon is up and the Sun down; full and new Moons on top."""
-    up = (clock.moon_altitude_deg > 0.0) & (clock.sun_altitude_deg < SUN_RISE_DEG)
-    steps = np.diff(np.pad(up, ((1, 1), (0, 0))).astype(np.int8), axis=0).T
-    evening, first = np.nonzero(steps == 1)
-    _, after = np.nonzero(steps == -1)
-    start, end = clock.hour[first], clock.hour[np.maximum(after - 1, first)]
-    strokes = np.stack(
-        [np.stack([clock.day_jd[evening], start], axis=1), np.stack([clock.day_jd[evening], end], axis=1)], axis=1
+    evening, start, end = _moon_up(clock)
+    days = clock.day_jd[evening]
+    strokes = np.stack([np.stack([days, start], axis=1), np.stack([days, end], axis=1)], axis=1)
+    room_pt = ax.get_window_extent().width / labels.dots_per_pt(ax) / max(clock.day_jd.size - 1, 1)
+    collection = LineCollection(
+        list(strokes),
+        colors="#8a8a8a" if style.name == LIGHT.name else "#900000",
+        linewidths=np.maximum(MOON_PART * room_pt * clock.moon_illuminated[evening], 0.15),
+        capstyle="butt",
+        zorder=1.0,
     )
-    grey = "#8f8f8f" if style.name == LIGHT.name else "#8a0000"
-    ax.add_collection(
-        LineCollection(
-            list(strokes),
-            colors=grey,
-            linewidths=np.maximum(MOON_PT * clock.moon_illuminated[evening], 0.15),
-            capstyle="butt",
-            zorder=1.0,
-        ),
-        autolim=False,
-    )
+    ax.add_collection(collection, autolim=False)
     for turn, look in zip(_phases(clock), _phase_looks(style), strict=True):
         x = clock.day_jd[turn]
         ax.plot(
             x, np.full(x.size, PHASE_ROW), transform=ax.get_xaxis_transform(), clip_on=False, zorder=5, **look
         )
+
+
+def _moon_up(clock: SkyClock) -> tuple[Ints, Floats, Floats]:
+    """Return the stretches with the Moon up and the Sun down: evening, first and last hour, shape (k,)."""
+    margin = np.fmin(clock.moon_altitude_deg, SUN_RISE_DEG - clock.sun_altitude_deg).T
+    up = np.pad(margin > 0.0, ((0, 0), (1, 1)))
+    turns = np.diff(up.astype(np.int8), axis=1)
+    evening, first = np.nonzero(turns == 1)
+    _, after = np.nonzero(turns == -1)
+    last = margin.shape[1] - 1
+    ends = []
+    for here, there in ((first, np.maximum(first - 1, 0)), (after - 1, np.minimum(after, last))):
+        inside, outside = margin[evening, here], margin[evening, there]
+        part = np.where(here == there, 0.0, inside / np.where(here == there, 1.0, inside - outside))
+        ends.append(clock.hour[here] + part * (clock.hour[there] - clock.hour[here]))
+    return evening, ends[0], ends[1]
 
 
 def _phases(clock: SkyClock) -> tuple[Floats, Floats]:
@@ -186,7 +189,9 @@ def _phase_looks(style: Style) -> tuple[dict[str, Any], dict[str, Any]]:
         "markeredgecolor": style.ink,
         "markeredgewidth": 1.0,
     }
-    return ring | {"markerfacecolor": style.paper}, ring | {"markerfacecolor": style.ink}
+    open_ring, disc = ring | {"markerfacecolor": style.paper}, ring | {"markerfacecolor": style.ink}
+    # What is bright is bare paper in print, and ink on a dark screen.
+    return (open_ring, disc) if style.name == LIGHT.name else (disc, open_ring)
 
 
 def _draw_planet(ax: Axes, contents: CampaignContents, style: Style) -> list[Floats]:
@@ -196,7 +201,13 @@ def _draw_planet(ax: Axes, contents: CampaignContents, style: Style) -> list[Flo
     lines: list[Floats] = []
     if above.min() < 0.0 < above.max():
         drawn = ax.contour(
-            clock.day_jd, clock.hour, above, levels=[0.0], colors=[style.colours[body]], linewidths=2.2, zorder=3
+            clock.day_jd,
+            clock.hour,
+            above,
+            levels=[0.0],
+            colors=[style.colours[body]],
+            linewidths=2.2,
+            zorder=3,
         )
         lines = [np.asarray(part) for part in drawn.allsegs[0] if len(part) > 1]
     table = contents.campaign.nights
@@ -218,32 +229,6 @@ def _places(clock: SkyClock, nights: Nights) -> Floats:
     return np.stack([nights.day_jd, clock.hour_of(nights.day_jd, nights.jd)], axis=1)
 
 
-def _level_labels(ax: Axes, clock: SkyClock, style: Style) -> list[labels.Label]:
-    """Return the names of the twilights, each for anywhere in its own band."""
-    low, high = ax.get_ylim()
-    shown = (clock.hour > low) & (clock.hour < high)
-    sun = clock.sun_altitude_deg[shown]
-    bands = zip((*LEVELS, DARK_DEG), (-DARK_DEG, *LEVELS), ("dark", *LEVEL_WORDS[:3], "day"), strict=True)
-    wanted = []
-    for upper, lower, word in bands:
-        row, column = np.nonzero((sun > lower) & (sun < upper))
-        if row.size < 40:
-            continue
-        chosen = slice(None, None, max(1, row.size // 400))
-        middle = (sun[row, column] - (max(lower, -24.0) + min(upper, 5.0)) / 2.0)[chosen]
-        at = np.stack([clock.day_jd[column], clock.hour[shown][row]], axis=1)[chosen]
-        dots = np.asarray(ax.transData.transform(at))
-        box = ax.get_window_extent()
-        side = np.minimum(dots[:, 0] - box.x0, box.x1 - dots[:, 0]) / labels.dots_per_pt(ax)
-        cost = 0.08 * side + 4.0 * np.abs(middle)
-        text = style.note(color=style.quiet_ink, style="italic") | {"bbox": None}
-        size = labels.measure(ax, word, text)
-        wanted.append(
-            labels.Label(word, tuple(dots[0]), dots, cost, size, text, leads=False, dearest=45.0)
-        )
-    return wanted
-
-
 def _write_key(figure: Figure, contents: CampaignContents, style: Style) -> None:
     """Write what signs and lines stand for, under the axes, in two rows."""
     body = contents.campaign.season.body
@@ -253,7 +238,12 @@ def _write_key(figure: Figure, contents: CampaignContents, style: Style) -> None
     lines = [
         Line2D([], [], color=style.colours[body], linewidth=2.2, label=f"{body.label} {limit:g}° up"),
         Line2D(
-            [], [], color=style.colours[body], linewidth=1.2, linestyle=(0, CULMINATION_DASH), label="culminates"
+            [],
+            [],
+            color=style.colours[body],
+            linewidth=1.2,
+            linestyle=(0, CULMINATION_DASH),
+            label="culminates",
         ),
         Line2D([], [], **full, label="full Moon"),
         Line2D([], [], **new, label="new Moon"),
@@ -264,7 +254,7 @@ def _write_key(figure: Figure, contents: CampaignContents, style: Style) -> None
         Patch(facecolor=fill, edgecolor=style.quiet_ink, linewidth=0.5, label=word)
         for fill, word in zip(fills, words, strict=True)
     ]
-    rows = ([*campaign_nights.handles(nights.sorts, style), *lines], patches)
+    rows = ([*campaign_nights.handles(nights.sorts, style), *lines[:2]], [*patches, *lines[2:]])
     width, height = figure.get_size_inches()
     for number, row in enumerate(rows):
         figure.legend(

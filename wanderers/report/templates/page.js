@@ -82,7 +82,7 @@ function seen(row) {
   return parts.join(" ");
 }
 
-const named = (name) => (name === name.toLowerCase() ? name[0].toUpperCase() + name.slice(1) : name);
+const named = (name) => data.designations[name] ?? (name === name.toLowerCase() ? name[0].toUpperCase() + name.slice(1) : name);
 const clock = (local) => local.slice(11, 16);
 
 /** Returns a local date with its weekday, as "Fri 2027-03-05". */
