@@ -11,7 +11,7 @@ import polars as pl
 
 from wanderers.ephemeris.bodies import Body
 from wanderers.events.kinds import Kind
-from wanderers.report.tables import label
+from wanderers.report.names import label
 
 PARTS: Final = ("body", "kind", "year")
 """What a calendar can be split by; ``body`` is the first body of a pair."""

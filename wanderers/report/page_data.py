@@ -21,7 +21,7 @@ from wanderers.ephemeris import timescales
 from wanderers.ephemeris.bodies import BODIES
 from wanderers.ephemeris.dates import datetime64_from_jd
 from wanderers.report import facts, words
-from wanderers.report.tables import CATALOGUE_NUMBER, label
+from wanderers.report.names import CATALOGUE_NUMBER, label
 from wanderers.site import columns
 from wanderers.site.visibility import Verdict
 

@@ -8,6 +8,7 @@ from typing import Any, Final
 import polars as pl
 
 from wanderers.events.kinds import Kind
+from wanderers.report.names import label
 from wanderers.site.compass import LETTERS, POINTS
 from wanderers.site.hours import WEEKDAYS
 from wanderers.site.places import Site
@@ -103,7 +104,7 @@ def verdict_words(row: dict[str, Any]) -> str:
         parts.insert(0, circumstances)
     if row["seen_placement"] is not None:
         apart = f"{row['seen_separation_deg']:.1f} degrees"
-        parts.append(f"{_name(row['other'])} {apart} {row['seen_placement']}")
+        parts.append(f"{label(row['other'])} {apart} {row['seen_placement']}")
     return "; ".join(filter(None, parts)) + _caution(row)
 
 
@@ -114,7 +115,3 @@ def verdicts_and_cautions(table: pl.DataFrame) -> list[str]:
 
 def _caution(row: dict[str, Any]) -> str:
     return f". {row['caution']}" if row["caution"] else ""
-
-
-def _name(name: str) -> str:
-    return name.capitalize() if name.islower() else name

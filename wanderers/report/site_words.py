@@ -5,7 +5,7 @@ from __future__ import annotations
 import datetime as dt
 from typing import Any, Final
 
-from wanderers.report.tables import label
+from wanderers.report.names import label
 from wanderers.report.words import Event
 
 ROUNDING: Final = dt.timedelta(seconds=30)

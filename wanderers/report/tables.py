@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import functools
 import textwrap
 from collections.abc import Callable, Iterator
 from itertools import zip_longest
@@ -12,8 +11,8 @@ import polars as pl
 
 from wanderers import schema
 from wanderers.ephemeris.bodies import Body
-from wanderers.ephemeris.stars import ecliptic_stars
 from wanderers.report import outlook_table, site_tables
+from wanderers.report.names import label
 
 WIDTH: Final = 100
 NARROWEST: Final = 12
@@ -159,23 +158,6 @@ def _what_from_site(table: pl.DataFrame) -> list[str]:
 
 _DESCRIBED: Final = ("kind", "detail", "body", "other", "frame")
 FRAME_WORDS: Final = {"ecliptic": "in longitude", "equator": "in RA", "j2000": "against the stars"}
-
-
-def label(name: str) -> str:
-    """Return a body's or star's name as text prints it: a designation rather than a catalogue number."""
-    if name.startswith(CATALOGUE_NUMBER):
-        return _designations().get(name, name)
-    return name if not name.islower() else name.capitalize()
-
-
-CATALOGUE_NUMBER: Final = "HIP "
-
-
-@functools.cache
-def _designations() -> dict[str, str]:
-    """Return the Bayer designations of the stars that are met and have no proper name."""
-    met = ecliptic_stars()
-    return {name: bayer for name, bayer in zip(met.name, met.bayer, strict=True) if bayer}
 
 
 def describe(event: dict[str, Any]) -> str:

@@ -12,7 +12,7 @@ from typing import Any, Final
 from wanderers.constants import AU_KM
 from wanderers.ephemeris.constellations import full_name
 from wanderers.events.kinds import Kind
-from wanderers.report.tables import label
+from wanderers.report.names import label
 
 Event = Mapping[str, Any]
 """One row of the event table, by column name."""

@@ -102,7 +102,7 @@ def _circumstances(watched: Watch, parties: Parties, best: Prospects, members: M
         "best_jd": best.best_jd,
         "sunset_jd": watched.sunset_jd[best.evening],
         "sunrise_jd": watched.sunrise_jd[best.evening],
-        **_passages(watched, best.evening, target, blocked | ~can),
+        **_passages(watched, parties, best.evening, target, blocked | ~can),
     }
     names = pl.Series(target_names())
     table = pl.DataFrame({name: pl.Series(values, nan_to_null=True) for name, values in numbers.items()})
@@ -124,20 +124,38 @@ def _circumstances(watched: Watch, parties: Parties, best: Prospects, members: M
     )
 
 
-def _passages(watched: Watch, evening: Ints, target: Ints, wanted: Bools) -> dict[str, Floats]:
+def _passages(
+    watched: Watch, parties: Parties, evening: Ints, target: Ints, wanted: Bools
+) -> dict[str, Floats]:
     """Return when targets rise and set on evenings, how high they climb in the dark, whether they are up."""
     out = {name: np.full(evening.size, np.nan) for name in ("rise_jd", "set_jd", "highest_deg", "up")}
     (row,) = np.nonzero(wanted)
     if row.size == 0:
         return out
-    seen = look(watched, evening[row], target[row])
-    place = seen.place_of(evening[row], target[row])
-    out["highest_deg"][row] = seen.highest_deg()[place]
+    out["highest_deg"][row] = _highest_deg(watched, parties.chosen(row), evening[row], target[row])
     for number in np.unique(target[row]).tolist():
         own = row[target[row] == number]
         rise, sets, up = _rise_and_set(watched, evening[own], number)
         out["rise_jd"][own], out["set_jd"][own], out["up"][own] = rise, sets, up
     return out
+
+
+def _highest_deg(watched: Watch, parties: Parties, evening: Ints, target: Ints) -> Floats:
+    """Return how high targets climb in the dark within reach of their events, else at all, shape (k,).
+
+    NaN where it is never dark.
+    """
+    seen = look(watched, evening, target)
+    place = seen.place_of(evening, target)
+    count = watched.count[evening]
+    row = np.repeat(np.arange(evening.size), count)
+    step = np.arange(row.size) - np.repeat(np.cumsum(count) - count, count)
+    away = np.abs(watched.jd[watched.first[evening[row]] + step] - parties.jd[row])
+    within = away <= parties.reach_days[row]
+    altitude = seen.altitude_deg[seen.first[place[row]] + step]
+    highest = np.full(evening.size, np.nan)
+    np.fmax.at(highest, row[within], altitude[within])
+    return np.where(np.isnan(highest), seen.highest_deg()[place], highest)
 
 
 def _rise_and_set(watched: Watch, evening: Ints, target: int) -> tuple[Floats, Floats, Floats]:

@@ -2,13 +2,12 @@
 
 from __future__ import annotations
 
-import functools
 from collections.abc import Callable, Iterator, Mapping
 from typing import Final
 
 from wanderers.ephemeris.constellations import full_name
-from wanderers.ephemeris.stars import ecliptic_stars
 from wanderers.events.kinds import Kind
+from wanderers.report.names import label
 from wanderers.report.phrases import figures
 from wanderers.report.phrases.language import Language
 from wanderers.report.phrases.moments import (
@@ -75,15 +74,7 @@ def constellation_form(abbreviation: str, words: Language, form: str) -> str:
 
 
 def _plain(name: str) -> str:
-    return star_labels().get(name, name.capitalize() if name.islower() else name)
-
-
-@functools.cache
-def star_labels() -> dict[str, str]:
-    """Return what to call the stars that have no proper name: their letter, as ``phi Sgr``."""
-    stars = ecliptic_stars()
-    pairs = zip(stars.labels, stars.bayer, strict=True)
-    return {label: bayer for label, bayer in pairs if label.startswith("HIP ") and bayer}
+    return label(name)
 
 
 def _body(event: Row, words: Language, form: str) -> str | None:

@@ -16,7 +16,7 @@ from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.timescales import jd_utc_from_tt
 from wanderers.events.kinds import Kind
 from wanderers.report import words
-from wanderers.report.tables import label
+from wanderers.report.names import label
 from wanderers.report.wall import importance, names, phrases
 from wanderers.site.clock import local_texts
 from wanderers.site.zones import UNIX_EPOCH_JD, UNIX_EPOCH_ORDINAL, Zone

@@ -8,7 +8,7 @@ from typing import Final
 from wanderers.constants import AU_KM
 from wanderers.ephemeris.constellations import full_name
 from wanderers.events.kinds import Kind
-from wanderers.report.tables import label
+from wanderers.report.names import label
 from wanderers.report.words import FRAME_LABELS, Event, gathered_names
 from wanderers.site import compass
 
