@@ -139,6 +139,14 @@ def ecliptic_stars() -> StarCatalogue:
     return read_catalogue("ecliptic_stars.csv")
 
 
+@cache
+def star_letters() -> dict[str, str]:
+    """Return what to call the stars that are met and have no proper name: their letter, as ``phi Sgr``."""
+    stars = ecliptic_stars()
+    pairs = zip(stars.labels, stars.bayer, strict=True)
+    return {label: bayer for label, bayer in pairs if label.startswith("HIP ") and bayer}
+
+
 def read_catalogue(file_name: str) -> StarCatalogue:
     """Read a packaged table of stars; its epoch is J2000.0.
 

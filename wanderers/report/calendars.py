@@ -29,6 +29,7 @@ from wanderers.report.calendar_entries import (
     read_entry,
 )
 from wanderers.report.calendar_update import PRODID, Change, Published, UtcSpan, merged, read_calendar
+from wanderers.report.calendar_zones import timezone
 from wanderers.report.definitions import definition
 from wanderers.report.phrases.language import Language
 from wanderers.report.phrases.notes import notes
@@ -86,7 +87,7 @@ class Issue:
     unchanged: int
 
 
-class _Text(vText):
+class ExactText(vText):
     """Text that is escaped exactly: the library turns a backslash before N into a line end."""
 
     def to_ical(self) -> bytes:
@@ -137,7 +138,7 @@ def issue(
     """
     known = published or Published(style.name, ())
     now = merged(known, entries(events, style), span or span_of(events), stamp)
-    return Issue(_file(style.name, now.entries), now.changes, len(now.entries) - len(now.changes))
+    return Issue(calendar_file(style.name, now.entries), now.changes, len(now.entries) - len(now.changes))
 
 
 def entries(events: pl.DataFrame, style: Style) -> list[Entry]:
@@ -209,15 +210,15 @@ def _entry(event: words.Event, style: Style) -> Entry:
     _add_times(component, event, style, shown)
     component.add("STATUS", "CONFIRMED")
     component.add("TRANSP", "TRANSPARENT")
-    component.add("CATEGORIES", _Text(words.category(event)))
+    component.add("CATEGORIES", ExactText(words.category(event)))
     told = None if style.words is None else sentences(event, style.words)
-    component.add("SUMMARY", _Text(words.summary(event) if told is None else told.medium))
+    component.add("SUMMARY", ExactText(words.summary(event) if told is None else told.medium))
     lines = _description(event, shown, style.kernel)
     if told is not None and style.words is not None:
         lines = [told.long, *notes(event, style.words), lines[-1]]
-    component.add("DESCRIPTION", _Text("\n".join(lines)))
+    component.add("DESCRIPTION", ExactText("\n".join(lines)))
     if style.site is not None:
-        component.add("LOCATION", _Text(style.site.name))
+        component.add("LOCATION", ExactText(style.site.name))
         component.add("GEO", (style.site.latitude_deg, style.site.longitude_deg))
     for minutes in style.alarms_minutes:
         component.add_component(_alarm(words.summary(event), minutes))
@@ -232,14 +233,18 @@ def _add_times(component: Event, event: words.Event, style: Style, shown: str) -
         component.add("DURATION", NOMINAL_LENGTH)
         return
     for name, time in zip(("DTSTART", "DTEND"), site_words.window(event), strict=True):
-        component.add(name, _by_clock(time, style.site))
-    component.add(INSTANT, _Text(instant_text(moment)))
+        component.add(name, by_clock(time, style.site))
+    component.add(INSTANT, ExactText(instant_text(moment)))
 
 
-def _by_clock(time: dt.datetime, site: Site) -> dt.datetime:
-    """Return a time by the site's clock; the second of two in UTC, for RFC 5545, 3.3.5, means the first."""
-    shown = time.replace(tzinfo=zone_named(site.zone).rules)
-    return shown if shown.utcoffset() == time.utcoffset() else time.astimezone(dt.UTC)
+def by_clock(time: dt.datetime, site: Site) -> dt.datetime:
+    """Return a time by the site's clock, or in UTC where the clock would be misread.
+
+    The second of two means the first (RFC 5545, 3.3.5); a time rounded into the hour that clocks skip is none.
+    """
+    shown = time.astimezone(zone_named(site.zone).rules).replace(fold=0)
+    same_clock = shown.replace(tzinfo=None) == time.replace(tzinfo=None)
+    return shown if same_clock and shown.utcoffset() == time.utcoffset() else time.astimezone(dt.UTC)
 
 
 def _description(event: words.Event, shown: str, kernel: Kernel) -> list[str]:
@@ -268,7 +273,7 @@ def _alarm(text: str, minutes: int) -> Alarm:
     alarm = Alarm()
     alarm.add("ACTION", "DISPLAY")
     alarm.add("TRIGGER", dt.timedelta(minutes=-minutes))
-    alarm.add("DESCRIPTION", _Text(text))
+    alarm.add("DESCRIPTION", ExactText(text))
     return alarm
 
 
@@ -281,22 +286,14 @@ def _zones(ordered: Sequence[Entry]) -> list[Timezone]:
     for entry in ordered:
         for zone in {entry.zone("DTSTART"), entry.zone("DTEND")} - {""}:
             used.setdefault(zone, []).append(entry.start.year)
-    return [
-        Timezone.from_tzinfo(
-            zone_named(zone).rules,
-            zone,
-            first_date=dt.date(max(min(years) - 1, 1), 1, 1),
-            last_date=dt.date(min(max(years) + 1, 9999), 1, 1),
-        )
-        for zone, years in sorted(used.items())
-    ]
+    return [timezone(zone, years) for zone, years in sorted(used.items())]
 
 
-def _file(name: str, ordered: Sequence[Entry]) -> bytes:
-    """Return a calendar file around its entries."""
-    title = _Text(" ".join(name.split()))
+def calendar_file(name: str, ordered: Sequence[Entry]) -> bytes:
+    """Return a calendar file around its entries, with the rules of the zones that they use."""
+    title = ExactText(" ".join(name.split()))
     calendar = Calendar()
-    calendar.add("PRODID", _Text(PRODID))
+    calendar.add("PRODID", ExactText(PRODID))
     calendar.add("VERSION", "2.0")
     calendar.add("CALSCALE", "GREGORIAN")
     calendar.add("NAME", title)

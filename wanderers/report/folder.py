@@ -32,6 +32,17 @@ PAGE: Final = "index.html"
 MANIFEST: Final = "report.json"
 """Lists the files of a report; by it a folder is known as one."""
 MADE_BY: Final = "wanderers report"
+
+
+@dataclass(frozen=True, slots=True)
+class Mark:
+    """By what a folder is known as this program's: its list of files, and who made it."""
+
+    manifest: str
+    made_by: str
+
+
+REPORT: Final = Mark(MANIFEST, MADE_BY)
 CALENDAR: Final = "events.ics"
 LITTER: Final = frozenset({".DS_Store", "Thumbs.db", "desktop.ini"})
 """Files that desktops leave in any folder they show."""
@@ -41,39 +52,44 @@ CALENDAR_AT_MOST: Final = 20_000
 ENTRY: Final = Kind.CONSTELLATION_ENTRY.value
 
 
-def require_replaceable(folder: Path) -> None:
-    """Make sure, before long work starts, that a report can be put there.
+def require_replaceable(folder: Path, mark: Mark = REPORT) -> None:
+    """Make sure, before long work starts, that a folder of that mark can be put there.
 
     Raises:
-        OutputError: the place cannot be written, or holds anything that is not a report of this program.
+        OutputError: the place cannot be written, or holds anything that no earlier folder of the mark held.
     """
     require_writable(folder, folder=True)
     require_writable(folder.parent, folder=True)
     with reported_as_output_error(folder):
         if folder.is_dir():
-            _require_report(folder)
+            _require_own(folder, mark)
 
 
-def _require_report(folder: Path) -> None:
-    """Refuse to replace a folder that holds what no report put there."""
+def _require_own(folder: Path, mark: Mark) -> None:
+    """Refuse to replace a folder that holds what this program did not put there."""
     present = {path.relative_to(folder).as_posix() for path in folder.rglob("*") if not path.is_dir()}
-    foreign = sorted(name for name in present - _listed(folder) if Path(name).name not in LITTER)
+    foreign = sorted(name for name in present - _listed(folder, mark) if Path(name).name not in LITTER)
     if foreign:
         some = ", ".join(foreign[:3]) + (f" and {len(foreign) - 3} more" if len(foreign) > 3 else "")
         raise OutputError(
-            f"{folder} holds files that are not of a report ({some}): move them away, or choose another --out"
+            f"{folder} holds files that are not of a {mark.made_by.split()[-1]} ({some}): move them away, or "
+            "choose another --out"
         )
 
 
-def _listed(folder: Path) -> set[str]:
-    """Return the files that a report's own list names; none where there is no such list."""
+def _listed(folder: Path, mark: Mark) -> set[str]:
+    """Return the files that a folder's own list names; none where there is no such list."""
+    manifest = manifest_of(folder, mark)
+    return {*map(str, manifest.get("files", ())), mark.manifest} if manifest else set()
+
+
+def manifest_of(folder: Path, mark: Mark = REPORT) -> dict[str, Any]:
+    """Return a folder's own list of files with what stands beside it; empty where there is none."""
     try:
-        manifest = json.loads((folder / MANIFEST).read_text(encoding="utf-8"))
+        manifest = json.loads((folder / mark.manifest).read_text(encoding="utf-8"))
     except (OSError, ValueError):
-        return set()
-    if not isinstance(manifest, dict) or manifest.get("made_by") != MADE_BY:
-        return set()
-    return {*map(str, manifest.get("files", ())), MANIFEST}
+        return {}
+    return manifest if isinstance(manifest, dict) and manifest.get("made_by") == mark.made_by else {}
 
 
 def write_report(
@@ -93,7 +109,7 @@ def write_report(
     """
     require_replaceable(folder)
     final = Path(os.path.realpath(folder))
-    with reported_as_output_error(folder), _built_beside(final) as building:
+    with reported_as_output_error(folder), built_beside(final) as building:
         tables = _write_tables(contents, building)
         calendar, holds = _write_calendar(contents, building)
         progress("drawing")
@@ -109,24 +125,24 @@ def write_report(
 
 
 @contextmanager
-def _built_beside(final: Path) -> Iterator[Path]:
+def built_beside(final: Path, mark: Mark = REPORT) -> Iterator[Path]:
     """Give a fresh hidden folder that takes the final name when all went well, and vanishes otherwise."""
     final.parent.mkdir(parents=True, exist_ok=True)
     building = _hidden(final)
     building.mkdir()
     try:
         yield building
-        _put_in_place(building, final)
+        _put_in_place(building, final, mark)
     finally:
         shutil.rmtree(building, ignore_errors=True)
 
 
-def _put_in_place(building: Path, final: Path) -> None:
+def _put_in_place(building: Path, final: Path, mark: Mark) -> None:
     """Rename a finished folder; what stood there goes only after that, or comes back."""
     if not final.exists():
         building.rename(final)
         return
-    _require_report(final)  # something may have been put there meanwhile
+    _require_own(final, mark)  # something may have been put there meanwhile
     older = _hidden(final)
     final.rename(older)
     try:

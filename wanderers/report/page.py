@@ -21,6 +21,7 @@ from wanderers.report.glossary import glossary
 from wanderers.report.pictures import Picture
 from wanderers.report.planets import PlanetSection, planet_sections
 from wanderers.report.site_list import SightGroup, sight_groups
+from wanderers.report.timeline import Timeline, timeline_of
 from wanderers.site.places import Site
 from wanderers.site.reasons import depth_words
 from wanderers.site.summary import place_words, zone_words
@@ -61,6 +62,7 @@ class Page:
         generator: program and version.
         kernel_line: kernel and checksum in one line.
         provenance: terms and what they stand for: kernel, checksum, version, frame, time scale, ...
+        timeline: the planets' lanes, which the page's program draws.
         overview: the picture of all longitudes, None where no planet was asked for.
         glance: the list at the top.
         sections: one a planet.
@@ -86,6 +88,7 @@ class Page:
     generator: str
     kernel_line: str
     provenance: tuple[tuple[str, str], ...]
+    timeline: Timeline
     overview: Picture | None
     glance: tuple[Glance, ...]
     sections: tuple[PlanetSection, ...]
@@ -128,6 +131,7 @@ def page_of(
         generator=f"wanderers {__version__}",
         kernel_line=f"kernel {contents.kernel.name}, SHA-256 {contents.kernel.sha256}",
         provenance=provenance(contents),
+        timeline=timeline_of(contents),
         overview=overviews[0] if overviews else None,
         glance=at_a_glance(contents.events, contents.seasons, request.jd_from, request.kinds),
         sections=planet_sections(contents, pictures),

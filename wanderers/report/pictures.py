@@ -25,7 +25,7 @@ from wanderers.report.charts import brightness, longitude, overview, path
 from wanderers.report.charts.export import Format, save
 from wanderers.report.contents import Contents, Progress
 
-INLINE_BYTES: Final = 4_800_000
+INLINE_BYTES: Final = 4_000_000
 """Pictures that stand in the page itself; what comes after stands in its file only."""
 WORTH_WORKERS: Final = 6
 """Fewer pictures are drawn sooner than further processes have started."""

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import base64
 import hashlib
-from dataclasses import fields
+from dataclasses import asdict, fields
 from importlib import resources
 from typing import Any, Final
 
@@ -37,6 +37,9 @@ SITE_HEADINGS: Final = (
 )
 """Columns of the page's event table, without a site and with one: names in the page's program, and titles."""
 
+PROGRAMS: Final = ("page.js", "timeline.js")
+"""The page's own programs, in the order they run: the second uses the first."""
+
 
 def rendered(page: Page, data: dict[str, Any], calendar: str) -> str:
     """Return the page as HTML.
@@ -46,18 +49,25 @@ def rendered(page: Page, data: dict[str, Any], calendar: str) -> str:
         data: the event table as ``page_data.table_data`` gives it.
         calendar: the calendar file as ``page_data.packed`` gives it.
     """
-    program = f"\n{packaged('page.js')}"
+    programs = [f"\n{packaged(name)}" for name in PROGRAMS]
     template = environment().get_template("page.html.j2")
     return template.render(
         {name.name: getattr(page, name.name) for name in fields(page)},
         headings=SITE_HEADINGS if page.site else HEADINGS,
-        data=data | {"site": page.site, "span": page.span, "stem": page.stem, "glare_deg": GLARE_DEG},
+        data=data
+        | {"site": page.site, "span": page.span, "stem": page.stem, "glare_deg": GLARE_DEG}
+        | {"timeline": asdict(page.timeline)},
         calendar=calendar,
         glare_deg=GLARE_DEG,
         style=Markup(packaged("page.css")),
-        program=Markup(program),
-        program_hash=f"sha256-{base64.b64encode(hashlib.sha256(program.encode()).digest()).decode()}",
+        programs=[Markup(program) for program in programs],
+        program_hashes=[policy_hash(program) for program in programs],
     )
+
+
+def policy_hash(program: str) -> str:
+    """Return what a Content Security Policy (W3C, level 3) lets a program in the page run by."""
+    return f"sha256-{base64.b64encode(hashlib.sha256(program.encode()).digest()).decode()}"
 
 
 def environment() -> Environment:

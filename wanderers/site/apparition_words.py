@@ -65,14 +65,13 @@ def caution(sights: Mapping[str, tuple[float, str, str | None]]) -> str | None:
     Args:
         sights: of each moment in SIGHT_WORDS the elongation, the local date, and sunset or sunrise in words.
     """
-    near = [
-        f"{SIGHT_WORDS[name]} ({date}{'' if words is None else f', {words}'})"
-        for name, (elongation_deg, date, words) in sights.items()
-        if elongation_deg < NEAR_SUN_DEG
-    ]
+    near = {
+        name: words for name, (elongation_deg, _, words) in sights.items() if elongation_deg < NEAR_SUN_DEG
+    }
     if not near:
         return None
+    times = ", ".join(words for words in near.values() if words is not None)
     return (
-        f"Within {NEAR_SUN_DEG:g} degrees of the Sun {', '.join(near)}: no binoculars or telescope "
-        "while any of it is up"
+        f"Within {NEAR_SUN_DEG:g} degrees of the Sun {', '.join(SIGHT_WORDS[name] for name in near)}: no "
+        f"binoculars or telescope while any of it is up{f' ({times})' if times else ''}"
     )

@@ -9,6 +9,7 @@ import polars as pl
 
 from wanderers.arrays import Bools, Floats, Ints
 from wanderers.ephemeris.bodies import Body
+from wanderers.ephemeris.stars import star_letters
 from wanderers.events.kinds import Kind
 from wanderers.events.ledger import target_names
 from wanderers.site import clock, reasons
@@ -110,9 +111,7 @@ def _circumstances(watched: Watch, parties: Parties, best: Prospects, members: M
     zone = watched.evenings.zone
     return table.with_columns(
         body=name,
-        name=pl.select(
-            pl.when(name.str.to_lowercase() == name).then(name.str.to_titlecase()).otherwise(name)
-        ).to_series(),
+        name=name.replace(star_letters()).zip_with(~_is_lower(name), name.str.to_titlecase()),
         count=pl.Series(members.there.sum(axis=1)),
         apart=pl.Series(~can & ~blocked),
         verdict=pl.Series([verdict.value for verdict in VERDICTS]).gather(verdict),
@@ -175,6 +174,10 @@ def _stands_up(watched: Watch, target: int, jd: Floats) -> Bools:
     """Return whether a target that neither rises nor sets is up, shape (k,)."""
     _, seen, _, _ = look_exactly(watched, np.full(jd.size, target), jd)
     return np.asarray(seen.place.airless_altitude_deg > rise_level(target).airless_altitude_deg)
+
+
+def _is_lower(name: pl.Series) -> pl.Series:
+    return name.str.to_lowercase() == name
 
 
 def _least(values: Floats) -> Floats:

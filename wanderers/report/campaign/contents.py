@@ -1,4 +1,4 @@
-"""What the files of a campaign hold: its nights in the frame of a camera, its stars, the sky over its season."""
+"""What the files of a campaign hold: nights in the frame of a camera, stars, the sky over the season."""
 
 from __future__ import annotations
 

@@ -1,4 +1,4 @@
-"""What lies behind a campaign's path in the frame: stars, boundaries, constellations, and the way it stands."""
+"""What lies behind a campaign's path in the frame: stars, boundaries, constellations, and how it stands."""
 
 from __future__ import annotations
 
@@ -96,7 +96,7 @@ class DrawnStars:
 
 
 def star_limit(magnitudes: Floats) -> float:
-    """Return the faintest magnitude of a chart with no more than ``MOST_STARS``, to half a magnitude below."""
+    """Return the faintest magnitude of a chart of at most ``MOST_STARS`` stars, to half a magnitude."""
     if magnitudes.size <= MOST_STARS:
         return float(np.ceil(2.0 * magnitudes.max(initial=6.5)) / 2.0)
     return float(np.floor(2.0 * np.sort(magnitudes)[MOST_STARS]) / 2.0)
@@ -175,10 +175,12 @@ def registration_labels(
 def star_labels(ax: Axes, contents: CampaignContents, drawn: DrawnStars, style: Style) -> list[labels.Label]:
     """Return the names of a few more bright stars."""
     taken = set(contents.registration.stars.hip.tolist())
+    box = ax.get_window_extent()
+    within = np.all((drawn.dots > (box.x0, box.y0)) & (drawn.dots < (box.x1, box.y1)), axis=1)
     named = [
         place
         for place, name in enumerate(drawn.stars.name)
-        if name and not name.startswith("HIP ")
+        if name and not name.startswith("HIP ") and within[place]
         if drawn.stars.v_mag[place] <= NAMED_TO and int(drawn.stars.hip[place]) not in taken
     ]
     look = style.note(style="italic", color=style.quiet_ink)

@@ -1,4 +1,4 @@
-"""A campaign's season as clock time against date: twilight, Moon, when the planet is high enough, the nights."""
+"""A campaign's season as clock time against date: twilight, Moon, when the planet is high, the nights."""
 
 from __future__ import annotations
 
@@ -52,8 +52,8 @@ def draw_campaign_clock(contents: CampaignContents, *, style: Style = LIGHT) -> 
             figure,
             f"{campaign.season.body.label} by the clock from {campaign.site.name}, "
             f"{timeaxis.month_span_text(low, high)}",
-            f"Clock of {campaign.site.zone}; a night runs upward from its evening date. Thin upright strokes: "
-            "the Moon is up, the broader the more of it is lit.\nBetween the heavy lines the planet stands "
+            f"Clock of {campaign.site.zone}; a night runs upward from its evening date. Upright strokes: the "
+            "Moon is up, the broader the more of it is lit.\nBetween the heavy lines the planet stands "
             f"{campaign.rules.min_altitude_deg:g}° up or more; numbers are those of the plan.",
             style,
         )
@@ -86,9 +86,9 @@ def campaign_clock_alt_text(contents: CampaignContents) -> str:
     campaign, plan = contents.campaign, contents.plan
     low, high = contents.clock.day_jd[[0, -1]].tolist()
     head = (
-        f"Clock time against date from {campaign.site.name}, {timeaxis.long_span_text(low, high)}: twilight, "
-        f"the Moon, when {campaign.season.body.label} stands {campaign.rules.min_altitude_deg:g} degrees up or "
-        "more, and the planned nights."
+        f"Clock time against date from {campaign.site.name}, {timeaxis.long_span_text(low, high)}: "
+        f"twilight, the Moon, when {campaign.season.body.label} stands "
+        f"{campaign.rules.min_altitude_deg:g} degrees up or more, and the planned nights."
     )
     timed = plan.drop_nulls("recommended_local").filter(pl.col("status") != Status.LOST.value)
     if timed.is_empty():

@@ -20,13 +20,15 @@ from wanderers.report.charts.style import LIGHT, WIDTH_IN, Style, axes_at, in_fo
 from wanderers.report.charts.wording import listed
 
 SIDE_IN: Final = 0.3
-TOP_IN: Final = 1.2
+TOP_IN: Final = 1.35
 HIGHEST_IN: Final = 7.2
 STRIP_IN: Final = 1.1
 PANEL_IN: Final = 2.9
 BETWEEN_IN: Final = 0.4
 LOWEST_IN: Final = 0.7
 LEFT_IN: Final = 0.95
+SLIGHT_DEG: Final = 40.0
+"""Turn up to which north still counts as up, or down."""
 BORDER: Final = 0.03
 """How much sky is shown beyond the picture's edge, as a part of its width."""
 SPARSE_DEAREST: Final = 14.0
@@ -53,7 +55,7 @@ def draw_campaign_field(contents: CampaignContents, *, style: Style = LIGHT) -> 
             draw_stretched(contents, axes_at(figure, LEFT_IN, SIDE_IN, LOWEST_IN, top), style=style)
         campaign_backdrop.draw_compass(figure, contents, ax, style)
         campaign_backdrop.write_key(figure, contents, ax, limit, style)
-        _write_about(figure, contents, style)
+        _write_about(figure, contents, limit, style)
     return figure
 
 
@@ -105,7 +107,8 @@ def plot_campaign_field(
     ]
     points = [path_dots, stars.dots, campaign_backdrop.line_dots(ax, plane)]
     boxes = [campaign_nights.dot_boxes(dots, ax), campaign_nights.dot_boxes(marked, ax, 11.0)]
-    labels.write_labels(ax, wanted, labels.ground_of(ax, np.concatenate(points), np.concatenate(boxes)))
+    ground = labels.Ground(_bounds(ax, plane), np.concatenate(points), np.concatenate(boxes))
+    labels.write_labels(ax, wanted, ground)
     return stars.limit
 
 
@@ -120,8 +123,8 @@ def campaign_field_alt_text(contents: CampaignContents) -> str:
         else "does not hold the whole path with its margin"
     )
     return (
-        f"Path of {campaign.season.body.label} in {listed(names)} with {contents.plan.height} planned nights, in "
-        f"the frame of a {framing.lens_mm:g} mm lens, {contents.frame.width_deg:.1f} by "
+        f"Path of {campaign.season.body.label} in {listed(names)} with {contents.plan.height} planned "
+        f"nights, in the frame of a {framing.lens_mm:g} mm lens, {contents.frame.width_deg:.1f} by "
         f"{contents.frame.height_deg:.1f} degrees. The frame {held}. {turned_words(contents)}"
     )
 
@@ -133,7 +136,7 @@ def turned_words(contents: CampaignContents) -> str:
     north = "down" if contents.is_turned_over else "up"
     turn = min(roll % 360.0, 360.0 - roll % 360.0)
     turn = 180.0 - turn if contents.is_turned_over else turn
-    exact = f"North {north}, east to the {east}" if turn < 45.0 else "Turned as the arrows show"
+    exact = f"North {north}, east to the {east}" if turn < SLIGHT_DEG else "Turned as the arrows show"
     over = "Turned over, as the sky stands there. " if contents.is_turned_over else ""
     return f"{over}{exact}, the upper edge at position angle {roll % 360.0:.0f} degrees."
 
@@ -143,18 +146,30 @@ def lens_words(contents: CampaignContents) -> str:
     framing = contents.framing
     sensor = framing.sensor
     return (
-        f"{sensor.name} ({sensor.width_mm:g} × {sensor.height_mm:g} mm, {sensor.columns} × {sensor.rows} px), "
-        f"{framing.lens_mm:.4g} mm: {contents.frame.width_deg:.1f}° × {contents.frame.height_deg:.1f}°, "
+        f"{sensor.name[:1].upper()}{sensor.name[1:]} ({sensor.width_mm:g} × {sensor.height_mm:g} mm, {sensor.columns} × {sensor.rows} px),"
+        f" {framing.lens_mm:.4g} mm: {contents.frame.width_deg:.1f}° × {contents.frame.height_deg:.1f}°, "
         f"{framing.scale_arcsec_per_px:.1f}″ a pixel"
     )
 
 
 def _size_in(contents: CampaignContents) -> tuple[float, float]:
     """Return width and height of the axes: the picture's shape with an equal border all round."""
+    shape = picture_shape(contents)
+    wide = min(WIDTH_IN - 2.0 * SIDE_IN, HIGHEST_IN / shape)
+    return wide, wide * shape
+
+
+def picture_shape(contents: CampaignContents) -> float:
+    """Return height over width of the picture with its border, which is equally broad all round."""
     half = contents.frame.half_sizes
-    shape = (half[1] + BORDER * half[0]) / (half[0] * (1.0 + BORDER))
-    wide = min(WIDTH_IN - 2.0 * SIDE_IN, HIGHEST_IN / float(shape))
-    return wide, wide * float(shape)
+    return float((half[1] + BORDER * half[0]) / (half[0] * (1.0 + BORDER)))
+
+
+def _bounds(ax: Axes, plane: Plane) -> tuple[float, float, float, float]:
+    """Return the dots within which text may stand: the picture without its edge."""
+    low, high = ax.transData.transform(np.stack([-plane.half, plane.half]))
+    inset = 3.0 * labels.dots_per_pt(ax)
+    return tuple((*(low + inset).tolist(), *(high - inset).tolist()))  # type: ignore[return-value]
 
 
 def _draw_edge(ax: Axes, plane: Plane, style: Style) -> None:
@@ -177,13 +192,14 @@ def _draw_edge(ax: Axes, plane: Plane, style: Style) -> None:
     )
 
 
-def _write_about(figure: Figure, contents: CampaignContents, style: Style) -> None:
+def _write_about(figure: Figure, contents: CampaignContents, limit: float, style: Style) -> None:
     season, frame = contents.campaign.season, contents.frame
     low, high = timeaxis.utc_days(np.array([season.start_jd, season.end_jd])).tolist()
     title = f"{season.body.label} in the frame, {timeaxis.month_span_text(low, high)}"
     middle = f"Middle {ra_text(frame.ra_deg)}, {angle_text(frame.dec_deg)} (J2000)."
     remark = f"{lens_words(contents)}.\n{middle} {turned_words(contents)}"
-    third = "Points on the path: once a day. Thick edge: the picture. Dotted: the margin the path keeps."
-    if season.body in INNER:
-        third = SUN_CAUTION
+    third = f"Points on the path: once a day. Dotted: the margin. Stars to magnitude {limit:g}"
+    if limit > campaign_backdrop.FIELD_LIMIT:
+        third += f" within 5° of the ecliptic, elsewhere to {campaign_backdrop.FIELD_LIMIT:g}"
+    third += f".\n{SUN_CAUTION}" if season.body in INNER else "."
     write_title(figure, title, f"{remark}\n{third}", style)

@@ -35,12 +35,11 @@ def draw_campaign_light(contents: CampaignContents, *, style: Style = LIGHT) -> 
             ax.set_ylabel(words)
             plot_course(contents, ax, column, labelled=number == 1, style=style)
         low, high = contents.clock.day_jd[[0, -1]].tolist()
-        write_title(
-            figure,
-            f"{contents.campaign.season.body.label}: brightness and size, {timeaxis.month_span_text(low, high)}",
-            "Model magnitude outside the air, equatorial diameter of the disc. Numbers are those of the plan.",
-            style,
+        name, span = contents.campaign.season.body.label, timeaxis.month_span_text(low, high)
+        remark = (
+            "Model magnitude outside the air, diameter of the disc at its equator. Numbers as in the plan."
         )
+        write_title(figure, f"{name}: brightness and size, {span}", remark, style)
         nights = campaign_nights.nights_of(contents.plan)
         width = float(figure.get_size_inches()[0])
         figure.legend(

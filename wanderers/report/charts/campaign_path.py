@@ -1,4 +1,4 @@
-"""A campaign's path drawn once more, longitude against latitude, its heights stretched so that nights part."""
+"""A campaign's path drawn once more, longitude against latitude, its heights stretched so nights part."""
 
 from __future__ import annotations
 

@@ -1,10 +1,11 @@
 "use strict";
 // The report page's own program: filters, sorts and saves the event table, changes the look. It keeps what
 // was chosen in the address after "#", so that an address, once copied, shows the same selection again.
-// It reads the tables embedded in the page and asks nothing of any network.
+// It reads the tables embedded in the page and asks nothing of any network. The timeline is in timeline.js.
 
 const ROWS_PER_SLICE = 100;
 const ROWS_ON_PAPER = 3000;
+const SHOWN_ROWS = "#table tbody tr";
 const MANY_FOR_A_CALENDAR = 1000;
 const TICKS = ["body", "kind", "verdict", "without"];
 const FIELDS = ["from", "to", "text", "separation", "elongation", "magnitude"];
@@ -66,7 +67,7 @@ function searched(row) {
 
 // ---- What was chosen ---------------------------------------------------------------------------------
 
-const state = { sort: "time", falling: false, slice: 0, look: "auto", at: "" };
+const state = { sort: "time", falling: false, slice: 0, look: "auto", at: "", when: "", row: "" };
 for (const field of TICKS) state[field] = new Set();
 for (const field of FIELDS) state[field] = "";
 let selection = allRows;
@@ -311,6 +312,8 @@ function writeAddress() {
   if (state.sort !== "time" || state.falling) chosen.set("sort", (state.falling ? "-" : "") + state.sort);
   if (state.slice) chosen.set("slice", state.slice + 1);
   if (state.look !== "auto") chosen.set("look", state.look);
+  if (state.when) chosen.set("when", state.when);
+  if (state.row) chosen.set("row", state.row);
   if (state.at) chosen.set("at", state.at);
   const text = chosen.toString().replaceAll("%2C", ",");
   history.replaceState(null, "", text ? `#${text}` : location.pathname + location.search);
@@ -331,6 +334,8 @@ function readAddress() {
   state.slice = Math.max(0, (Number.parseInt(chosen.get("slice") ?? "1", 10) || 1) - 1);
   state.look = findAll('input[name="look"]').some((box) => box.value === chosen.get("look")) ? chosen.get("look") : "auto";
   state.at = text.includes("=") ? chosen.get("at") ?? "" : text;
+  state.when = chosen.get("when") ?? "";
+  state.row = chosen.get("row") ?? "";
 }
 
 /** Puts what was chosen into the controls. */
@@ -338,8 +343,20 @@ function showControls() {
   for (const field of TICKS) for (const box of findAll(`input[name="${field}"]`)) box.checked = state[field].has(box.value);
   for (const field of FIELDS) find(`input[name="${field}"]`).value = state[field];
   for (const box of findAll('input[name="look"]')) box.checked = box.value === state.look;
-  document.documentElement.dataset.look = state.look;
+  showLook();
   markBadFields();
+}
+
+/** Shows the look chosen, and lets the links to the dossiers carry it. */
+function showLook() {
+  document.documentElement.dataset.look = state.look;
+  for (const link of findAll('a[href^="seasons/"]')) link.setAttribute("href", withLook(link.getAttribute("href")));
+}
+
+/** Returns the address of another page of the report with the look chosen, which that page reads. */
+function withLook(address) {
+  const [page] = address.split("#");
+  return state.look === "auto" ? page : `${page}#look=${state.look}`;
 }
 
 /** Marks the fields whose text is no date or number; such a field filters nothing. */
@@ -365,12 +382,27 @@ function follow() {
   showControls();
   select();
   show();
-  goTo(state.at);
+  if (state.row) goToRow(state.row);
+  else goTo(state.at);
+}
+
+/** Goes to a row of the table by its id; filters that hide it are cleared. */
+function goToRow(id) {
+  const row = allRows.find((one) => cell.event_id(one) === id);
+  if (row === undefined) return;
+  if (!selection.includes(row)) clearFilters();
+  state.slice = Math.floor(selection.indexOf(row) / ROWS_PER_SLICE);
+  show();
+  const line = findAll(SHOWN_ROWS).find((one) => one.dataset.id === id);
+  line.tabIndex = -1;
+  line.scrollIntoView({ block: "center" });
+  line.focus({ preventScroll: true });
 }
 
 /** Takes over a change of filters: begins again at the first slice. */
 function refresh() {
   state.slice = 0;
+  state.row = "";
   markBadFields();
   select();
   show();
@@ -435,10 +467,8 @@ function listen() {
     refresh();
   });
   find("#clear").addEventListener("click", () => {
-    for (const field of TICKS) state[field].clear();
-    for (const field of FIELDS) state[field] = "";
-    showControls();
-    refresh();
+    clearFilters();
+    writeAddress();
   });
   find("#save-csv").addEventListener("click", () => save(selectionAsCsv(), `${data.stem}_selection.csv`, "text/csv"));
   find("#save-ics").addEventListener("click", saveCalendar);
@@ -449,6 +479,15 @@ function listen() {
   addEventListener("hashchange", follow);
   addEventListener("beforeprint", showOnPaper);
   addEventListener("afterprint", show);
+}
+
+function clearFilters() {
+  for (const field of TICKS) state[field].clear();
+  for (const field of FIELDS) state[field] = "";
+  state.slice = 0;
+  showControls();
+  select();
+  show();
 }
 
 function sortByHeading(event) {
@@ -462,24 +501,36 @@ function sortByHeading(event) {
 function turnTo(event) {
   const last = Math.ceil(selection.length / ROWS_PER_SLICE) - 1;
   state.slice = { first: 0, previous: state.slice - 1, next: state.slice + 1, last }[event.target.dataset.go];
+  state.row = "";
   show();
   writeAddress();
 }
 
 function changeLook(event) {
   state.look = event.target.value;
-  document.documentElement.dataset.look = state.look;
+  showLook();
   writeAddress();
 }
 
-/** Follows a link to a part of the page without losing the filter that the address holds. */
+/** Follows a link within the page without losing what the address holds: look, span, and filters if it names none. */
 function goByLink(event) {
   const address = event.target.closest('a[href^="#"]')?.getAttribute("href") ?? "";
-  if (address.length < 2 || address.includes("=")) return;
+  if (address.length < 2) return;
   event.preventDefault();
-  state.at = address.slice(1);
-  writeAddress();
-  goTo(state.at);
+  const wanted = new URLSearchParams(address.includes("=") ? address.slice(1) : "");
+  state.row = wanted.get("row") ?? "";
+  if (state.row) {
+    goToRow(state.row);
+    writeAddress();
+  } else if (address.includes("=")) {
+    if (state.look !== "auto") wanted.set("look", state.look);
+    if (state.when) wanted.set("when", state.when);
+    location.hash = wanted;
+  } else {
+    state.at = address.slice(1);
+    writeAddress();
+    goTo(state.at);
+  }
 }
 
 document.documentElement.dataset.program = "";
