@@ -43,7 +43,7 @@ def _around_three(points: Floats) -> list[Floats]:
         return []
     one, two, three = (points[places] for places in triples.T)
     axis = _cross(two - one, three - one)
-    return [_unit(axis * np.where((axis * one).sum(axis=1, keepdims=True) < 0.0, -1.0, 1.0))]
+    return [_unit(axis * np.where(_dot(axis, one)[:, None] < 0.0, -1.0, 1.0))]
 
 
 def _cross(a: Floats, b: Floats) -> Floats:
@@ -52,7 +52,12 @@ def _cross(a: Floats, b: Floats) -> Floats:
     return np.stack([y * w - z * v, z * u - x * w, x * v - y * u], axis=1)
 
 
+def _dot(a: Floats, b: Floats) -> Floats:
+    """Return dot products of vectors, shape (k, n)."""
+    return np.asarray(np.einsum("kin,kin->kn", a, b))
+
+
 def _unit(axis: Floats) -> Floats:
     """Return vectors brought to unit length, zero where they vanish, shape (k, 3, n)."""
-    size = np.sqrt((axis * axis).sum(axis=1, keepdims=True))
+    size = np.sqrt(_dot(axis, axis))[:, None]
     return np.asarray(np.divide(axis, size, out=np.zeros_like(axis), where=size > 0.0))
