@@ -10,6 +10,7 @@ from __future__ import annotations
 
 import multiprocessing
 import os
+import signal
 import sys
 import threading
 import warnings
@@ -50,7 +51,17 @@ def pool(most: int, initializer: Callable[..., None] | None = None, *shared: Any
     if not _may_copy():
         return ThreadPoolExecutor(workers, initializer=initializer, initargs=shared)
     context = multiprocessing.get_context("fork")
-    return _Copies(workers, mp_context=context, initializer=initializer, initargs=shared)
+    return _Copies(workers, mp_context=context, initializer=_begin, initargs=(initializer, *shared))
+
+
+def _begin(initializer: Callable[..., None] | None, *shared: Any) -> None:
+    """Start a copy. Interrupted from the keyboard it finishes the task in hand, and does no other.
+
+    Ended at once it could leave half a result in the pipe, on whose other half this process would wait.
+    """
+    signal.signal(signal.SIGINT, lambda number, frame: _interrupted.set())
+    if initializer is not None:
+        initializer(*shared)
 
 
 def side_by_side(work: Callable[[Task], Result], tasks: Sequence[Task]) -> Iterator[Result]:
@@ -81,6 +92,7 @@ def _may_copy() -> bool:
 
 
 _shared = threading.local()
+_interrupted = threading.Event()
 
 
 def _share(work: Callable[[Any], Any]) -> None:
@@ -88,4 +100,6 @@ def _share(work: Callable[[Any], Any]) -> None:
 
 
 def _do_shared(task: Any) -> Any:
+    if _interrupted.is_set():
+        raise KeyboardInterrupt
     return _shared.work(task)

@@ -144,7 +144,7 @@ def test_several_bodies_at_once_are_described_as_each_alone(sky: Sky) -> None:
         alone = appearance(sky, numbers[own], JD[own])
         for name in Appearance.__slots__:
             np.testing.assert_allclose(
-                getattr(together, name)[own], getattr(alone, name), rtol=1e-12, atol=1e-12, err_msg=name
+                getattr(together, name)[..., own], getattr(alone, name), rtol=1e-12, atol=1e-12, err_msg=name
             )
 
 

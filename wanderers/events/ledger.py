@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable, Iterator, Sequence
+from functools import cache
 from itertools import pairwise
 from typing import Final
 
@@ -84,15 +86,11 @@ def _entries(found: Found) -> pl.DataFrame:
     contacts = np.full((batch.jd.size, 4), np.nan) if batch.contacts_jd is None else batch.contacts_jd
     entries = pl.DataFrame(
         {
-            "kind": pl.repeat(batch.kind.value, batch.jd.size, eager=True),
             "detail": pl.Series([word or None for word in batch.details], dtype=pl.String).gather(
                 batch.detail
             ),
             "body": names.gather(batch.body),
             "other": _of_pairs(names, batch.other),
-            "frame": pl.repeat(
-                batch.frame.value if batch.frame else None, batch.jd.size, eager=True, dtype=pl.String
-            ),
             "jd_tt": batch.jd,
             "figure_deg": none if batch.figure_deg is None else batch.figure_deg,
             "round": found.rounds,
@@ -104,7 +102,10 @@ def _entries(found: Found) -> pl.DataFrame:
         }
         | {f"contact{number}_jd_tt": contacts[:, number - 1] for number in CONTACTS}
     )
-    return entries.with_columns(event_id=_event_id(found), **_meeting_columns(found))
+    frame = pl.lit(batch.frame.value if batch.frame else None, dtype=pl.String)
+    return entries.with_columns(
+        kind=pl.lit(batch.kind.value), frame=frame, event_id=_event_id(found), **_meeting_columns(found)
+    )
 
 
 def event_ids(found: Found) -> pl.Series:
@@ -134,22 +135,24 @@ def _event_id(found: Found) -> pl.Expr:
     Words are made nameable before they are handed out to the events: there are few of them.
     """
     batch = found.batch
-    targets, kind = _nameable(target_names()), _nameable([batch.kind.value])[0]
+    targets, kind = _nameable(target_names()), _nameable((batch.kind.value,))[0]
     parts: list[pl.Expr | pl.Series] = [pl.lit(kind)]
     if batch.kind is not Kind.GATHERING:
         parts += [pl.lit(batch.frame.value)] if batch.frame else []
         parts += [targets.gather(batch.body), _of_pairs(targets, batch.other)]
     if batch.kind is not Kind.APPULSE:
-        parts.append(_nameable([word or None for word in batch.details]).gather(batch.detail))
+        parts.append(_nameable(batch.details).gather(batch.detail))
     if batch.entered is not None:
         parts.append(_nameable(constellations.ABBREVIATIONS).gather(batch.entered))
     count = pl.concat_str(pl.lit("c"), pl.col("round"), pl.lit("-"), pl.col("ordinal"))
     return pl.concat_str([*parts, count], separator="-", ignore_nulls=True)
 
 
-def _nameable(words: Sequence[str | None]) -> pl.Series:
-    """Return words as they stand in names of events."""
-    return pl.Series(words, dtype=pl.String).str.to_lowercase().str.replace_all(UNNAMEABLE, "_")
+@cache
+def _nameable(words: tuple[str, ...]) -> pl.Series:
+    """Return words as they stand in names of events, null for an empty one."""
+    named = [re.sub(UNNAMEABLE, "_", word.lower()) or None for word in words]
+    return pl.Series(named, dtype=pl.String)
 
 
 def _of_pairs(names: pl.Series, other: Ints) -> pl.Series:
