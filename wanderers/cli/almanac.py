@@ -19,6 +19,10 @@ from wanderers.report.tables import side_by_side_heading
 HOW_IT_STANDS = (
     "Add the nearest better events of the same kind and bodies, earlier and later, in the whole kernel."
 )
+FOR_THE_WHOLE_EARTH = (
+    "--side-by-side compares definitions for the whole Earth: leave out --site and what limits events for an "
+    "audience"
+)
 ALL_DEFINITIONS = "Print stations and meetings with their definitions next to each other."
 
 
@@ -50,6 +54,8 @@ def command(
     """
     query = wanted.query(workplace)
     if side_by_side:
+        if view != View(rules=view.rules):
+            raise UsageProblem(FOR_THE_WHOLE_EARTH)
         _print_side_by_side(query, workplace, destination)
         return
     table, removed = viewed(workplace.store, query, view, wanted.within_deg)

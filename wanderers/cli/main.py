@@ -23,6 +23,7 @@ COMMANDS: Final = {
     "nights": "Print what can be seen from a site, evening by evening, or at an instant.",
     "lineups": "Find runs of evenings on which several bodies stand up at once.",
     "apparitions": "Print when each planet comes out and is lost again, and when it stands best.",
+    "campaign": "Plan a retrograde season night by night, from a site.",
     "sites": "List, add and check sites; find a city.",
     "kernels": "Say which kernel is used; check one, add one.",
 }

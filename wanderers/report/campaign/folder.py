@@ -25,7 +25,6 @@ from wanderers.report.campaign.sheet import field_sheet
 from wanderers.report.charts import campaign_clock, campaign_field, campaign_light
 from wanderers.report.charts.campaign_nights import RED
 from wanderers.report.charts.export import Format, save
-from wanderers.report.charts.style import LIGHT
 from wanderers.report.contents import Progress
 from wanderers.report.folder import Mark, built_beside, manifest_of, require_replaceable
 from wanderers.report.pictures import Picture, lean

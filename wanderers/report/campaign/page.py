@@ -187,8 +187,8 @@ def _lead(contents: CampaignContents) -> str:
     past = ", ".join(f"{count} {name.value}" for name, count in gone.items() if count)
     musts = int((contents.plan["role"] == "must").sum())
     return (
-        f"{path}: {contents.plan.height} nights{f' ({past})' if past else ''}, {musts} of them must-nights, and "
-        f"{contents.spares.height} spares."
+        f"{path}: {contents.plan.height} nights{f' ({past})' if past else ''}, {musts} of them must-nights, "
+        f"and {contents.spares.height} spares."
     )
 
 

@@ -84,7 +84,7 @@ def field_sheet(contents: CampaignContents, paper: Paper) -> bytes:
 def sheet_pages(contents: CampaignContents, paper: Paper) -> tuple[Leaf, Leaf]:
     """Return both pages, written."""
     first, second = Leaf(paper), Leaf(paper)
-    nights = list(to_come(contents.plan).iter_rows(named=True))
+    nights: list[Night] = list(to_come(contents.plan).iter_rows(named=True))
     _write_head(first, contents, 1)
     _write_purpose(first, contents)
     rest = _write_nights(first, contents, nights, first.room)

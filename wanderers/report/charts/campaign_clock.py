@@ -6,6 +6,7 @@ from typing import Any, Final
 
 import numpy as np
 import polars as pl
+from matplotlib.artist import Artist
 from matplotlib.axes import Axes
 from matplotlib.collections import LineCollection
 from matplotlib.figure import Figure
@@ -172,7 +173,7 @@ def _moon_up(clock: SkyClock) -> tuple[Ints, Floats, Floats]:
     return evening, ends[0], ends[1]
 
 
-def _phases(clock: SkyClock) -> tuple[Floats, Floats]:
+def _phases(clock: SkyClock) -> tuple[Ints, Ints]:
     """Return the places of the evenings of full and of new Moon."""
     lit = clock.moon_illuminated
     inner, before, after = lit[1:-1], lit[:-2], lit[2:]
@@ -254,7 +255,10 @@ def _write_key(figure: Figure, contents: CampaignContents, style: Style) -> None
         Patch(facecolor=fill, edgecolor=style.quiet_ink, linewidth=0.5, label=word)
         for fill, word in zip(fills, words, strict=True)
     ]
-    rows = ([*campaign_nights.handles(nights.sorts, style), *lines[:2]], [*patches, *lines[2:]])
+    rows: tuple[list[Artist], ...] = (
+        [*campaign_nights.handles(nights.sorts, style), *lines[:2]],
+        [*patches, *lines[2:]],
+    )
     width, height = figure.get_size_inches()
     for number, row in enumerate(rows):
         figure.legend(

@@ -145,9 +145,10 @@ def lens_words(contents: CampaignContents) -> str:
     """Return sensor, lens, field and scale in numbers."""
     framing = contents.framing
     sensor = framing.sensor
+    name = f"{sensor.name[:1].upper()}{sensor.name[1:]}"
     return (
-        f"{sensor.name[:1].upper()}{sensor.name[1:]} ({sensor.width_mm:g} × {sensor.height_mm:g} mm, {sensor.columns} × {sensor.rows} px),"
-        f" {framing.lens_mm:.4g} mm: {contents.frame.width_deg:.1f}° × {contents.frame.height_deg:.1f}°, "
+        f"{name} ({sensor.width_mm:g} × {sensor.height_mm:g} mm, {sensor.columns} × {sensor.rows} px), "
+        f"{framing.lens_mm:.4g} mm: {contents.frame.width_deg:.1f}° × {contents.frame.height_deg:.1f}°, "
         f"{framing.scale_arcsec_per_px:.1f}″ a pixel"
     )
 
@@ -169,7 +170,7 @@ def _bounds(ax: Axes, plane: Plane) -> tuple[float, float, float, float]:
     """Return the dots within which text may stand: the picture without its edge."""
     low, high = ax.transData.transform(np.stack([-plane.half, plane.half]))
     inset = 3.0 * labels.dots_per_pt(ax)
-    return tuple((*(low + inset).tolist(), *(high - inset).tolist()))  # type: ignore[return-value]
+    return (*(low + inset).tolist(), *(high - inset).tolist())
 
 
 def _draw_edge(ax: Axes, plane: Plane, style: Style) -> None:
