@@ -19,7 +19,7 @@ from wanderers.errors import OutputError
 from wanderers.plans.campaign import Campaign, plan_campaign
 from wanderers.plans.replan import LoggedNight, parse_evening, read_log
 from wanderers.plans.request import CampaignRequest
-from wanderers.plans.season import NEXT, TAIL_DAYS
+from wanderers.plans.season import LEAD_DAYS, NEXT, TAIL_DAYS
 from wanderers.report.campaign.contents import CameraChoice
 from wanderers.report.campaign.folder import write_campaign
 from wanderers.report.tables import counted
@@ -42,9 +42,8 @@ WHERE_TO: Final = "Folder to write; an older plan there is replaced. [default: r
 @click.argument("body", type=BODY, metavar="BODY")
 @site_options(required=True)
 @click.option("--season", default=NEXT, show_default=True, metavar="WHICH", help=WHICH_SEASON)
-@click.option(
-    "--tail", type=click.FloatRange(0.0), default=TAIL_DAYS, show_default=True, metavar="DAYS", help=AFTER
-)
+@click.option("--lead", default=LEAD_DAYS, **DAYS, help=BEFORE)
+@click.option("--tail", default=TAIL_DAYS, **DAYS, help=AFTER)
 @night_options
 @camera_options
 @click.option("--done", type=click.Path(path_type=Path), metavar="FILE", help=WHAT_HAPPENED)

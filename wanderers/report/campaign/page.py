@@ -36,7 +36,6 @@ class NightRow:
     role: str
     is_must: bool
     is_gone: bool
-    serves: str
     time: str
     after_midnight: bool
     window: str
@@ -197,7 +196,8 @@ def _basis(contents: CampaignContents) -> tuple[Fact, ...]:
     return (
         (
             "Site",
-            f"{site.name}, {site.latitude_deg:+.2f}°, {site.longitude_deg:+.2f}°, {site.elevation_m:.0f} m",
+            f"{site.name}, {words.signed(site.latitude_deg, 2)}°, {words.signed(site.longitude_deg, 2)}°, "
+            f"{site.elevation_m:.0f} m",
         ),
         ("Clock", site.zone),
         ("Season", str(campaign.season.row["season_id"])),
@@ -217,7 +217,6 @@ def _night_row(contents: CampaignContents, night: Night) -> NightRow:
         role=words.role(night),
         is_must=words.is_must(night),
         is_gone=night["status"] != Status.PLANNED.value,
-        serves=" and ".join(words.moments_words(contents, night)),
         time=words.clock(night["recommended_local"]),
         after_midnight=words.is_after_midnight(night),
         window=words.window(night),
@@ -252,7 +251,7 @@ def _moment_rows(contents: CampaignContents) -> tuple[MomentRow, ...]:
                 night=f"{night['night']}, {words.short_day(night['evening_date'])}" if night else "none",
                 spares=words.spare_days(night) if night else "",
                 tries=str(chance.tries),
-                chance=f"{chance.chance * 100.0:.0f} %",
+                chance=words.percent(chance.chance),
             )
         )
     return tuple(rows)

@@ -43,7 +43,7 @@ def is_after_midnight(night: Night) -> bool:
 def short_day(evening: str) -> str:
     """Return a date as 3 Mar."""
     _, month, day = evening.rsplit("-", 2)
-    return f"{int(day)} {MONTHS[int(month) - 1]}"
+    return f"{int(day)}\N{NO-BREAK SPACE}{MONTHS[int(month) - 1]}"
 
 
 def long_day(evening: str) -> str:
@@ -202,7 +202,29 @@ def what_next(contents: CampaignContents) -> list[str]:
             f"{clock(night['window_end_local'])} ({night['zone']}); at another time within it the field only "
             "stands at another tilt."
         )
+        told.append(lens_words(contents, night))
     return [*told, if_cloudy(contents, night)]
+
+
+def lens_words(contents: CampaignContents, night: Night) -> str:
+    """Return with which lens a night is taken, and how the camera then leans."""
+    framing, lean = contents.framing, night["camera_tilt_deg"]
+    text = f"Lens {framing.lens_mm:.4g} mm on {framing.sensor.name}, aimed and turned as on the chart"
+    if lean is None or abs(lean) < 0.5:
+        return f"{text}." if lean is None else f"{text}: upright at that time."
+    return f"{text}: at that time its upper side leans {abs(lean):.0f} degrees to the {side(lean)}."
+
+
+def side(lean_deg: float) -> str:
+    """Return to which side a camera leans, as seen from behind it."""
+    return "left" if lean_deg > 0.0 else "right"
+
+
+def percent(chance: float) -> str:
+    """Return a chance in per cent; certainty and impossibility only where they are."""
+    if 0.0 < chance < 0.01 or 0.99 < chance < 1.0:
+        return "under 1 %" if chance < 0.5 else "over 99 %"
+    return f"{chance * 100.0:.0f} %"
 
 
 def if_cloudy(contents: CampaignContents, night: Night) -> str:
@@ -234,7 +256,7 @@ def chances_words(contents: CampaignContents) -> list[str]:
         return []
     share = f"With {chances.cloudy * 100.0:.0f} % of nights lost to clouds"
     told = [
-        f"{share}, both turns are got with a chance of {chances.both_turns * 100.0:.0f} %.",
+        f"{share}, the chance of getting both turns is {percent(chances.both_turns)}.",
         f"Of {chances.planned} frames, {chances.expected_frames:.0f} are to be expected without spares and "
         f"{chances.expected_frames_with_spares:.0f} with them.",
         f"The longest hole is {chances.longest_hole_deg:.1f} degrees of path "
