@@ -5,6 +5,7 @@
 
 const ROWS_PER_SLICE = 100;
 const ROWS_ON_PAPER = 3000;
+const ROWS_PREPARED = 2000; // at a time, for the search
 const SHOWN_ROWS = "#table tbody tr";
 const MANY_FOR_A_CALENDAR = 1000;
 const TICKS = ["body", "kind", "verdict", "without"];
@@ -56,13 +57,19 @@ function instant(text) {
   return date.getTime() + ((hour * 60 + minute) * 60 + second) * 1000;
 }
 
-let searchTexts = null;
+const searchTexts = new Array(rowCount);
 
-/** Returns the text of a row that a search looks into; composed when the first search asks for it. */
+/** Returns the text of a row that a search looks into; composed when first asked for. */
 function searched(row) {
-  searchTexts ??= allRows.map((one) =>
-    [what(one), constellation(one), cell.kind(one), cell.detail(one), iso(time[one]), note(one), seen(one)].join(" ").toLowerCase());
-  return searchTexts[row];
+  const compose = () => [what(row), constellation(row), cell.kind(row), cell.detail(row), iso(time[row]), note(row), seen(row)];
+  return (searchTexts[row] ??= compose().join(" ").toLowerCase());
+}
+
+/** Composes the texts bit by bit, begun when the search field is entered, so that no keystroke waits for them. */
+function prepareSearch(row = 0) {
+  const end = Math.min(row + ROWS_PREPARED, rowCount);
+  for (let one = row; one < end; one += 1) searched(one);
+  if (end < rowCount) setTimeout(prepareSearch, 0, end);
 }
 
 // ---- What was chosen ---------------------------------------------------------------------------------
@@ -172,14 +179,11 @@ function select() {
 function sorted(rows) {
   const key = sortKeys[state.sort];
   const way = state.falling ? -1 : 1;
-  const known = rows.filter((row) => key(row) !== null && key(row) !== "");
-  const unknown = rows.filter((row) => key(row) === null || key(row) === "");
-  const values = new Map(known.map((row) => [row, key(row)]));
-  const compare = (a, b) => {
-    const [one, two] = [values.get(a), values.get(b)];
-    return one < two ? -way : one > two ? way : a - b;
-  };
-  return [...known.sort(compare), ...unknown];
+  const values = new Array(rowCount);
+  for (const row of rows) values[row] = key(row);
+  const lacks = (row) => values[row] === null || values[row] === "";
+  const compare = (a, b) => (values[a] < values[b] ? -way : values[a] > values[b] ? way : a - b);
+  return [...rows.filter((row) => !lacks(row)).sort(compare), ...rows.filter(lacks)];
 }
 
 // ---- Printing rows -----------------------------------------------------------------------------------
@@ -466,6 +470,7 @@ function listen() {
     else state[name].delete(value);
     refresh();
   });
+  find('input[name="text"]').addEventListener("focus", () => prepareSearch(), { once: true });
   find("#clear").addEventListener("click", () => {
     clearFilters();
     writeAddress();
