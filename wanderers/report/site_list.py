@@ -102,7 +102,7 @@ def _sight(event: words.Event) -> Sight:
         site_words.clock(best) if best else "",
         f"{event['altitude_deg']:.0f}° {event['compass']}" if seen else "",
         _how(event, seen=seen),
-        f"{event['local_date']} {event['local_time'][:5]}",
+        words.minute(f"{event['local_date']}T{event['local_time']}"),
         site_words.caution(event)[0] if event["caution"] else "",
     )
 

@@ -51,7 +51,8 @@ def placed(event: Event) -> str:
     """Return how two bodies stand to each other at the best moment, the horizon level."""
     apart, where = f"{event['seen_separation_deg']:.1f} degrees", event["seen_placement"]
     of = "" if where in ("above", "below") else "of "
-    return f"{label(event['other'])} is then {apart} {where} {of}{label(event['body'])}."
+    base = "the Moon" if event["body"] == "moon" else label(event["body"])
+    return f"{label(event['other'])} is then {apart} {where} {of}{base}."
 
 
 def night_words(evening_date: str, best: dt.datetime) -> str:

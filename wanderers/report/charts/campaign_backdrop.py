@@ -36,7 +36,8 @@ NAME_MESH: Final = (41, 27)
 SCALES_DEG: Final = (0.25, 0.5, 1.0, 2.0, 5.0, 10.0, 20.0)
 SCALE_PART: Final = 0.14
 """Longest scale bar as a part of the picture's width."""
-NORTH_STEP_DEG: Final = 0.01
+KEY_IN, COMPASS_IN, SCALE_IN = 0.4, 1.0, 2.0
+"""Where in the strip below the picture the key begins, from the left; compass and scale, from the right."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -245,7 +246,7 @@ def draw_compass(figure: Figure, contents: CampaignContents, ax: Axes, style: St
     unit = float(figure.dpi)
     width, height = figure.bbox.size
     roll = np.radians(frame.position_angle_deg)
-    centre = np.array([box.x1 - 0.75 * unit, box.y0 - 0.58 * unit])
+    centre = np.array([width - COMPASS_IN * unit, box.y0 - 0.58 * unit])
     # In the picture north lies at the position angle to the right of up, east a quarter turn to its left.
     ways = {"N": (np.sin(roll), np.cos(roll)), "E": (-np.cos(roll), np.sin(roll))}
     for letter, way in ways.items():
@@ -280,7 +281,7 @@ def _draw_scale(figure: Figure, contents: CampaignContents, ax: Axes, style: Sty
     fitting = [deg for deg in SCALES_DEG if deg <= SCALE_PART * contents.frame.width_deg]
     degrees = max(fitting, default=SCALES_DEG[0])
     long = 2.0 * np.tan(np.radians(degrees / 2.0)) * dots_per_tangent
-    x1, y = box.x1 - 1.75 * unit, box.y0 - 0.66 * unit
+    x1, y = width - SCALE_IN * unit, box.y0 - 0.66 * unit
     for ends, heights in (
         ((x1 - long, x1), (y, y)),
         *(((x, x), (y - 6.0, y + 6.0)) for x in (x1 - long, x1)),
@@ -330,7 +331,7 @@ def write_key(figure: Figure, contents: CampaignContents, ax: Axes, limit: float
         figure.legend(
             handles=row,
             loc="upper left",
-            bbox_to_anchor=(box.x0 / width, (box.y0 - (0.2 + 0.32 * number) * figure.dpi) / height),
+            bbox_to_anchor=(KEY_IN * figure.dpi / width, (box.y0 - (0.2 + 0.32 * number) * figure.dpi) / height),
             ncols=len(row),
             borderaxespad=0.0,
             borderpad=0.0,

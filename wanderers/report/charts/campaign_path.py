@@ -18,7 +18,7 @@ from wanderers.report.charts.curves import unwrapped
 from wanderers.report.charts.path import angle_text
 from wanderers.report.charts.style import LIGHT, Style, tidy
 
-FLAT: Final = 0.28
+FLAT: Final = 0.15
 """Height of a path over its length below which it is drawn once more."""
 ROOM: Final = (0.04, 0.24)
 """Room beside and above the path, as parts of its extents."""
@@ -93,7 +93,7 @@ def _set_axes(ax: Axes, x: Floats, y: Floats, turned_over: bool, style: Style) -
     ax.set_ylabel("latitude")
     tidy(ax, style)
     ax.spines[["top", "right"]].set_visible(True)
-    return f"{times:.0f}"
+    return f"{times:.2g}"
 
 
 def _month_labels(ax: Axes, contents: CampaignContents, line: Floats, style: Style) -> list[labels.Label]:

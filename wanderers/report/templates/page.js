@@ -91,7 +91,7 @@ function seen(row) {
 }
 
 const named = (name) => data.designations[name] ?? (name === name.toLowerCase() ? name[0].toUpperCase() + name.slice(1) : name);
-const clock = (local) => local.slice(11, 16);
+const clock = (local) => minute(local.slice(0, 19)).slice(-5);
 
 /** Returns a local date with its weekday, as "Fri 2027-03-05". */
 function dated(local) {
@@ -220,7 +220,7 @@ function distance(row) {
 }
 
 const fromSite = [
-  { style: "when", text: (row) => `${cell.local_date(row)} ${cell.local_time(row).slice(0, 5)}` },
+  { style: "when", text: (row) => minute(`${cell.local_date(row)}T${cell.local_time(row)}`) },
   { style: "what", text: what, beside: seen, below: (row) => cell.caution(row) ?? note(row) },
   { label: "Watch", text: watch },
   { label: "Seen with", text: (row) => cell.verdict(row).replace("_", " ") },
