@@ -9,6 +9,7 @@ from pathlib import Path
 from typing import Any, Final
 
 import click
+import polars as pl
 
 from wanderers.cli.campaign_options import camera_options, night_options
 from wanderers.cli.options import BODY, Workplace, workplace_options
@@ -120,6 +121,8 @@ def told(campaign: Campaign) -> list[str]:
         return ["no night can serve this plan", *campaign.notes, *campaign.advice]
     dates = sorted(campaign.plan["evening_date"].to_list())
     lines = [f"{counted(len(dates), 'night')} from {dates[0]} to {dates[-1]}"]
+    changes = campaign.changes.filter(pl.col("change") != "kept")
+    lines += [f"{row['change']}: {row['evening_date']}" for row in changes.iter_rows(named=True)]
     if campaign.changes.height:
-        lines += [f"{row['change']}: {row['evening_date']}" for row in campaign.changes.iter_rows(named=True)]
+        lines.append(f"kept: {counted(campaign.changes.height - changes.height, 'night')}")
     return [*lines, *campaign.advice]

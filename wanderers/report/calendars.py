@@ -240,7 +240,7 @@ def _add_times(component: Event, event: words.Event, style: Style, shown: str) -
 def by_clock(time: dt.datetime, site: Site) -> dt.datetime:
     """Return a time by the site's clock, or in UTC where the clock would be misread.
 
-    The second of two means the first (RFC 5545, 3.3.5); a time rounded into the hour that clocks skip is none.
+    The second of two would mean the first (RFC 5545, 3.3.5); one rounded into a skipped hour is no time.
     """
     shown = time.astimezone(zone_named(site.zone).rules).replace(fold=0)
     same_clock = shown.replace(tzinfo=None) == time.replace(tzinfo=None)

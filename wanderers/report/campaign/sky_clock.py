@@ -33,7 +33,7 @@ class SkyClock:
         hour: by the clock, counted from the beginning of the evening's date (23 is 11 in the evening, 26 is
             2 in the morning of the next date), rising, shape (m,).
         sun_altitude_deg: without refraction, shape (m, n).
-        moon_altitude_deg: likewise; NaN where the kernel has no Moon.
+        moon_altitude_deg: as seen; NaN where the kernel has no Moon.
         moon_illuminated: at the middle of each evening, shape (n,).
         above_limit_deg: by how much the planet stands above the least altitude asked for, or above the
             site's horizon where that is higher, shape (m, n).

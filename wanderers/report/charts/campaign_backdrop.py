@@ -328,10 +328,11 @@ def write_key(figure: Figure, contents: CampaignContents, ax: Axes, limit: float
     width, height = figure.bbox.size
     rows = ([*campaign_nights.handles(nights.sorts, style), square], [*_magnitudes(limit, style), *lines])
     for number, row in enumerate(rows):
+        top = box.y0 - (0.2 + 0.32 * number) * figure.dpi
         figure.legend(
             handles=row,
             loc="upper left",
-            bbox_to_anchor=(KEY_IN * figure.dpi / width, (box.y0 - (0.2 + 0.32 * number) * figure.dpi) / height),
+            bbox_to_anchor=(KEY_IN * figure.dpi / width, top / height),
             ncols=len(row),
             borderaxespad=0.0,
             borderpad=0.0,

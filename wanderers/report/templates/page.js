@@ -105,7 +105,7 @@ function watch(row) {
   const [start, best, end] = [cell.window_start_local(row), cell.best_local(row), cell.window_end_local(row)];
   if (best === null || cell.verdict(row) === "not_visible") return "";
   const night = dated(start) === dated(end) ? "" : "night after ";
-  return `${night}${dated(start)} ${clock(start)}–${clock(end)}, best ${clock(best)}`;
+  return `${night}${dated(start)} ${clock(start)}–${clock(end)}, best\u00a0${clock(best)}`;
 }
 
 const sortKeys = {
