@@ -42,7 +42,11 @@ def verdict_table(
     Returns:
         columns ``verdict``, ``verdict_reason``, ``caution``.
     """
-    table = _circumstances(watched, parties, best, members).with_columns(events["kind"])
+    # Near the Sun at the instant or at the best moment: either is near.
+    nearest = pl.min_horizontal("elongation_deg", events["elongation_deg"])
+    table = _circumstances(watched, parties, best, members).with_columns(
+        events["kind"], elongation_deg=nearest
+    )
     reason = reasons.verdict_reason(watched.rules)
     alone = pl.col("count") == 1
     named = pl.concat_str(pl.col("name"), pl.lit(": "), reason)
