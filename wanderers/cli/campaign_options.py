@@ -10,7 +10,7 @@ from typing import Any, Final, TypeVar
 
 import click
 
-from wanderers.cli.site_options import HOW_BLACK, HOW_CLEAR
+from wanderers.cli.site_options import BLACKNESS, HOW_BLACK, HOW_CLEAR, LOSS
 from wanderers.cli.view_options import Weekdays
 from wanderers.ephemeris.bodies import Body
 from wanderers.plans.camera import FULL_FRAME, SENSORS, sensor_named, with_pixels
@@ -29,15 +29,19 @@ FAR: Final[dict[str, Any]] = {
 }
 MODEL: Final = CampaignRules()
 HOW_MANY: Final = "How many nights to plan. [default: one in seven of the usable ones]"
-HOW_FAR_APART: Final = "Or how far apart along the path."
-HOW_CLOUDY: Final = "Share of nights lost to clouds, 0 up to 1."
-HOW_MANY_SPARES: Final = "Nights that stand in for each night that must not be missed."
+HOW_FAR_ASHARE: Final = click.FloatRange(0.0, 1.0, max_open=True)
+PART: Final = "Or how far apart along the path."
+HOW_CLOUDY: Final = f"Share of nights lost to clouds. [default: {DEFAULT_CLOUDY:g}]"
+HOW_MANY_SPARES: Final = (
+    f"Nights that stand in for each night that must not be missed. [default: {DEFAULT_SPARES}]"
+)
 WHICH_DAYS: Final = "Evenings of these weekdays only, as fri,sat."
 HOW_HIGH: Final = "Least altitude. [default: 20; Mercury and Venus 8]"
 HOW_DARK: Final = "Highest altitude of the Sun. [default: -12; Mercury and Venus -6]"
 BRIGHT_MOON: Final = "Distance to keep from a Moon more than half lit."
 FAINT_MOON: Final = "Distance to keep from a Moon less lit."
 WHICH_SENSOR: Final = f"Sensor: {', '.join(SENSORS)}, or WIDTHxHEIGHT in mm. [default: {FULL_FRAME.name}]"
+SHARE: Final = click.FloatRange(0.0, 1.0, max_open=True)
 PART: Final = click.FloatRange(0.0, 0.45)
 HOW_MANY_PIXELS: Final = "Pixels of the sensor, as 6000x4000."
 WHICH_LENS: Final = "Focal length. [default: the longest usual one that holds the path]"
@@ -45,46 +49,20 @@ HOW_MUCH_ROOM: Final = f"Part of each side that stays free. [default: {DEFAULT_M
 WHICH_ROLL: Final = "Position angle of the camera's upper side. [default: turned for the longest lens]"
 
 
-def night_options(command: Command) -> Command:
-    """Add what a night must offer and how many are wanted; the command receives ``request``."""
+def rules_options(command: Command) -> Command:
+    """Add what a night must offer; the command receives ``body`` and ``rules``."""
 
-    @click.option("--nights", type=click.IntRange(1), metavar="N", help=HOW_MANY)
-    @click.option("--every", type=click.FloatRange(0.0, min_open=True), metavar="DEG", help=HOW_FAR_APART)
-    @click.option(
-        "--cloudy",
-        type=click.FloatRange(0.0, 1.0, max_open=True),
-        default=DEFAULT_CLOUDY,
-        show_default=True,
-        metavar="SHARE",
-        help=HOW_CLOUDY,
-    )
-    @click.option(
-        "--spares", type=click.IntRange(0), default=DEFAULT_SPARES, show_default=True, help=HOW_MANY_SPARES
-    )
     @click.option("--weekdays", type=Weekdays(), metavar="DAYS", help=WHICH_DAYS)
     @click.option("--min-altitude", type=click.FloatRange(0.0, 89.0), metavar="DEG", help=HOW_HIGH)
     @click.option("--sun-below", type=click.FloatRange(-90.0, 0.0), metavar="DEG", help=HOW_DARK)
     @click.option("--moon-distance", default=MODEL.moon_bright_deg, **FAR, help=BRIGHT_MOON)
     @click.option("--thin-moon-distance", default=MODEL.moon_faint_deg, **FAR, help=FAINT_MOON)
-    @click.option(
-        "--extinction", type=click.FloatRange(0.0, 5.0, min_open=True), metavar="MAG", help=HOW_CLEAR
-    )
-    @click.option(
-        "--dark-sky",
-        type=click.FloatRange(10.0, 23.0),
-        default=21.0,
-        show_default=True,
-        metavar="MAG",
-        help=HOW_BLACK,
-    )
+    @click.option("--extinction", type=LOSS, metavar="MAG", help=HOW_CLEAR)
+    @click.option("--dark-sky", type=BLACKNESS, default=21.0, metavar="MAG", help=HOW_BLACK)
     @functools.wraps(command)
     def wrapped(
         *args: Any,
         body: Body,
-        nights: int | None,
-        every: float | None,
-        cloudy: float,
-        spares: int,
         weekdays: frozenset[int] | None,
         min_altitude: float | None,
         sun_below: float | None,
@@ -104,6 +82,30 @@ def night_options(command: Command) -> Command:
             weekdays=tuple(sorted(weekdays)) if weekdays else EVERY_DAY,
             criteria=Criteria(extinction_mag=extinction, dark_zenith_mag=dark_sky),
         )
+        return command(*args, body=body, rules=rules, **kwargs)
+
+    return wrapped  # type: ignore[return-value]
+
+
+def night_options(command: Command) -> Command:
+    """Add how many nights are wanted, and against which clouds; the command receives ``request``."""
+
+    @click.option("--nights", type=click.IntRange(1), metavar="N", help=HOW_MANY)
+    @click.option("--every", type=click.FloatRange(0.0, min_open=True), metavar="DEG", help=HOW_FAR_APART)
+    @click.option("--cloudy", type=SHARE, default=DEFAULT_CLOUDY, metavar="SHARE", help=HOW_CLOUDY)
+    @click.option("--spares", type=click.IntRange(0), default=DEFAULT_SPARES, help=HOW_MANY_SPARES)
+    @rules_options
+    @functools.wraps(command)
+    def wrapped(
+        *args: Any,
+        body: Body,
+        rules: CampaignRules,
+        nights: int | None,
+        every: float | None,
+        cloudy: float,
+        spares: int,
+        **kwargs: Any,
+    ) -> Any:
         request = CampaignRequest(
             body, dt.date.today(), rules=rules, nights=nights, every_deg=every, cloudy=cloudy, spares=spares
         )
