@@ -29,8 +29,7 @@ FAR: Final[dict[str, Any]] = {
 }
 MODEL: Final = CampaignRules()
 HOW_MANY: Final = "How many nights to plan. [default: one in seven of the usable ones]"
-HOW_FAR_ASHARE: Final = click.FloatRange(0.0, 1.0, max_open=True)
-PART: Final = "Or how far apart along the path."
+HOW_FAR_APART: Final = "Or how far apart along the path."
 HOW_CLOUDY: Final = f"Share of nights lost to clouds. [default: {DEFAULT_CLOUDY:g}]"
 HOW_MANY_SPARES: Final = (
     f"Nights that stand in for each night that must not be missed. [default: {DEFAULT_SPARES}]"
