@@ -20,6 +20,7 @@ from dataclasses import dataclass
 from datetime import date
 from pathlib import Path
 
+from tests.benchmarks import from_site
 from tests.benchmarks.bare_pass import bare_pass
 from tests.benchmarks.general_search import general_search, same_events
 from wanderers.ephemeris.bodies import PLANETS
@@ -140,6 +141,7 @@ def main() -> None:
     with tempfile.TemporaryDirectory() as folder:
         for years in sorted({choice.long_years // 10, choice.long_years}):
             rows += against_bare_pass(Path(folder), years)
+        rows += from_a_site(Path(folder))
     print("\n".join(str(row) for row in rows))
 
 
