@@ -121,6 +121,22 @@ def against_bare_pass(folder: Path, years: int) -> list[Row]:
     ]
 
 
+def from_a_site(folder: Path) -> list[Row]:
+    """Time a year of nights against Skyfield, and a warm year's almanac with a site against one without."""
+    store = fresh_store(folder)
+    from_site.our_nights(store)  # tracks warm
+    theirs_took, theirs = timed(from_site.their_nights)
+    ours_took, ours = timed(lambda: from_site.our_nights(store))
+    print(f"nights of a year: {from_site.same_passages(ours, theirs)}")
+    from_site.seen_almanac(store)
+    bare_took, _ = timed(lambda: from_site.plain_almanac(store))
+    seen_took, _ = timed(lambda: from_site.seen_almanac(store))
+    return [
+        Row("nights, a year, nine bodies", ours_took, "skyfield's functions", theirs_took),
+        Row("almanac, a year, with a site", seen_took, "without one", bare_took),
+    ]
+
+
 def _peaks() -> str:
     """Say the peak of this process so far, and of its largest worker, which shares most of it."""
     own, worker = (

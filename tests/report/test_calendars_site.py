@@ -406,6 +406,28 @@ def test_a_calendar_of_the_whole_earth_moves_to_a_site(events: pl.DataFrame, fro
     assert by_vobject(now.content).keys() == entries.keys()
 
 
+@pytest.mark.parametrize("zone", ["Europe/Berlin", "America/New_York", "Mill Time", '"Mill: Time"'])
+def test_entries_of_another_hand_keep_their_zone(from_hill: pl.DataFrame, zone: str) -> None:
+    own = (
+        f"BEGIN:VTIMEZONE\r\nTZID:{zone.strip(chr(34))}\r\nBEGIN:STANDARD\r\nDTSTART:20000101T000000\r\n"
+        "TZOFFSETFROM:+0045\r\nTZOFFSETTO:+0045\r\nEND:STANDARD\r\nEND:VTIMEZONE\r\n"
+    ).encode()
+    tea = (
+        "BEGIN:VEVENT\r\nUID:tea@lantern.example\r\nDTSTAMP:20270101T000000Z\r\n"
+        f"DTSTART;TZID={zone}:20270701T150000\r\nSUMMARY:Tea\r\nEND:VEVENT\r\n"
+    ).encode()
+    content = issued(from_hill, HILL).content
+    is_own = "Mill" in zone
+    previous = content.replace(b"BEGIN:VEVENT", own * is_own + tea + b"BEGIN:VEVENT", 1)
+    now = issued(from_hill, HILL, previous)
+    assert now.changes == []
+    assert tea in now.content and (own in now.content) is is_own
+    calendar = icalendar.Calendar.from_ical(now.content)
+    names = sorted(str(part["TZID"]) for part in calendar.walk("VTIMEZONE"))
+    assert names == sorted({HILL.zone, zone.strip('"')})
+    assert issued(from_hill, HILL, now.content).content == now.content
+
+
 # ---- what is said
 
 

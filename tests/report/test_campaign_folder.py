@@ -114,7 +114,7 @@ def test_the_page_tells_the_next_night_first(mars: Path, store: TrackStore) -> N
     head = words.split("The next night", 1)[1][:700]
     assert head.startswith(f" Night 1, the night of {night['weekday']} 30 to 31 October 2026.")
     assert f"Be ready at {log.words.clock(night['recommended_local'])}: Mars then stands" in head
-    assert "Lens 50 mm" in head and "If it is cloudy, try" in head
+    assert "Lens 50 mm" in head and "If it is cloudy, " in head
     assert "the chance of getting both turns is" in words and "50 % of nights lost" in words
 
 

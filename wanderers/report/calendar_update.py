@@ -28,6 +28,7 @@ from wanderers.report.calendar_entries import (
     unescaped,
     unfolded,
 )
+from wanderers.site.zones import zone_names
 
 PRODID: Final = "-//wanderers//events of the planets//EN"
 """Tells this program's calendars; carries no version, so that a new one changes no file."""
@@ -49,10 +50,12 @@ class Published:
     Attributes:
         name: its title.
         entries: its entries, in their order.
+        zones: definitions of zones that the IANA database does not hold, as written.
     """
 
     name: str
     entries: tuple[Entry, ...]
+    zones: tuple[bytes, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -106,7 +109,15 @@ def read_calendar(content: bytes, source: str = "the previous calendar") -> Publ
     blocks = re.findall(r"^BEGIN:VEVENT\r\n.*?^END:VEVENT\r\n", whole, flags=re.MULTILINE | re.DOTALL)
     entries = tuple(read_entry(block.encode()) for block in blocks)
     _require_sound(entries, source)
-    return Published(unescaped(top.get("NAME", "")), entries)
+    return Published(unescaped(top.get("NAME", "")), entries, _foreign_zones(whole))
+
+
+def _foreign_zones(whole: str) -> tuple[bytes, ...]:
+    """Return the definitions of zones that another hand made, as written."""
+    blocks = re.findall(r"^BEGIN:VTIMEZONE\r\n.*?^END:VTIMEZONE\r\n", whole, flags=re.MULTILINE | re.DOTALL)
+    named = {block: re.search(r"^TZID:(.*)\r$", block, flags=re.MULTILINE) for block in blocks}
+    known = {name.lower() for name in zone_names()}
+    return tuple(block.encode() for block, tzid in named.items() if tzid and tzid[1].lower() not in known)
 
 
 def _calendar_text(content: bytes, source: str) -> str:

@@ -36,7 +36,7 @@ from wanderers.report.phrases.notes import notes
 from wanderers.report.phrases.sentences import sentences
 from wanderers.report.tables import counted
 from wanderers.site.places import Site
-from wanderers.site.zones import zone_named
+from wanderers.site.zones import zone_named, zone_names
 
 FIRST_STAMP: Final = dt.datetime(2000, 1, 1, 12, tzinfo=dt.UTC)
 """DTSTAMP of every entry that was never changed: a constant, so that equal tables give equal files."""
@@ -138,7 +138,9 @@ def issue(
     """
     known = published or Published(style.name, ())
     now = merged(known, entries(events, style), span or span_of(events), stamp)
-    return Issue(calendar_file(style.name, now.entries), now.changes, len(now.entries) - len(now.changes))
+    return Issue(
+        calendar_file(style.name, now.entries, known.zones), now.changes, len(now.entries) - len(now.changes)
+    )
 
 
 def entries(events: pl.DataFrame, style: Style) -> list[Entry]:
@@ -282,15 +284,24 @@ def _zones(ordered: Sequence[Entry]) -> list[Timezone]:
 
     Source: RFC 5545, 3.6.5 and 3.2.19: each TZID must be defined in the file.
     """
+    known = {name.lower() for name in zone_names()}
     used: dict[str, list[int]] = {}
     for entry in ordered:
-        for zone in {entry.zone("DTSTART"), entry.zone("DTEND")} - {""}:
-            used.setdefault(zone, []).append(entry.start.year)
+        for zone in {entry.zone("DTSTART"), entry.zone("DTEND")}:
+            # Entries of another hand may be in zones of their own making.
+            if zone.lower() in known and entry.has_start:
+                used.setdefault(zone, []).append(entry.start.year)
     return [timezone(zone, years) for zone, years in sorted(used.items())]
 
 
-def calendar_file(name: str, ordered: Sequence[Entry]) -> bytes:
-    """Return a calendar file around its entries, with the rules of the zones that they use."""
+def calendar_file(name: str, ordered: Sequence[Entry], zones: Sequence[bytes] = ()) -> bytes:
+    """Return a calendar file around its entries, with the rules of the zones that they use.
+
+    Args:
+        name: title of the calendar.
+        ordered: the entries, in order of time.
+        zones: definitions of other zones, as written.
+    """
     title = ExactText(" ".join(name.split()))
     calendar = Calendar()
     calendar.add("PRODID", ExactText(PRODID))
@@ -303,4 +314,4 @@ def calendar_file(name: str, ordered: Sequence[Entry]) -> bytes:
     for zone in _zones(ordered):
         calendar.add_component(zone)
     head, end, after = calendar.to_ical(sorted=False).partition(b"END:VCALENDAR")
-    return b"".join([head, *(entry.octets for entry in ordered), end, after])
+    return b"".join([head, *zones, *(entry.octets for entry in ordered), end, after])

@@ -49,7 +49,7 @@ def campaign_calendar(contents: CampaignContents, published: Published | None = 
     nights = [*contents.plan.iter_rows(named=True), *contents.spares.iter_rows(named=True)]
     entries = [_entry(contents, night) for night in nights if night["window_start_local"]]
     known = published or Published(name, ())
-    return calendar_file(name, merged(known, entries, ALL_TIME).entries)
+    return calendar_file(name, merged(known, entries, ALL_TIME).entries, known.zones)
 
 
 def is_possible(contents: CampaignContents) -> bool:

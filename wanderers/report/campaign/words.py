@@ -238,8 +238,17 @@ def if_cloudy(contents: CampaignContents, night: Night) -> str:
     if earlier:
         told.append(f"If clouds are forecast, go before it: {_listed(earlier)}.")
     if not spares:
-        told.append("If it is cloudy, no night stands in for it: go on with the next planned one.")
+        following = to_come(contents.plan).filter(pl.col("night") > night["night"])
+        told.append("If it is cloudy, no night stands in for it: " + _go_on(following))
     return " ".join(told)
+
+
+def _go_on(following: pl.DataFrame) -> str:
+    """Return with which planned night to go on."""
+    if following.is_empty():
+        return "it is the last."
+    night = following.row(0, named=True)
+    return f"go on with night {night['night']}, {_listed([night])}."
 
 
 def _listed(nights: Sequence[Night]) -> str:

@@ -12,7 +12,7 @@ from matplotlib.patches import Rectangle
 from wanderers.ephemeris.bodies import INNER
 from wanderers.ephemeris.constellations import ABBREVIATIONS, constellation_at, full_name
 from wanderers.report.campaign.contents import CampaignContents
-from wanderers.report.charts import campaign_backdrop, campaign_nights, labels, timeaxis
+from wanderers.report.charts import campaign_backdrop, campaign_nights, campaign_strip, labels, timeaxis
 from wanderers.report.charts.campaign_backdrop import Plane
 from wanderers.report.charts.campaign_path import draw_stretched, plan_places, stretch
 from wanderers.report.charts.path import SUN_CAUTION, angle_text, ra_text
@@ -53,8 +53,8 @@ def draw_campaign_field(contents: CampaignContents, *, style: Style = LIGHT) -> 
         if is_flat:
             top = TOP_IN + high + STRIP_IN + BETWEEN_IN
             draw_stretched(contents, axes_at(figure, LEFT_IN, SIDE_IN, LOWEST_IN, top), style=style)
-        campaign_backdrop.draw_compass(figure, contents, ax, style)
-        campaign_backdrop.write_key(figure, contents, ax, limit, style)
+        campaign_strip.draw_compass(figure, contents, ax, style)
+        campaign_strip.write_key(figure, contents, ax, limit, style)
         _write_about(figure, contents, limit, style)
     return figure
 
