@@ -75,9 +75,7 @@ def test_the_brightest_come_first(store: TrackStore) -> None:
     assert dimmed == sorted(dimmed) and len(dimmed) > 10
 
 
-def test_neighbours_within_ten_degrees_are_named_with_distance_and_side(
-    store: TrackStore, jpl: Any
-) -> None:
+def test_neighbours_within_ten_degrees_are_named_with_distance_and_side(store: TrackStore, jpl: Any) -> None:
     # Both early in March 2027: Mars and Jupiter in Leo.
     jd = jd_of(MOMENTS[0])
     table = everything_up(store, HILL, jd)

@@ -208,9 +208,7 @@ def test_what_has_no_window_has_no_angles_and_a_reason(year: pl.DataFrame) -> No
     assert not year["verdict_reason"].str.contains(r"nan|null|-\d+ minutes|None").any()
 
 
-def test_the_caution_stands_wherever_the_sun_is_near_or_up(
-    year: pl.DataFrame, jpl: Any, site: Site
-) -> None:
+def test_the_caution_stands_wherever_the_sun_is_near_or_up(year: pl.DataFrame, jpl: Any, site: Site) -> None:
     some = year.filter(pl.col("best_utc").is_not_null())
     near = (some["elongation_deg"] < 20.0) | (some["sun_altitude_deg"] > -50.0 / 60.0)
     assert (some["caution"].is_not_null() == near).all()

@@ -97,9 +97,7 @@ def test_altitude_and_azimuth_agree_with_skyfield(sky_at: SkyAt, jpl: Any, site:
 
 
 @pytest.mark.parametrize("site", [HILL, RIDGE], ids=lambda site: site.name)
-def test_distance_hour_angle_and_declination_agree_with_skyfield(
-    sky_at: SkyAt, jpl: Any, site: Site
-) -> None:
+def test_distance_hour_angle_and_declination_agree_with_skyfield(sky_at: SkyAt, jpl: Any, site: Site) -> None:
     time = load.timescale(builtin=True).tt_jd(INSTANTS)
     apparent = (jpl["earth"] + skyfield_place(site)).at(time).observe(jpl["moon"]).apparent()
     hour_angle, declination, distance = apparent.hadec()

@@ -22,7 +22,8 @@ from wanderers.plans.replan import LoggedNight, parse_evening, read_log
 from wanderers.plans.request import CampaignRequest
 from wanderers.plans.season import LEAD_DAYS, NEXT, TAIL_DAYS
 from wanderers.report.campaign.contents import CameraChoice
-from wanderers.report.campaign.folder import write_campaign
+from wanderers.report.campaign.folder import CAMPAIGN, write_campaign
+from wanderers.report.folder import require_replaceable
 from wanderers.report.tables import counted
 from wanderers.site.places import Site
 from wanderers.site.zones import zone_named
@@ -84,12 +85,13 @@ def command(
         log=() if done is None else _log(done),
         skip=tuple(parse_evening(text, "--skip") for text in skipped),
     )
+    if out is not None:
+        require_replaceable(out, CAMPAIGN)
     progress = progress_line(workplace.quiet)
     progress("planning the nights")
     campaign = plan_campaign(workplace.store, site, asked)
-    page = write_campaign(
-        workplace.store, campaign, out or REPORTS / stem_of(campaign), camera=camera, progress=progress
-    )
+    folder = out or REPORTS / stem_of(campaign)
+    page = write_campaign(workplace.store, campaign, folder, camera=camera, progress=progress)
     progress("")
     if not workplace.quiet:
         for line in told(campaign):

@@ -177,8 +177,7 @@ def _advice(text: str) -> str:
     """Return what else the text may have meant."""
     name, _ = _parts(text)
     by_name = {_folded(city.name): city for city in reversed(cities(SMALLEST_TOWN))}
-    alike = [known for known in by_name if abs(len(known) - len(name)) <= 3 and set(name[:2]) & set(known[:2])]
-    near = difflib.get_close_matches(name, alike, n=NEAREST_SHOWN, cutoff=0.75)
+    near = difflib.get_close_matches(name, by_name, n=NEAREST_SHOWN, cutoff=0.75)
     if near:
         return f"did you mean {' or '.join(by_name[hit].described for hit in near)}?"
     return "add it with 'wanderers sites add', or give LATITUDE,LONGITUDE and --zone"
