@@ -139,7 +139,8 @@ def _local(event: words.Event) -> str:
     """Return an instant by the site's clock, and when to watch."""
     if not site_words.has_view(event):
         return ""
-    instant = f"{event['local_date']} {event['local_time'][:5]} local"
+    local_time = words.minute(f"{event['local_date']}T{event['local_time']}")
+    instant = f"{local_time} local"
     if not site_words.is_watchable(event):
         return f"{instant}; not to be seen from {event['site']}: {event['verdict_reason']}"
     best = site_words.local(event["best_local"])
