@@ -6,8 +6,7 @@ What the page shows is held against the files beside it, read with polars and ic
 from __future__ import annotations
 
 import json
-import shutil
-from collections.abc import Callable, Iterator
+from functools import partial
 from pathlib import Path
 from typing import Any
 
@@ -16,30 +15,19 @@ import pytest
 from icalendar import Calendar
 from polars.testing import assert_frame_equal
 
-from tests.report.report_samples import half_a_year
+from tests.report.conftest import Open
 from wanderers import schema
-from wanderers.report.folder import PAGE, write_report
+from wanderers.report.folder import PAGE
 from wanderers.report.page_data import DECIMALS
 
-webdriver = pytest.importorskip("selenium.webdriver", reason="needs selenium to drive a browser")
-CHROMIUM, DRIVER = shutil.which("chromium"), shutil.which("chromedriver")
-pytestmark = [
-    pytest.mark.skipif(CHROMIUM is None or DRIVER is None, reason="needs chromium and its driver"),
-    pytest.mark.filterwarnings("ignore::ResourceWarning"),  # the driver's own sockets
-]
+pytestmark = pytest.mark.filterwarnings("ignore::ResourceWarning")  # the driver's own sockets
 
-SWITCHES = (
-    "headless no-sandbox disable-gpu disable-quic no-first-run disable-background-networking "
-    "disable-component-update disable-sync"
-).split()
 SHOWN = "#table tbody tr"
 
 
 @pytest.fixture(scope="module")
-def report(tmp_path_factory: pytest.TempPathFactory) -> Path:
-    folder = tmp_path_factory.mktemp("reports") / "half_a_year"
-    write_report(half_a_year(tmp_path_factory.mktemp("cache")), folder)
-    return folder
+def report(half_year_report: Path) -> Path:
+    return half_year_report
 
 
 @pytest.fixture(scope="module")
@@ -47,34 +35,9 @@ def events(report: Path) -> pl.DataFrame:
     return pl.read_parquet(report / "events.parquet")
 
 
-@pytest.fixture(scope="module")
-def browser(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Any]:
-    options = webdriver.ChromeOptions()
-    options.binary_location = CHROMIUM
-    for switch in (*SWITCHES, f"user-data-dir={tmp_path_factory.mktemp('profile')}"):
-        options.add_argument(f"--{switch}")
-    options.set_capability("goog:loggingPrefs", {"browser": "ALL", "performance": "ALL"})
-    service = webdriver.ChromeService(DRIVER)
-    driver = webdriver.Chrome(options=options, service=service)
-    yield driver
-    driver.quit()
-
-
-Open = Callable[..., Any]
-
-
 @pytest.fixture
-def opened(browser: Any, report: Path) -> Iterator[Open]:
-    def open_page(address: str = "", width: int = 1440, height: int = 900) -> Any:
-        browser.get("about:blank")
-        size = {"width": width, "height": height, "deviceScaleFactor": 1, "mobile": width < 500}
-        browser.execute_cdp_cmd("Emulation.setDeviceMetricsOverride", size)
-        browser.execute_cdp_cmd("Emulation.setEmulatedMedia", {"media": ""})
-        browser.get(f"{(report / PAGE).as_uri()}{address}")
-        return browser
-
-    yield open_page
-    assert [entry for entry in browser.get_log("browser") if entry["level"] == "SEVERE"] == []
+def opened(open_file: Open, report: Path) -> Open:
+    return partial(open_file, report / PAGE)
 
 
 def shown_ids(page: Any) -> list[str]:
@@ -327,7 +290,9 @@ def test_controls_are_large_enough_to_hit(opened: Open) -> None:
 
 def test_the_keyboard_reaches_the_filters_and_works_them(opened: Open, events: pl.DataFrame) -> None:
     page = opened()
-    keys = webdriver.ActionChains(page)
+    from selenium.webdriver import ActionChains
+
+    keys = ActionChains(page)
     keys.send_keys("\ue004").perform()  # tab
     assert page.execute_script("return document.activeElement.className") == "skip"
     keys.send_keys("\ue007").perform()  # enter

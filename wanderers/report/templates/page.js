@@ -205,6 +205,9 @@ function minute(utc) {
   return `${day} ${String(Math.floor(whole / 60)).padStart(2, "0")}:${String(whole % 60).padStart(2, "0")}`;
 }
 
+/** Prints the instant of a row by the site's clock, to the minute as in UTC. */
+const localMinute = (row) => minute(`${cell.local_date(row)}T${cell.local_time(row)}`);
+
 /** Prints an apparent size: arcseconds, large ones in arcminutes. */
 function size(arcsec) {
   if (arcsec === null) return "";
@@ -220,7 +223,7 @@ function distance(row) {
 }
 
 const fromSite = [
-  { style: "when", text: (row) => minute(`${cell.local_date(row)}T${cell.local_time(row)}`) },
+  { style: "when", text: localMinute },
   { style: "what", text: what, beside: seen, below: (row) => cell.caution(row) ?? note(row) },
   { label: "Watch", text: watch },
   { label: "Seen with", text: (row) => cell.verdict(row).replace("_", " ") },
@@ -252,11 +255,9 @@ function element(tag, text, style) {
 /** Returns one table row. */
 function tableRow(row) {
   const line = element("tr");
-  line.setAttribute("role", "row");
   line.dataset.id = cell.event_id(row);
   for (const column of printed) {
     const box = element("td", column.text(row), column.style);
-    box.setAttribute("role", "cell");
     if (column.label) box.dataset.label = column.label;
     const beside = column.beside?.(row);
     if (beside) box.append(element("span", beside, "how"));
@@ -354,7 +355,7 @@ function showControls() {
 /** Shows the look chosen, and lets the links to the dossiers carry it. */
 function showLook() {
   document.documentElement.dataset.look = state.look;
-  for (const link of findAll('a[href^="seasons/"]')) link.setAttribute("href", withLook(link.getAttribute("href")));
+  for (const link of findAll('a[href^="seasons/"][href*=".html"]')) link.setAttribute("href", withLook(link.getAttribute("href")));
 }
 
 /** Returns the address of another page of the report with the look chosen, which that page reads. */

@@ -9,12 +9,13 @@
   const DAY = 86400000;
   const YEAR = 365.25 * DAY;
   const SHORTEST = 10 * DAY;
-  const [LANE, TOP, AXIS, GUTTER, SIDE] = [38, 10, 46, 76, 16]; // dots
+  const [LANE, TOP, AXIS, GUTTER, SIDE] = [38, 10, 46, 76, 24]; // dots
+  const BAR = 18;
   const REACH = 14; // dots from a mark within which the pointer means it
   const DRAGGED = 6; // dots from which a press is a drag
   const CLOSE_DEG = 1;
-  const ROOM = { turn: 40, middle: 22 }; // dots that a planet's stretches must be wide, so that such a mark fits on them
-  const MEETING_ROOM = 90; // dots a year from which meetings are drawn
+  const ROOM = { turn: 40, middle: 30 }; // dots that a planet's stretches must be wide, so that such a mark fits on them
+  const MEETING_ROOM = 150; // dots a year from which meetings are drawn
   const MONTHS = "Jan Feb Mar Apr May Jun Jul Aug Sep Oct Nov Dec".split(" ");
   const SHAPES = {
     retrograde: "M-7-6H1a5 5 0 0 1 0 10H-6m4-4l-4 4l4 4",
@@ -93,7 +94,7 @@
   /** Makes what stands for a mark; where it stands is set by ``place``. */
   function elementOf(mark) {
     const parts = [drawn("rect", { class: "ring", rx: 3 })];
-    if (mark.sort === "stretch") parts.push(drawn("rect", { class: "stretch", height: 13 }));
+    if (mark.sort === "stretch") parts.push(drawn("rect", { class: "stretch", height: BAR }));
     else if (mark.sort === "meeting") parts.push(drawn("path", { class: "joint" }), shapeOf(mark), shapeOf(mark));
     else parts.push(shapeOf(mark));
     const made = drawn("g", { role: "option", "aria-selected": "false", "aria-label": whatOf(mark), tabindex: -1, class: "mark" }, ...parts);
@@ -115,7 +116,7 @@
     for (const [name, value] of Object.entries(box)) ring.setAttribute(name, value);
     const put = (part, number) => part.setAttribute("transform", `translate(${x(mark.at)} ${y(number)})`);
     if (mark.sort === "stretch") {
-      for (const [name, value] of Object.entries({ x: start, y: y(mark.lane) - 6.5, width: wide })) parts[0].setAttribute(name, value);
+      for (const [name, value] of Object.entries({ x: start, y: y(mark.lane) - BAR / 2, width: wide })) parts[0].setAttribute(name, value);
     } else if (mark.sort === "meeting") {
       parts[0].setAttribute("d", `M${x(mark.at)} ${y(mark.lane)}V${y(mark.other)}`);
       put(parts[1], mark.lane);
@@ -211,7 +212,7 @@
   /** Tells which span is in view, and what has no room in it. */
   function say(visible) {
     const few = marks.some((mark) => inView(mark) && !hasRoom(mark));
-    find("#timeline .place").textContent = `${dayText(view.from)} to ${dayText(view.to)}: ${visible.length} marks${few ? "; zoom in for more" : ""}.`;
+    find("#timeline .place").textContent = `${dayText(nearestDay(view.from))} to ${dayText(nearestDay(view.to))}: ${visible.length} marks${few ? "; zoom in for more" : ""}.`;
     const whole = view.from <= span[0] && view.to >= span[1];
     const idle = { in: view.to - view.from <= SHORTEST, out: whole, whole, earlier: view.from <= span[0], later: view.to >= span[1] };
     for (const button of findAll("#timeline [data-view]")) button.setAttribute("aria-disabled", String(Boolean(idle[button.dataset.view])));
@@ -224,7 +225,7 @@
       return [["strong", `${told}.`], ["span", `${when} UTC`], ["span", local && `${local} local`], ["span", lanes[mark.lane].note, "note"]];
     }
     const { row } = mark;
-    const local = data.site ? `${dated(`${cell.local_date(row)}T`)} ${cell.local_time(row).slice(0, 5)} local` : "";
+    const local = data.site ? `${dated(`${cell.local_date(row)}T`)} ${localMinute(row).slice(-5)} local` : "";
     const best = data.site && watch(row) ? `Watch ${watch(row)}.` : "";
     const sunward = fixed(cell.elongation_deg(row), 0, "° from the Sun");
     const figures = [constellation(row) && `in ${constellation(row)}`, sunward].filter(Boolean).join(", ");
@@ -297,9 +298,11 @@
     writing = setTimeout(writeAddress, 150);
   }
 
+  const nearestDay = (instant) => Math.round(instant / DAY) * DAY;
+
   /** Returns the span in view as dates: whole months where it is long. */
   function whenText() {
-    const days = [view.from, view.to].map((instant) => Math.round(instant / DAY) * DAY);
+    const days = [view.from, view.to].map(nearestDay);
     const ends = (view.to - view.from > 2 * YEAR ? days.map(nearestMonth) : days).map(dayText);
     return (ends.every((end) => end.endsWith("-01")) ? ends.map((end) => end.slice(0, -3)) : ends).join("..");
   }
@@ -463,7 +466,7 @@
   function writeKey() {
     const words = [["stretch", "runs backwards"], ["retrograde", "turns retrograde"], ["direct", "turns direct"], ["opposition", "opposition"],
       ["inferior", "inferior conjunction"], ["meeting", "two planets meet"], ["close", `closer than ${CLOSE_DEG}°`]];
-    const look = (name) => (name === "stretch" ? drawn("rect", { class: "stretch", x: -13, y: -6.5, width: 26, height: 13 })
+    const look = (name) => (name === "stretch" ? drawn("rect", { class: "stretch", x: -13, y: -BAR / 2, width: 26, height: BAR })
       : shape(name));
     find("#timeline .key").replaceChildren(...words.map(([name, text]) => {
       const line = element("li");
