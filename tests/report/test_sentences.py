@@ -109,15 +109,16 @@ def test_every_kind_detail_frame_and_body_has_phrases(kind: Kind, code: str) -> 
 
 
 @pytest.mark.parametrize("code", LANGUAGES)
-def test_no_event_of_two_decades_is_longer_than_asked(events: pl.DataFrame, code: str) -> None:
+@pytest.mark.parametrize("every", [pytest.param(1, marks=pytest.mark.long), 13])
+def test_no_event_of_two_decades_is_longer_than_asked(events: pl.DataFrame, code: str, every: int) -> None:
     assert events.height > 50_000
-    for row in events.iter_rows(named=True):
+    for row in events.gather_every(every).iter_rows(named=True):
         check(told(row, code), row)
 
 
 @pytest.mark.parametrize("code", LANGUAGES)
 def test_figures_and_sides_of_pairs_are_those_of_the_table(events: pl.DataFrame, code: str) -> None:
-    pairs = events.filter(pl.col("kind").is_in(["conjunction", "appulse"]))
+    pairs = events.filter(pl.col("kind").is_in(["conjunction", "appulse"])).gather_every(5)
     pattern = re.compile(r"(?<!under)(?<!unter) (\d+[.,]?\d*)([°′]) (N|S|nördl\.|südl\.) ")
     seen = 0
     for row in pairs.iter_rows(named=True):
@@ -130,7 +131,7 @@ def test_figures_and_sides_of_pairs_are_those_of_the_table(events: pl.DataFrame,
         assert abs(value - exact) <= (0.05 if unit == "°" else 0.5) + 1e-9
         assert unit == ("°" if row["separation_deg"] >= 59.5 / 60.0 else "′")
         assert SIDES[code][match[3]] == row["pair_side"]
-    assert seen > 10_000
+    assert seen > 2_000
 
 
 def test_east_is_the_evening_and_west_the_morning(events: pl.DataFrame) -> None:

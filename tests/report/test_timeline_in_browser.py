@@ -399,7 +399,6 @@ def test_nothing_sticks_out_and_controls_can_be_hit(
         "return [...document.querySelectorAll('#timeline :is(button, .to-row, .mark)')].filter((c) => {"
         " const box = c.getBoundingClientRect();"
         " const narrow = box.width < 24 && !c.querySelector('.stretch');"
-        " const narrow = box.width < 24 && !c.querySelector('.stretch');"
         " return c.checkVisibility() && (box.height < 24 || narrow);"
         "}).map((c) => c.outerHTML.slice(0, 80))"
     )
