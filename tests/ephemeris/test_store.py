@@ -305,7 +305,8 @@ def test_any_executor_builds_the_same_blocks(
 ) -> None:
     told: list[tuple[int, int]] = []
     store = TrackStore(small, tmp_path, executor, progress=lambda done, total: told.append((done, total)))
-    assert np.array_equal(answers(store), expected)
+    # Another process may share its sums among threads in another way, and so round them otherwise.
+    np.testing.assert_allclose(answers(store), expected, rtol=0.0, atol=1e-13)
     assert told == [(1, 2), (2, 2)]
     assert len(block_files(tmp_path)) == 2
 
