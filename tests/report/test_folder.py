@@ -57,7 +57,7 @@ def test_it_holds_page_tables_pictures_calendar_and_its_own_list(report: Path) -
     days = {"jupiter": "2026-12-13", "mars": "2027-01-10"}
     drawn += [f"{planet}_{what}_{day}" for planet, day in days.items() for what in ("path", "above")]
     expected = {f"{stem}.{kind}" for stem in tables for kind in ("csv", "parquet")}
-    expected |= {f"pictures/{stem}.{kind}" for stem in drawn for kind in ("png", "svg")}
+    expected |= {f"pictures/{stem}.{kind}" for stem in drawn for kind in ("png", "svg", "pdf")}
     expected |= {f"pictures/{planet}_curves_{day}.svg" for planet, day in days.items()}
     expected |= {
         f"seasons/{season_id}.html" for season_id in pl.read_csv(report / "seasons.csv")["season_id"]
@@ -98,7 +98,7 @@ def test_pictures_are_whole_and_the_page_holds_the_drawings(report: Path) -> Non
             assert head[:8] == b"\x89PNG\r\n\x1a\n"
             assert struct.unpack(">I", head[16:20])[0] >= 1200  # PNG, 11.2.2: the width in IHDR
         else:
-            assert head.startswith(b"<svg")
+            assert head.startswith({".svg": b"<svg", ".pdf": b"%PDF-1."}[path.suffix])
     drawings = [
         path
         for path in (report / "pictures").glob("*.svg")
@@ -302,7 +302,7 @@ def test_pictures_beyond_the_pages_room_stand_in_their_files_only(
     monkeypatch.setattr(pictures, "INLINE_BYTES", first)
     drawn = pictures.draw(contents, tmp_path / "pictures")
     assert [bool(picture.svg) for picture in drawn] == [True, False]
-    assert len(list((tmp_path / "pictures").iterdir())) == 4
+    assert len(list((tmp_path / "pictures").iterdir())) == 2 * len(wanted[0].formats)
 
 
 def test_no_planet_no_picture(tmp_path: Path) -> None:

@@ -74,7 +74,7 @@ class Job:
     draw: Callable[..., Figure]
     arguments: tuple[Any, ...]
     options: dict[str, Any] = field(default_factory=dict)
-    formats: tuple[Format, ...] = ("png", "svg")
+    formats: tuple[Format, ...] = ("png", "svg", "pdf")
 
 
 def draw(
