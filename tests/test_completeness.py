@@ -24,6 +24,13 @@ PLANETS_ONLY = ("sun", *(body.value for body in PLANETS))
 COMPARED = tuple(name for name in KINDS if name not in {"gathering", "moon_phase"})
 GATHERED = (("mercury", "venus", "mars"), ("mercury", "venus", "jupiter"), ("venus", "mars", "saturn"))
 
+LONG_ORBITS = ("uranus", "neptune", "pluto")
+"""Their orbits are longer than the spans: within one the dense search takes wobbles by the Sun's reflex motion
+for perihelia and aphelia, of which the program gives one an orbit."""
+NODE_OF_LONG_ORBITS_S = 2.0
+"""Four centuries from J2000 the frames of ERFA and of Skyfield lie 9 microarcseconds apart, which Neptune's
+latitude takes more than a second to cover; the program follows Skyfield's frame to a hundredth of that."""
+
 SHORTEST_VISIT_DAYS = {"planets": 0.25 / 20.0, "moon": 0.05 / 20.0}
 """The dense search looks into a constellation's corner 20 times a step: every 18 minutes, for the Moon 3.6.
 Shorter visits are real, found by the program and not by that search, and allowed for that reason alone."""
@@ -48,7 +55,8 @@ def compared(store: TrackStore, sky: Sky, years: tuple[str, str], *, moon: bool)
     # The dense search does not follow the Sun's own distance.
     of_the_sun = (pl.col("body") == "sun") & pl.col("kind").is_in(["perigee", "apogee"])
     alike = ours.filter(pl.col("kind").is_in(theirs["kind"].unique().to_list()) & ~of_the_sun)
-    return match(alike, theirs, span=span)
+    apsides = pl.col("kind").is_in(["perihelion", "aphelion"]) & pl.col("body").is_in(LONG_ORBITS)
+    return match(alike.filter(~apsides), theirs.filter(~apsides), span=span)
 
 
 def unexplained(extra: pl.DataFrame) -> pl.DataFrame:
@@ -69,7 +77,9 @@ def require_complete(outcome: Comparison) -> None:
     assert outcome.matched.height > 100
     assert outcome.missing.is_empty(), outcome.missing
     assert unexplained(outcome.extra).is_empty(), unexplained(outcome.extra)
-    assert outcome.late.is_empty(), outcome.late
+    slow_node = (pl.col("kind") == "node") & pl.col("body").is_in(LONG_ORBITS)
+    late = outcome.late.filter(~(slow_node & (pl.col("difference_s").abs() < NODE_OF_LONG_ORBITS_S)))
+    assert late.is_empty(), late
 
 
 @pytest.mark.parametrize("year", [1612, 1993, 2417])
