@@ -25,8 +25,8 @@ COMPARED = tuple(name for name in KINDS if name not in {"gathering", "moon_phase
 GATHERED = (("mercury", "venus", "mars"), ("mercury", "venus", "jupiter"), ("venus", "mars", "saturn"))
 
 LONG_ORBITS = ("uranus", "neptune", "pluto")
-"""Their orbits are longer than the spans: within one the dense search takes wobbles by the Sun's reflex motion
-for perihelia and aphelia, of which the program gives one an orbit."""
+"""Their orbits are longer than the spans: within one the dense search takes wobbles by the Sun's reflex
+motion for perihelia and aphelia, of which the program gives one an orbit."""
 NODE_OF_LONG_ORBITS_S = 2.0
 """Four centuries from J2000 the frames of ERFA and of Skyfield lie 9 microarcseconds apart, which Neptune's
 latitude takes more than a second to cover; the program follows Skyfield's frame to a hundredth of that."""
