@@ -14,6 +14,7 @@ from skyfield.api import load_file
 
 from tests.direct import Direct
 from tests.ephemeris.kernel_files import DE421
+from wanderers.cli.main import LIBRARY_THREADS
 from wanderers.ephemeris.bodies import BODIES, Body
 from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.kernels import Kernel, find_kernel, inspect_kernel
@@ -40,6 +41,17 @@ def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item
     for item in items:
         if item.get_closest_marker(LONG):
             item.add_marker(pytest.mark.skip(reason="takes many minutes: run with -m long"))
+
+
+@pytest.fixture(autouse=True)
+def own_environment() -> Iterator[None]:
+    """Take back what the program sets for itself: processes started later would round sums otherwise."""
+    before = os.environ.get(LIBRARY_THREADS)
+    yield
+    if before is None:
+        os.environ.pop(LIBRARY_THREADS, None)
+    else:
+        os.environ[LIBRARY_THREADS] = before
 
 
 @pytest.fixture(scope="session")

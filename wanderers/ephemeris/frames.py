@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from enum import StrEnum
+from typing import Final
 
 import numpy as np
 from skyfield import framelib, nutationlib
@@ -35,11 +36,21 @@ def ecliptic_of_j2000() -> Floats:
     return np.asarray(rotation_about_x(float(obliquity)) @ framelib.ICRS_to_J2000)
 
 
+BIAS_AND_PRECESSION_ARCSEC: Final = {
+    "gamma": (-0.052928, 10.556378, 0.4932044, -0.00031238, -0.000002788, 0.0000000260),
+    "phi": (84_381.412819, -46.811016, 0.0511268, 0.00053289, -0.000000440, -0.0000000176),
+    "psi": (-0.041775, 5_038.481484, 1.5584175, -0.00018522, -0.000026452, -0.0000000148),
+    "obliquity": (84_381.406, -46.836769, -0.0001831, 0.00200340, -0.000000576, -0.0000000434),
+}
+"""Fukushima-Williams angles from the GCRS to the mean equator and equinox of date, by powers of centuries of
+TT since J2000. IAU 2006: Hilton et al. 2006, Celest. Mech. Dyn. Astron. 94, 351; with the bias: Wallace and
+Capitaine 2006, A&A 459, 981, table 1. From memory, and as ERFA has them to the last digit: a test compares."""
+
+
 def ecliptic_of_date(time: Time, nutation: tuple[Floats, Floats] | None = None) -> tuple[Floats, Floats]:
     """Return the rotation from GCRS axes to the true ecliptic of date, and the true obliquity.
 
-    Precession IAU 2006 (Capitaine et al. 2003) and nutation IAU 2000A, all 1365 terms, as skyfield
-    implements them. This is the dear part of every position, hence evaluated only at the tracks' nodes.
+    Precession IAU 2006 and nutation IAU 2000A, all 1365 terms, coefficients as skyfield packages them.
 
     Args:
         time: a skyfield time, n instants.
@@ -49,10 +60,14 @@ def ecliptic_of_date(time: Time, nutation: tuple[Floats, Floats] | None = None) 
         rotation, shape (3, 3, n), and obliquity in radians, shape (n,).
     """
     in_longitude, in_obliquity = nutationlib.iau2000a_radians(time) if nutation is None else nutation
-    mean = np.radians(nutationlib.mean_obliquity(time.tdb) / constants.ARCSEC_PER_DEG)
-    to_mean_equator = np.einsum("ijn,jk->ikn", time.precession_matrix(), framelib.ICRS_to_J2000)
-    to_mean_ecliptic = turned(to_mean_equator, mean, (1, 2))
-    return turned(to_mean_ecliptic, -in_longitude, (0, 1)), np.asarray(mean + in_obliquity)
+    century = (time.tt - constants.J2000_JD) / constants.DAYS_PER_CENTURY
+    gamma, phi, psi, mean = (
+        np.radians(np.polynomial.polynomial.polyval(century, series) / constants.ARCSEC_PER_DEG)
+        for series in BIAS_AND_PRECESSION_ARCSEC.values()
+    )
+    gcrs = np.repeat(np.eye(3)[..., None], century.size, axis=-1)
+    to_mean_ecliptic = turned(turned(gcrs, gamma, (0, 1)), phi, (1, 2))
+    return turned(to_mean_ecliptic, -(psi + in_longitude), (0, 1)), np.asarray(mean + in_obliquity)
 
 
 def turned(rotation: Floats, angle_rad: Floats, rows: tuple[int, int]) -> Floats:
