@@ -44,7 +44,7 @@ BIAS_AND_PRECESSION_ARCSEC: Final = {
 }
 """Fukushima-Williams angles from the GCRS to the mean equator and equinox of date, by powers of centuries of
 TT since J2000. IAU 2006: Hilton et al. 2006, Celest. Mech. Dyn. Astron. 94, 351; with the bias: Wallace and
-Capitaine 2006, A&A 459, 981, table 1. From memory, and as ERFA has them to the last digit: a test compares."""
+Capitaine 2006, A&A 459, 981, table 1. From memory; a test compares with ERFA to the last digit."""
 
 
 def ecliptic_of_date(time: Time, nutation: tuple[Floats, Floats] | None = None) -> tuple[Floats, Floats]:
