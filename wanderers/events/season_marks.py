@@ -8,10 +8,10 @@ import numpy as np
 import polars as pl
 
 from wanderers import schema
-from wanderers.arrays import Floats
 from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.store import TrackStore
+from wanderers.events.parabola import least_within
 from wanderers.events.timeseries import circumstances
 
 CLOSEST: Final = "closest"
@@ -60,7 +60,9 @@ def marks_table(
     """
     instants = {mark: season[f"{mark}_jd_tt"] for mark in schema.SEASON_MARKS}
     for name, column in EXTREMES.items():
-        instants[name] = least_at(track, column, run_jd)
+        values = track[column].cast(pl.Float64).fill_null(float("nan")).to_numpy()
+        least = least_within(track["jd_tt"].to_numpy(), values, run_jd)
+        instants[name] = None if least is None else least[0]
     known = sorted((jd, name) for name, jd in instants.items() if jd is not None)
     jd = np.array([at for at, _ in known])
     rows = circumstances(store, Body(season["body"]), jd, Frame(season["frame"]))
@@ -68,27 +70,3 @@ def marks_table(
         season_id=pl.lit(season["season_id"]), mark=pl.Series([name for _, name in known], dtype=pl.String)
     )
     return named.select(*MARK_COLUMNS)
-
-
-def least_at(track: pl.DataFrame, column: str, run_jd: tuple[float, float]) -> float | None:
-    """Return the TT Julian date within a run at which a column of the track is least; None where unknown.
-
-    It is the vertex of the parabola through the least sample and its neighbours.
-    """
-    jd = track["jd_tt"].to_numpy()
-    values = track[column].cast(pl.Float64).fill_null(float("nan")).to_numpy()
-    usable = np.where((jd >= run_jd[0]) & (jd <= run_jd[1]) & np.isfinite(values), values, np.inf)
-    if not np.isfinite(usable).any():
-        return None
-    best = int(np.argmin(usable))
-    if not 0 < best < jd.size - 1:
-        return float(jd[best])
-    return float(np.clip(_vertex(jd[best - 1 : best + 2], values[best - 1 : best + 2]), *run_jd))
-
-
-def _vertex(x: Floats, y: Floats) -> float:
-    """Return where the parabola through three evenly spaced points is least; the middle where it is not."""
-    bend = y[0] - 2.0 * y[1] + y[2]
-    if not bend > 0.0:
-        return float(x[1])
-    return float(x[1] + np.clip(0.5 * (y[0] - y[2]) / bend, -1.0, 1.0) * (x[2] - x[1]))

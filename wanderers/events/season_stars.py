@@ -14,6 +14,7 @@ from wanderers.ephemeris.sky import FIRST_STAR, Sky
 from wanderers.ephemeris.stars import StarCatalogue
 from wanderers.ephemeris.store import TrackStore
 from wanderers.events.almanac import time_texts
+from wanderers.events.parabola import lowest
 
 STAR_LIMIT_MAG: Final = 4.0
 """Faintest star that is listed: what the public finds without a chart. Common practice, no source."""
@@ -112,11 +113,8 @@ def _least(jd: Floats, separation: Floats) -> Floats:
     inner = np.clip(at, 1, jd.shape[1] - 2)
     y = np.stack([separation[row, inner + off] ** 2 for off in (-1, 0, 1)])
     x = np.stack([jd[row, inner + off] for off in (-1, 0, 1)])
-    bend = y[0] - 2.0 * y[1] + y[2]
-    usable = (bend > 0.0) & (at == inner) & np.isclose(x[1] - x[0], x[2] - x[1], atol=1e-9)
-    shift = np.divide(0.5 * (y[0] - y[2]), bend, out=np.zeros_like(bend), where=usable)
-    vertex = x[1] + np.clip(shift, -1.0, 1.0) * (x[2] - x[1])
-    return np.asarray(np.where(usable, vertex, jd[row, at]))
+    even = (at == inner) & np.isclose(x[1] - x[0], x[2] - x[1], atol=1e-9)
+    return np.asarray(np.where(even, lowest(x, y, (x[0], x[2]))[0], jd[row, at]))
 
 
 def _sides(planet: Floats, star: Floats) -> Ints:

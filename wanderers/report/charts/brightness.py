@@ -13,6 +13,7 @@ from matplotlib.patches import Patch
 
 from wanderers.arrays import Floats
 from wanderers.ephemeris.bodies import Body
+from wanderers.events.parabola import least_within
 from wanderers.report.charts import curves, labels, marks, timeaxis
 from wanderers.report.charts.marks import Season
 from wanderers.report.charts.style import LIGHT, Style, axes_at, in_force, new_figure, tidy, write_title
@@ -179,26 +180,9 @@ def _extreme(
 
     The samples are joined by a parabola, so that the date does not depend on the hour they are taken at.
     """
-    signed = y if quantity.most_is_least else -y
-    usable = np.where((x >= within[0]) & (x <= within[1]) & np.isfinite(y), signed, np.inf)
-    if not np.isfinite(usable).any():
-        return None
-    best = int(np.argmin(usable))
-    near = slice(best - 1, best + 2)
-    turns = 0 < best < x.size - 1 and bool(
-        np.all(signed[near] >= signed[best])
-    )  # else it lies at the span's edge
-    at, value = _vertex(x[near], y[near]) if turns else (float(x[best]), float(y[best]))
-    return min(max(at, within[0]), within[1]), value
-
-
-def _vertex(x: Floats, y: Floats) -> tuple[float, float]:
-    """Return the vertex of the parabola through three evenly spaced points, the middle one being extreme."""
-    bend = y[0] - 2.0 * y[1] + y[2]
-    if bend == 0.0:
-        return float(x[1]), float(y[1])
-    shift = 0.5 * (y[0] - y[2]) / bend
-    return float(x[1] + shift * (x[2] - x[1])), float(y[1] - 0.25 * (y[0] - y[2]) * shift)
+    sign = 1.0 if quantity.most_is_least else -1.0
+    least = least_within(x, sign * y, within)
+    return None if least is None else (least[0], sign * least[1])
 
 
 def _note_extreme(ax: Axes, quantity: Quantity, line: tuple[Floats, Floats], style: Style) -> None:
