@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import csv
+import io
 import sys
 from dataclasses import dataclass
 from pathlib import Path
@@ -10,6 +12,9 @@ from typing import Any
 import pytest
 
 from wanderers.cli import main
+
+HILL = ("--site", "52.13,11.62,120", "--zone", "Europe/Berlin")
+RIDGE = ("--site", "-35.3,149.1,780", "--zone", "Australia/Sydney")
 
 
 @dataclass(frozen=True)
@@ -46,5 +51,8 @@ def at_home(monkeypatch: pytest.MonkeyPatch, folder: Path) -> None:
     monkeypatch.chdir(folder)
     monkeypatch.setenv("XDG_CONFIG_HOME", str(folder / "config"))
     monkeypatch.delenv("WANDERERS_KERNEL", raising=False)
-    for name in ("sites", "nights"):
-        monkeypatch.setitem(main.COMMANDS, name, "")
+
+
+def rows_of(text: str) -> list[dict[str, str]]:
+    """Return the rows of a table written as CSV."""
+    return list(csv.DictReader(io.StringIO(text)))

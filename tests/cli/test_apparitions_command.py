@@ -2,38 +2,17 @@
 
 from __future__ import annotations
 
-import csv
-import io
 import json
 from pathlib import Path
 
 import polars as pl
 import pytest
 
-from tests.cli.site_program import Program, at_home
+from tests.cli.site_program import HILL, RIDGE, Program, rows_of
 from wanderers.cli import main
 from wanderers.site import columns
 
-HILL = ("--site", "52.13,11.62,120", "--zone", "Europe/Berlin")
-RIDGE = ("--site", "-35.3,149.1,780", "--zone", "Australia/Sydney")
 YEAR = ("--from", "2027", "--to", "2028")
-
-
-@pytest.fixture(scope="module")
-def cache(tmp_path_factory: pytest.TempPathFactory) -> Path:
-    return tmp_path_factory.mktemp("cache")
-
-
-@pytest.fixture
-def run(
-    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str], tmp_path: Path, cache: Path
-) -> Program:
-    at_home(monkeypatch, tmp_path)
-    return Program(monkeypatch, capsys, "--cache", str(cache))
-
-
-def rows_of(text: str) -> list[dict[str, str]]:
-    return list(csv.DictReader(io.StringIO(text)))
 
 
 def test_csv_has_the_columns_documented(run: Program) -> None:

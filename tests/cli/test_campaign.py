@@ -7,21 +7,10 @@ from pathlib import Path
 import polars as pl
 import pytest
 
-from tests.cli.site_program import Program, at_home
-from wanderers.cli import main
+from tests.cli.site_program import HILL, Program
 
 EQUATOR = ("--site", "0.1,37.2,1100", "--zone", "Africa/Nairobi")
-NORTH = ("--site", "52.13,11.62,120", "--zone", "Europe/Berlin")
 LOOP = ("campaign", "jupiter", *EQUATOR, "--season", "2027", "--nights", "8")
-
-
-@pytest.fixture
-def run(
-    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str], tmp_path: Path, cache_folder: Path
-) -> Program:
-    at_home(monkeypatch, tmp_path)
-    monkeypatch.setitem(main.COMMANDS, "campaign", "")
-    return Program(monkeypatch, capsys, "--cache", str(cache_folder))
 
 
 def test_a_plan_is_a_folder_and_is_mended_where_it_tore(run: Program, tmp_path: Path) -> None:
@@ -42,7 +31,7 @@ def test_a_plan_is_a_folder_and_is_mended_where_it_tore(run: Program, tmp_path: 
 
 
 def test_a_plan_that_no_night_can_serve_says_why_and_what_would_help(run: Program) -> None:
-    outcome = run("campaign", "mars", *NORTH, "--season", "2033", "--out", "none")
+    outcome = run("campaign", "mars", *HILL, "--season", "2033", "--out", "none")
     assert outcome.status == 0
     assert "no night can serve this plan" in outcome.err
     assert "no higher than 10 degrees" in outcome.err
@@ -52,14 +41,14 @@ def test_a_plan_that_no_night_can_serve_says_why_and_what_would_help(run: Progra
 @pytest.mark.parametrize(
     ("arguments", "words"),
     [
-        (("campaign", "sun", *NORTH), "never turns back"),
-        (("campaign", "mras", *NORTH), "mars"),
+        (("campaign", "sun", *HILL), "never turns back"),
+        (("campaign", "mras", *HILL), "mars"),
         (("campaign", "mars"), "--site"),
-        (("campaign", "mars", *NORTH, "--season", "someday"), "names no season"),
-        (("campaign", "mars", *NORTH, "--sensor", "huge"), "full frame"),
-        (("campaign", "mars", *NORTH, "--nights", "3", "--every", "1"), "not both"),
-        (("campaign", "mars", *NORTH, "--skip", "2027-02-30"), "2027-02-30"),
-        (("campaign", "mars", *NORTH, "--cloudy", "1"), "--cloudy"),
+        (("campaign", "mars", *HILL, "--season", "someday"), "names no season"),
+        (("campaign", "mars", *HILL, "--sensor", "huge"), "full frame"),
+        (("campaign", "mars", *HILL, "--nights", "3", "--every", "1"), "not both"),
+        (("campaign", "mars", *HILL, "--skip", "2027-02-30"), "2027-02-30"),
+        (("campaign", "mars", *HILL, "--cloudy", "1"), "--cloudy"),
     ],
 )
 def test_what_cannot_be_planned_gets_one_line(
@@ -74,8 +63,8 @@ def test_what_cannot_be_planned_gets_one_line(
 def test_a_log_that_cannot_be_read_changes_nothing(run: Program, tmp_path: Path) -> None:
     log = tmp_path / "nights.csv"
     log.write_text("evening_date\n2027-13-01\n", encoding="utf-8")
-    outcome = run("campaign", "mars", *NORTH, "--season", "2027", "--done", "nights.csv")
+    outcome = run("campaign", "mars", *HILL, "--season", "2027", "--done", "nights.csv")
     assert outcome.status == 2
     assert "nights.csv, line 2" in outcome.err
-    missing = run("campaign", "mars", *NORTH, "--done", "no_such.csv")
+    missing = run("campaign", "mars", *HILL, "--done", "no_such.csv")
     assert missing.status == 1 and missing.err.count("\n") == 1

@@ -8,8 +8,7 @@ import icalendar
 import polars as pl
 import pytest
 
-from tests.cli.site_program import Program, at_home
-from wanderers.cli import main
+from tests.cli.site_program import Program
 
 EDITIONS = """
 [north]
@@ -28,13 +27,9 @@ SPAN = ("calendar", "--from", "2027-01", "--to", "2027-03", "--stars", "none", "
 
 
 @pytest.fixture
-def run(
-    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str], tmp_path: Path, cache_folder: Path
-) -> Program:
-    at_home(monkeypatch, tmp_path)
-    monkeypatch.setitem(main.COMMANDS, "calendar", "")
+def run(run: Program, tmp_path: Path) -> Program:
     (tmp_path / "editions.toml").write_text(EDITIONS, encoding="utf-8")
-    return Program(monkeypatch, capsys, "--cache", str(cache_folder))
+    return run
 
 
 def entries(path: Path) -> dict[str, icalendar.Event]:

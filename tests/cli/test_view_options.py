@@ -15,13 +15,12 @@ import polars as pl
 import pytest
 from polars.testing import assert_frame_equal
 
-from tests.cli.site_program import Outcome, Program, at_home
+from tests.cli.site_program import HILL, Outcome, Program
 from wanderers import schema
 from wanderers.plans.outlook import OUTLOOK_COLUMNS
 from wanderers.site import columns
 
 INSTALLED = Path(sys.executable).with_name("wanderers")
-HILL = ("--site", "52.13,11.62,120", "--zone", "Europe/Berlin")
 SPRING = ("--from", "2027", "--to", "2027-05")
 PAIRS = ("almanac", *SPRING, "--kind", "appulse", "--stars", "none")
 ALL_LIMITS = (
@@ -29,14 +28,6 @@ ALL_LIMITS = (
     *("--brighter", "3", "--least-elongation", "20", "--within", "5"),
 )
 TOLD = re.compile(r"(\d+) (fainter|within|not to be seen|not on|not after|farther)")
-
-
-@pytest.fixture
-def run(
-    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str], tmp_path: Path, cache_folder: Path
-) -> Program:
-    at_home(monkeypatch, tmp_path)
-    return Program(monkeypatch, capsys, "--cache", str(cache_folder))
 
 
 def csv(run: Program, *arguments: str) -> tuple[pl.DataFrame, str]:

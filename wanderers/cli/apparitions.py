@@ -7,6 +7,7 @@ from typing import Any
 
 import click
 
+from wanderers.cli.evening_options import aid_option, evening_options
 from wanderers.cli.options import BODY, Workplace, workplace_options
 from wanderers.cli.output import Destination, output_options, write_table
 from wanderers.cli.site_options import parse_evenings, rules_options, site_options
@@ -43,8 +44,7 @@ class ClockTime(click.ParamType):  # type: ignore[type-arg, unused-ignore] # gen
 @click.command("apparitions")
 @site_options(required=True)
 @click.option("--body", "bodies", type=BODY, multiple=True, metavar="BODY", help=WHICH)
-@click.option("--from", "from_text", metavar="DATE", help="First evening, a local date. [default: today]")
-@click.option("--to", "to_text", metavar="DATE", help="Date after the last evening. [default: a year on]")
+@evening_options("a year")
 @click.option(
     "--until",
     type=ClockTime(),
@@ -61,13 +61,7 @@ class ClockTime(click.ParamType):  # type: ignore[type-arg, unused-ignore] # gen
     metavar="TIME",
     help="How early in the morning they begin.",
 )
-@click.option(
-    "--aid",
-    type=click.Choice([aid.value for aid in Aid]),
-    default=Aid.NAKED_EYE.value,
-    show_default=True,
-    help="With what to look; any: a telescope.",
-)
+@aid_option("With what to look; any: a telescope.")
 @rules_options
 @workplace_options
 @output_options
@@ -81,7 +75,6 @@ def command(
     morning_from: float,
     aid: str,
     rules: Rules,
-    min_altitude: float | None,
     workplace: Workplace,
     destination: Destination,
 ) -> None:

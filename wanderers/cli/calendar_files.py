@@ -5,17 +5,18 @@ from __future__ import annotations
 import datetime as dt
 import os
 from collections import Counter
-from collections.abc import Callable, Mapping
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from pathlib import Path
-from typing import BinaryIO, Final
+from typing import Final
 
 import click
 import polars as pl
 
 from wanderers.cli.options import warn
+from wanderers.cli.output import write_file
 from wanderers.errors import UsageProblem
-from wanderers.files import reported_as_output_error, write_atomically
+from wanderers.files import reported_as_output_error
 from wanderers.report import calendars
 from wanderers.report.calendar_parts import is_part, part_title, split
 from wanderers.report.calendar_update import CalendarFileError, Published, UtcSpan, read_calendar
@@ -117,16 +118,9 @@ def write_calendars(issues: Mapping[str, Issue], plan: Plan) -> None:
     for part, calendar in issues.items():
         path = plan.target / f"{part}.ics" if part else plan.target
         with reported_as_output_error(path):
-            path.parent.mkdir(parents=True, exist_ok=True)
-            if not (path.is_file() and path.read_bytes() == calendar.content):
-                write_atomically(path, _writer(calendar.content))
-
-
-def _writer(content: bytes) -> Callable[[BinaryIO], None]:
-    def write(file: BinaryIO) -> None:
-        file.write(content)
-
-    return write
+            same = path.is_file() and path.read_bytes() == calendar.content
+        if not same:
+            write_file(path, calendar.content)
 
 
 def warn_about(events: pl.DataFrame, plan: Plan) -> None:

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import datetime as dt
 import re
 from dataclasses import replace
 from pathlib import Path
@@ -14,7 +13,7 @@ import polars as pl
 from wanderers.cli.campaign_options import camera_options, night_options
 from wanderers.cli.options import BODY, Workplace, workplace_options
 from wanderers.cli.report import REPORTS, progress_line
-from wanderers.cli.site_options import site_options
+from wanderers.cli.site_options import site_options, today
 from wanderers.ephemeris.bodies import Body
 from wanderers.errors import OutputError
 from wanderers.plans.campaign import Campaign, plan_campaign
@@ -78,7 +77,7 @@ def command(
     asked = replace(
         request,
         body=body,
-        now=_today(site),
+        now=today(zone_named(site.zone)),
         season=season,
         lead_days=lead,
         tail_days=tail,
@@ -97,10 +96,6 @@ def command(
         for line in told(campaign):
             click.echo(f"wanderers: {line}", err=True)
     click.echo(page)
-
-
-def _today(site: Site) -> dt.date:
-    return dt.datetime.now(zone_named(site.zone).rules).date()
 
 
 def _log(path: Path) -> tuple[LoggedNight, ...]:

@@ -2,22 +2,21 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import replace
 from pathlib import Path
-from typing import BinaryIO, Final
+from typing import Final
 
 import click
 import polars as pl
 
 from wanderers.cli.options import Workplace
+from wanderers.cli.output import write_file
 from wanderers.cli.view_options import View, selected
 from wanderers.ephemeris.store import TrackStore
 from wanderers.errors import UsageProblem
 from wanderers.events.almanac import almanac
 from wanderers.events.catalogue import Query
 from wanderers.events.sides import with_sides
-from wanderers.files import reported_as_output_error, write_atomically
 from wanderers.report import calendars
 from wanderers.report.calendars import Style
 from wanderers.report.editions import Edition, read_editions
@@ -57,7 +56,7 @@ def write_editions(
     for edition, site in wanted:
         table = _seen(store, query, events, replace(view, site=site), edition)
         for ending, content in _files(table, edition, site, style, store.kernel.name).items():
-            _write(target / f"{edition.name}.{ending}", content)
+            write_file(target / f"{edition.name}.{ending}", content)
         if not workplace.quiet:
             click.echo(f"wanderers: {edition.name}: {table.height} events", err=True)
     click.echo(target)
@@ -98,16 +97,3 @@ def _files(
         "md": events_markdown(table, Wording(edition.words), Source(kernel)).encode(),
         "csv": table.write_csv().encode(),
     }
-
-
-def _write(path: Path, content: bytes) -> None:
-    with reported_as_output_error(path):
-        path.parent.mkdir(parents=True, exist_ok=True)
-        write_atomically(path, _writer(content))
-
-
-def _writer(content: bytes) -> Callable[[BinaryIO], None]:
-    def write(file: BinaryIO) -> None:
-        file.write(content)
-
-    return write

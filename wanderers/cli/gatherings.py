@@ -2,53 +2,23 @@
 
 from __future__ import annotations
 
-from typing import Any
-
 import click
 
-from wanderers.cli.options import BODY, Span, Workplace, require_in_kernel, span_options, workplace_options
+from wanderers.cli.options import Span, Workplace, require_in_kernel, span_options, workplace_options
 from wanderers.cli.output import MARKDOWN, Destination, write_table
+from wanderers.cli.party_options import BodyList, party_options, require_enough
 from wanderers.cli.sentences import sentence_options, write_event_sentences
-from wanderers.ephemeris.bodies import BODIES, NAKED_EYE_PLANETS, Body
+from wanderers.ephemeris.bodies import Body
 from wanderers.events.gathering_table import FewestAndWidest, gatherings, removals_in_words
 from wanderers.report.phrases.markdown import Wording
 from wanderers.report.tables import gatherings_heading
 
-
-class BodyList(click.ParamType):  # type: ignore[type-arg, unused-ignore] # generic from click 8.4 on
-    """Bodies separated by commas."""
-
-    name = "bodies"
-
-    def convert(
-        self, value: Any, param: click.Parameter | None, ctx: click.Context | None
-    ) -> tuple[Body, ...]:
-        """Return the bodies in their written order, each once."""
-        if isinstance(value, tuple):
-            return value
-        named = {BODY.convert(name, param, ctx) for name in str(value).split(",") if name.strip()}
-        if len(named) < 3:
-            self.fail("a gathering needs at least three different bodies, as venus,mars,jupiter", param, ctx)
-        return tuple(body for body in BODIES if body in named)
+GATHERED = BodyList(3, "a gathering needs at least three different bodies, as venus,mars,jupiter")
 
 
 @click.command("gatherings")
 @span_options(default_years=100)
-@click.option(
-    "--bodies",
-    type=BodyList(),
-    default=",".join(NAKED_EYE_PLANETS),
-    metavar="LIST",
-    help="Bodies that may take part, separated by commas. [default: the five planets the naked eye sees]",
-)
-@click.option(
-    "--at-least",
-    type=click.IntRange(3),
-    default=3,
-    show_default=True,
-    metavar="N",
-    help="Fewest bodies together.",
-)
+@party_options(GATHERED)
 @click.option(
     "--within",
     type=click.FloatRange(0.0, 60.0, min_open=True),
@@ -98,10 +68,7 @@ def command(
         wanderers gatherings --from 1550 --to 2650 --at-least 5 --within 25
     """
     require_in_kernel(workplace, span, bodies)
-    if at_least > len(bodies):
-        raise click.UsageError(
-            f"--at-least {at_least} is more than the {len(bodies)} bodies named by --bodies"
-        )
+    require_enough(bodies, at_least)
     wanted = FewestAndWidest(bodies, at_least, within, least_elongation)
     table, removals = gatherings(workplace.store, span.jd_from, span.jd_to, wanted, standing=standing)
     if sort == "tightness":

@@ -6,6 +6,7 @@ from dataclasses import replace
 
 import click
 
+from wanderers.cli.evening_options import evening_options
 from wanderers.cli.options import BODY, Workplace, workplace_options
 from wanderers.cli.output import Destination, output_options, write_table
 from wanderers.cli.site_options import parse_evenings, parse_moment, rules_options, site_options
@@ -20,7 +21,6 @@ from wanderers.site.rules import Rules
 from wanderers.site.zones import zone_named
 
 DEFAULT_EVENINGS = 7
-AFTER_LAST = f"Date after the last evening. [default: {DEFAULT_EVENINGS} evenings on]"
 AT_ONE_MOMENT = (
     "List instead everything up at this time by the site's clock, as 2027-03-05T20:00 or 20:00; "
     "Z or an offset may follow."
@@ -30,14 +30,15 @@ WHICH_BODIES = "Body wanted; may be repeated. [default: the Moon and the planets
 
 @click.command("nights")
 @site_options(required=True)
-@click.option("--from", "from_text", metavar="DATE", help="First evening, a local date. [default: today]")
-@click.option("--to", "to_text", metavar="DATE", help=AFTER_LAST)
+@evening_options(f"{DEFAULT_EVENINGS} evenings")
 @click.option("--at", "at_text", metavar="TIME", help=AT_ONE_MOMENT)
 @click.option("--body", "bodies", type=BODY, multiple=True, metavar="BODY", help=WHICH_BODIES)
 @rules_options
 @workplace_options
 @output_options
+@click.pass_context
 def command(
+    context: click.Context,
     *,
     site: Site,
     from_text: str | None,
@@ -45,7 +46,6 @@ def command(
     at_text: str | None,
     bodies: tuple[Body, ...],
     rules: Rules,
-    min_altitude: float | None,
     workplace: Workplace,
     destination: Destination,
 ) -> None:
@@ -65,7 +65,7 @@ def command(
         return
     if from_text is not None or to_text is not None:
         raise UsageProblem("--at asks for one moment: leave out --from and --to")
-    upward = replace(rules, min_altitude_deg=min_altitude or 0.0)
+    upward = replace(rules, min_altitude_deg=context.params["min_altitude"] or 0.0)
     jd = parse_moment(at_text, zone_named(site.zone))
     table = everything_up(workplace.store, site, jd, bodies or LISTED, upward)
     if destination.format == "table":

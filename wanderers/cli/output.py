@@ -112,12 +112,22 @@ def write_bytes(content: bytes, destination: Destination) -> None:
     if destination.path is None:
         click.echo(content, nl=False)
         return
+    write_file(destination.path, content)
+
+
+def write_file(path: Path, content: bytes) -> None:
+    """Write finished content to a file; folders above it that are missing are made.
+
+    Raises:
+        OutputError: it cannot be written.
+    """
 
     def write(file: BinaryIO) -> None:
         file.write(content)
 
-    with reported_as_output_error(destination.path):
-        write_atomically(destination.path, write)
+    with reported_as_output_error(path):
+        path.parent.mkdir(parents=True, exist_ok=True)
+        write_atomically(path, write)
 
 
 def _write_to_stdout(table: pl.DataFrame, form: str, heading: str) -> None:

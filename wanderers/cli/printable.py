@@ -7,7 +7,7 @@ import functools
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 from pathlib import Path
-from typing import Any, BinaryIO, Final, TypeVar
+from typing import Any, Final, TypeVar
 
 import click
 import numpy as np
@@ -15,6 +15,7 @@ import polars as pl
 
 from wanderers import schema
 from wanderers.cli.options import Span, Workplace
+from wanderers.cli.output import write_file
 from wanderers.cli.view_options import View, viewed
 from wanderers.ephemeris import timescales
 from wanderers.ephemeris.bodies import PLANETS
@@ -23,7 +24,7 @@ from wanderers.events.almanac import almanac
 from wanderers.events.catalogue import Query
 from wanderers.events.kinds import Kind
 from wanderers.events.seasons import seasons
-from wanderers.files import reported_as_output_error, require_writable, write_atomically
+from wanderers.files import require_writable
 from wanderers.site.audience import Removed
 
 Command = TypeVar("Command", bound=Callable[..., Any])
@@ -109,17 +110,8 @@ def write_printable(
         site=view.site,
         zone="UTC" if view.site is None else view.site.zone,
     )
-    with reported_as_output_error(printable.path):
-        printable.path.parent.mkdir(parents=True, exist_ok=True)
-        write_atomically(printable.path, _writer(content))
+    write_file(printable.path, content)
     return removed
-
-
-def _writer(content: bytes) -> Callable[[BinaryIO], None]:
-    def write(file: BinaryIO) -> None:
-        file.write(content)
-
-    return write
 
 
 def local_dates(span: Span) -> tuple[dt.date, dt.date]:

@@ -35,7 +35,6 @@ def command(
     wanted: Wanted,
     site: Site | None,
     rules: Rules,
-    min_altitude: float | None,
     workplace: Workplace,
     out: Path | None,
 ) -> None:

@@ -51,7 +51,6 @@ def command(
     outlook: float | None,
     site: Site | None,
     rules: Rules,
-    min_altitude: float | None,
     workplace: Workplace,
     destination: Destination,
     wording: Wording,

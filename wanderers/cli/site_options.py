@@ -93,7 +93,7 @@ def _only_site(zone: str | None) -> Site:
 
 
 def rules_options(command: Command) -> Command:
-    """Add what counts as watchable; the command receives ``rules``, and ``min_altitude`` as given or None."""
+    """Add what counts as watchable; the command receives ``rules``."""
 
     @click.option("--min-altitude", type=HEIGHT, metavar="DEG", help=HOW_HIGH)
     @click.option("--sun-below", type=ALTITUDE, metavar="DEG", default=-6.0, show_default=True, help=HOW_DARK)
@@ -112,7 +112,7 @@ def rules_options(command: Command) -> Command:
     ) -> Any:
         criteria = Criteria(extinction_mag=extinction, dark_zenith_mag=dark_sky)
         lowest = Rules().min_altitude_deg if min_altitude is None else min_altitude
-        return command(*args, rules=Rules(lowest, sun_below, criteria), min_altitude=min_altitude, **kwargs)
+        return command(*args, rules=Rules(lowest, sun_below, criteria), **kwargs)
 
     return wrapped  # type: ignore[return-value]
 
@@ -123,7 +123,7 @@ def parse_evenings(from_text: str | None, to_text: str | None, zone: Zone, defau
     Raises:
         DateError: a date that does not exist, or an end not after the beginning.
     """
-    first = today(zone) if from_text is None else _date(from_text)
+    first = np.datetime64(today(zone), "D") if from_text is None else _date(from_text)
     end = first + np.timedelta64(default_days, "D") if to_text is None else _date(to_text, up=True)
     if end <= first:
         later = first + np.timedelta64(1, "D")
@@ -131,9 +131,9 @@ def parse_evenings(from_text: str | None, to_text: str | None, zone: Zone, defau
     return first, end
 
 
-def today(zone: Zone) -> np.datetime64:
+def today(zone: Zone) -> dt.date:
     """Return the date that the clock shows now."""
-    return np.datetime64(dt.datetime.now(zone.rules).date(), "D")
+    return dt.datetime.now(zone.rules).date()
 
 
 def parse_moment(text: str, zone: Zone) -> float:

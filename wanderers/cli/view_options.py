@@ -102,7 +102,6 @@ def view_options(command: Command) -> Command:
         *args: Any,
         site: Site | None,
         rules: Rules,
-        min_altitude: float | None,
         visible: bool,
         after: dt.time | None,
         by: dt.time | None,

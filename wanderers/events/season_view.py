@@ -62,7 +62,7 @@ def view_from_above(store: TrackStore, season: dict[str, Any], jd: Floats) -> pl
     every = np.unique(np.concatenate([jd, _orbit_instants(store, body, jd), list(marks)]))
     places = heliocentric_au(store, body, every)
     inside = (every >= jd[0]) & (every <= jd[-1])
-    table = pl.DataFrame(
+    return pl.DataFrame(
         {
             "season_id": pl.repeat(season["season_id"], every.size, eager=True),
             "mark": pl.Series([marks.get(at) for at in every.tolist()], dtype=pl.String),
@@ -72,7 +72,6 @@ def view_from_above(store: TrackStore, season: dict[str, Any], jd: Floats) -> pl
             "direction_deg": pl.Series(_directions(store, body, every, inside), nan_to_null=True),
         }
     )
-    return table
 
 
 def heliocentric_au(store: TrackStore, body: Body, jd_tt: Floats) -> Floats:
