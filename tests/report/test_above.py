@@ -10,8 +10,8 @@ import pytest
 from matplotlib.axes import Axes
 from PIL import Image
 
+from tests.report.chart_reading import assert_legible, words
 from tests.report.season_samples import two_years
-from tests.report.test_charts import assert_legible, words
 from wanderers.report.charts import above, above_scene
 from wanderers.report.charts import season as against_time
 from wanderers.report.charts.export import save

@@ -16,7 +16,7 @@ from PIL import Image
 
 from tests.plans.places import ATOLL, HILL, RIDGE, Watcher
 from tests.report.campaign_samples import contents, hopeless, reported
-from tests.report.test_charts import assert_legible, words
+from tests.report.chart_reading import assert_legible, words
 from wanderers.ephemeris.store import TrackStore
 from wanderers.plans.camera import sensor_named
 from wanderers.plans.field_stars import star_names

@@ -11,6 +11,7 @@ import polars as pl
 import pytest
 
 from tests.report.season_samples import two_years
+from wanderers.report import facts as spoken
 from wanderers.report.contents import Contents
 from wanderers.report.dossier import facts, sentences
 from wanderers.report.dossier.sources import SeasonRows, season_rows
@@ -46,8 +47,8 @@ def test_light_minutes_follow_from_the_defined_speed_of_light(au: float) -> None
 def test_one_au_is_eight_light_minutes_nineteen_seconds() -> None:
     # 499.004784 s: light-time for unit distance, Astronomical Almanac, section K (from memory).
     assert facts.light_minutes(1.0) * 60.0 == pytest.approx(499.004784, abs=1e-6)
-    assert facts.spoken_light_time(1.0) == "8.3 light-minutes"
-    assert facts.spoken_light_time(28.868) == "4.0 light-hours"
+    assert spoken.light_time(1.0) == "8.3 light-minutes"
+    assert spoken.light_time(28.868) == "4.0 light-hours"
 
 
 @pytest.mark.parametrize(
@@ -67,8 +68,8 @@ def test_five_magnitudes_are_a_hundred_times() -> None:
     # Pogson's definition: five magnitudes are a ratio of exactly 100.
     assert facts.times_brighter(3.0, -2.0) == pytest.approx(100.0)
     assert facts.times_brighter(1.0, 0.0) == pytest.approx(2.512, abs=5e-4)
-    assert facts.spoken_ratio(100.0) == "100 times"
-    assert facts.spoken_ratio(2.324) == "2.3 times"
+    assert spoken.times_brighter(5.0) == "100 times"
+    assert spoken.times_brighter(0.9156) == "2.3 times"
 
 
 @pytest.mark.parametrize(

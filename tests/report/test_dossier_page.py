@@ -4,8 +4,6 @@ from __future__ import annotations
 
 import datetime as dt
 import re
-import shutil
-from collections.abc import Iterator
 from html.parser import HTMLParser
 from pathlib import Path
 from typing import Any
@@ -14,17 +12,18 @@ from zoneinfo import ZoneInfo
 import polars as pl
 import pytest
 
+from tests.report.conftest import Open
 from tests.report.report_samples import MARS_SEASON, made_up
 from tests.report.season_samples import two_years
 from wanderers.report.contents import Contents
 from wanderers.report.dossier.page import dossier_of
-from wanderers.report.dossier.pages import dossier_jobs, file_name, stems, write_dossiers
+from wanderers.report.dossier.pages import dossier_jobs, stems, write_dossiers
+from wanderers.report.dossier.sources import address as dossier_address
 from wanderers.report.dossier.sources import season_rows
 from wanderers.report.pictures import drawn_into, jobs
 from wanderers.report.planets import planet_sections
 from wanderers.site.zones import zone_named
 
-CHROMIUM, DRIVER = shutil.which("chromium"), shutil.which("chromedriver")
 VOID = {"meta", "link", "img", "input", "br", "hr"}
 
 
@@ -93,7 +92,7 @@ def folder(contents: Contents, mars: dict[str, Any], tmp_path_factory: pytest.Te
 
 @pytest.fixture(scope="module")
 def page(folder: Path, mars: dict[str, Any]) -> Page:
-    return parsed(folder / "seasons" / file_name(mars["season_id"]))
+    return parsed(folder / dossier_address(mars["season_id"]))
 
 
 def test_every_season_has_a_page_and_every_table_its_file(folder: Path, contents: Contents) -> None:
@@ -107,7 +106,7 @@ def test_pages_hold_all_they_need(page: Page, folder: Path, mars: dict[str, Any]
     assert len(page.sources) == 3
     assert all(source.startswith("data:image/svg+xml,") for source in page.sources)
     assert all(len(words) > 80 for words in page.alternatives)
-    text = (folder / "seasons" / file_name(mars["season_id"])).read_text(encoding="utf-8")
+    text = (folder / dossier_address(mars["season_id"])).read_text(encoding="utf-8")
     assert not re.search(r"(src|href)=\"(https?:)?//", text)
     assert "default-src 'none'" in text
     assert len(text) < 600_000
@@ -125,7 +124,7 @@ def test_every_link_leads_somewhere(page: Page, folder: Path) -> None:
 
 def test_pages_without_pictures_are_whole(folder: Path, contents: Contents) -> None:
     for season_id in contents.seasons["season_id"]:
-        assert parsed(folder / "seasons" / file_name(season_id)).ids
+        assert parsed(folder / dossier_address(season_id)).ids
 
 
 def test_local_times_are_those_of_the_zone(contents: Contents, mars: dict[str, Any]) -> None:
@@ -151,7 +150,7 @@ def test_stations_stand_still_and_marks_are_numbered(contents: Contents, mars: d
 
 def test_inner_planets_carry_the_caution(folder: Path, contents: Contents) -> None:
     for season_id in contents.seasons["season_id"]:
-        said = " ".join(parsed(folder / "seasons" / file_name(season_id)).words)
+        said = " ".join(parsed(folder / dossier_address(season_id)).words)
         assert ("no optics while any part of the Sun" in said) or not season_id.startswith(
             ("mercury", "venus")
         )
@@ -163,48 +162,23 @@ def test_the_report_links_each_dossier_and_none_where_there_is_none(contents: Co
     assert write_dossiers(made_up(seasons=[MARS_SEASON]), (), Path("nowhere")) == ()
 
 
-@pytest.fixture(scope="module")
-def browser(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Any]:
-    webdriver = pytest.importorskip("selenium.webdriver", reason="needs selenium to drive a browser")
-    if CHROMIUM is None or DRIVER is None:
-        pytest.skip("needs chromium and its driver")
-    options = webdriver.ChromeOptions()
-    options.binary_location = CHROMIUM
-    for switch in (
-        "headless",
-        "no-sandbox",
-        "disable-gpu",
-        f"user-data-dir={tmp_path_factory.mktemp('profile')}",
-    ):
-        options.add_argument(f"--{switch}")
-    options.set_capability("goog:loggingPrefs", {"browser": "ALL"})
-    driver = webdriver.Chrome(options=options, service=webdriver.ChromeService(DRIVER))
-    yield driver
-    driver.quit()
-
-
-@pytest.mark.filterwarnings("ignore::ResourceWarning")
+@pytest.mark.filterwarnings("ignore::ResourceWarning")  # the driver's own sockets
 @pytest.mark.parametrize("width", [1440, 768, 390])
 def test_nothing_is_wider_than_the_window(
-    browser: Any, folder: Path, mars: dict[str, Any], width: int
+    open_file: Open, folder: Path, mars: dict[str, Any], width: int
 ) -> None:
-    size = {"width": width, "height": 900, "deviceScaleFactor": 1, "mobile": width < 500}
-    browser.execute_cdp_cmd("Emulation.setDeviceMetricsOverride", size)
-    browser.get((folder / "seasons" / file_name(mars["season_id"])).as_uri())
-    assert browser.execute_script("return document.documentElement.scrollWidth") <= width
-    assert [entry for entry in browser.get_log("browser") if entry["level"] == "SEVERE"] == []
+    shown = open_file(folder / dossier_address(mars["season_id"]), "", width)
+    assert shown.execute_script("return document.documentElement.scrollWidth") <= width
 
 
 @pytest.mark.filterwarnings("ignore::ResourceWarning")
 def test_the_look_is_kept_in_the_address_and_carried_back(
-    browser: Any, folder: Path, mars: dict[str, Any]
+    open_file: Open, folder: Path, mars: dict[str, Any]
 ) -> None:
-    address = (folder / "seasons" / file_name(mars["season_id"])).as_uri()
-    browser.get("about:blank")
-    browser.get(f"{address}#look=night")
-    assert browser.execute_script("return document.documentElement.dataset.look") == "night"
-    back = browser.find_element("css selector", "a[data-at]").get_attribute("href")
+    shown = open_file(folder / dossier_address(mars["season_id"]), "#look=night")
+    assert shown.execute_script("return document.documentElement.dataset.look") == "night"
+    back = shown.find_element("css selector", "a[data-at]").get_attribute("href")
     assert back.endswith("index.html#at=mars&look=night")
-    browser.execute_script("document.querySelector('input[value=\"dark\"]').click()")
-    assert browser.current_url.endswith("#look=dark")
-    assert browser.execute_script("return document.documentElement.dataset.look") == "dark"
+    shown.execute_script("document.querySelector('input[value=\"dark\"]').click()")
+    assert shown.current_url.endswith("#look=dark")
+    assert shown.execute_script("return document.documentElement.dataset.look") == "dark"

@@ -15,14 +15,13 @@ import pytest
 from icalendar import Calendar
 from polars.testing import assert_frame_equal
 
+from tests.report.browsing import SHOWN, count, saved, shown_ids, tick, write
 from tests.report.conftest import Open
 from wanderers import schema
 from wanderers.report.folder import PAGE
 from wanderers.report.page_data import DECIMALS
 
 pytestmark = pytest.mark.filterwarnings("ignore::ResourceWarning")  # the driver's own sockets
-
-SHOWN = "#table tbody tr"
 
 
 @pytest.fixture(scope="module")
@@ -38,44 +37,6 @@ def events(report: Path) -> pl.DataFrame:
 @pytest.fixture
 def opened(open_file: Open, report: Path) -> Open:
     return partial(open_file, report / PAGE)
-
-
-def shown_ids(page: Any) -> list[str]:
-    ids: list[str] = page.execute_script(
-        f"return [...document.querySelectorAll('{SHOWN}')].map(r => r.dataset.id)"
-    )
-    return ids
-
-
-def count(page: Any) -> int:
-    return int(page.find_element("css selector", "#count").text.split(" of ")[0])
-
-
-def tick(page: Any, name: str, value: str) -> None:
-    box = page.find_element("css selector", f'input[name="{name}"][value="{value}"]')
-    page.execute_script("arguments[0].click()", box)
-
-
-def write(page: Any, name: str, text: str) -> None:
-    field = page.find_element("css selector", f'input[name="{name}"]')
-    field.clear()
-    field.send_keys(text)
-
-
-def saved(page: Any, button: str) -> str:
-    """Press a button that saves, and return the text that would have become a file."""
-    page.execute_script(
-        "window.savedText = null; HTMLAnchorElement.prototype.click = () => {};"
-        "URL.createObjectURL = (blob) => {"
-        " blob.text().then((text) => { window.savedText = text; }); return '#'; };"
-    )
-    page.find_element("css selector", button).click()
-    wait = (
-        "const done = arguments[0];"
-        "const look = () => window.savedText ? done(window.savedText) : setTimeout(look, 20); look();"
-    )
-    text: str = page.execute_async_script(wait)
-    return text
 
 
 def test_it_opens_from_disk_and_asks_for_nothing_else(opened: Open, report: Path) -> None:

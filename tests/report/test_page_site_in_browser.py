@@ -7,9 +7,8 @@ from __future__ import annotations
 
 import datetime as dt
 import json
-import shutil
-from collections.abc import Callable, Iterator
 from dataclasses import replace
+from functools import partial
 from pathlib import Path
 from typing import Any
 from zoneinfo import ZoneInfo
@@ -18,40 +17,26 @@ import polars as pl
 import pytest
 from icalendar import Calendar
 
-from tests.ephemeris.kernel_files import DE421
-from tests.report.report_samples import HALF_A_YEAR
+from tests.report.browsing import SHOWN, all_ids, count, saved, tick
+from tests.report.conftest import Open, written
 from tests.site.places import HILL
 from wanderers import schema
 from wanderers.ephemeris.bodies import Body
-from wanderers.ephemeris.kernels import inspect_kernel
-from wanderers.ephemeris.store import TrackStore
-from wanderers.report.contents import gather
-from wanderers.report.folder import PAGE, write_report
+from wanderers.report.folder import PAGE
 from wanderers.site import columns
 
-webdriver = pytest.importorskip("selenium.webdriver", reason="needs selenium to drive a browser")
-CHROMIUM, DRIVER = shutil.which("chromium"), shutil.which("chromedriver")
-pytestmark = [
-    pytest.mark.skipif(CHROMIUM is None or DRIVER is None, reason="needs chromium and its driver"),
-    pytest.mark.filterwarnings("ignore::ResourceWarning"),  # the driver's own sockets
-]
+pytestmark = pytest.mark.filterwarnings("ignore::ResourceWarning")  # the driver's own sockets
 
 SITE = replace(HILL, name="lantern hill & mill")
-SWITCHES = (
-    "headless no-sandbox disable-gpu disable-quic no-first-run disable-background-networking "
-    "disable-component-update disable-sync"
-).split()
+LONG_AGO = "-0500-03-01T18:00:45.000+01:00"
 VERDICTS = ["naked_eye", "binoculars", "telescope", "not_visible"]
-SHOWN = "#table tbody tr"
 
 
 @pytest.fixture(scope="module")
 def report(tmp_path_factory: pytest.TempPathFactory, cache_folder: Path) -> Path:
     bodies = (Body.SUN, Body.MOON, Body.VENUS, Body.JUPITER)
-    request = replace(HALF_A_YEAR, bodies=bodies, site=SITE)
     folder = tmp_path_factory.mktemp("reports") / "site"
-    write_report(gather(TrackStore(inspect_kernel(DE421, cache_folder), cache_folder), request), folder)
-    return folder
+    return written(folder, cache_folder, bodies=bodies, site=SITE)
 
 
 @pytest.fixture(scope="module")
@@ -59,75 +44,9 @@ def events(report: Path) -> pl.DataFrame:
     return pl.read_parquet(report / "events.parquet")
 
 
-@pytest.fixture(scope="module")
-def browser(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Any]:
-    options = webdriver.ChromeOptions()
-    options.binary_location = CHROMIUM
-    for switch in (*SWITCHES, f"user-data-dir={tmp_path_factory.mktemp('profile')}"):
-        options.add_argument(f"--{switch}")
-    options.set_capability("goog:loggingPrefs", {"browser": "ALL", "performance": "ALL"})
-    driver = webdriver.Chrome(options=options, service=webdriver.ChromeService(DRIVER))
-    yield driver
-    driver.quit()
-
-
-Open = Callable[..., Any]
-
-
 @pytest.fixture
-def opened(browser: Any, report: Path) -> Iterator[Open]:
-    def open_page(address: str = "", width: int = 1440, height: int = 900) -> Any:
-        browser.get("about:blank")
-        size = {"width": width, "height": height, "deviceScaleFactor": 1, "mobile": width < 500}
-        browser.execute_cdp_cmd("Emulation.setDeviceMetricsOverride", size)
-        browser.get(f"{(report / PAGE).as_uri()}{address}")
-        return browser
-
-    yield open_page
-    said = [entry for entry in browser.get_log("browser") if entry["level"] in ("SEVERE", "WARNING")]
-    assert said == []
-
-
-def shown_ids(page: Any) -> list[str]:
-    ids: list[str] = page.execute_script(
-        f"return [...document.querySelectorAll('{SHOWN}')].map(r => r.dataset.id)"
-    )
-    return ids
-
-
-def all_ids(page: Any) -> list[str]:
-    """Ids of every slice of the selection, in order."""
-    found = shown_ids(page)
-    following = page.find_element("css selector", '.pager button[data-go="next"]')
-    while following.is_enabled():
-        page.execute_script("arguments[0].click()", following)
-        found += shown_ids(page)
-    return found
-
-
-def count(page: Any) -> int:
-    return int(page.find_element("css selector", "#count").text.split(" of ")[0])
-
-
-def tick(page: Any, name: str, value: str) -> None:
-    box = page.find_element("css selector", f'input[name="{name}"][value="{value}"]')
-    page.execute_script("arguments[0].click()", box)
-
-
-def saved(page: Any, button: str) -> str:
-    """Press a button that saves, and return the text that would have become a file."""
-    page.execute_script(
-        "window.savedText = null; HTMLAnchorElement.prototype.click = () => {};"
-        "URL.createObjectURL = (blob) => {"
-        " blob.text().then((text) => { window.savedText = text; }); return '#'; };"
-    )
-    page.find_element("css selector", button).click()
-    wait = (
-        "const done = arguments[0];"
-        "const look = () => window.savedText ? done(window.savedText) : setTimeout(look, 20); look();"
-    )
-    text: str = page.execute_async_script(wait)
-    return text
+def opened(open_file: Open, report: Path) -> Open:
+    return partial(open_file, report / PAGE)
 
 
 def test_it_opens_with_the_sites_list_and_asks_for_nothing_else(
@@ -230,6 +149,12 @@ def test_rows_tell_the_local_time_and_the_watch(opened: Open, events: pl.DataFra
         ]
         assert watch.endswith("{} {:%H:%M}–{:%H:%M}, best {:%H:%M}".format(f"{clocks[0].date()}", *clocks))
         assert watch.startswith("night after ") == (clocks[0].date() != clocks[1].date())
+
+
+def test_local_instants_before_the_common_era_keep_weekday_and_minute(opened: Open) -> None:
+    # The Gregorian calendar repeats after 400 years, which are 20 871 whole weeks.
+    told = opened().execute_script("return [dated(arguments[0]), clock(arguments[0])]", LONG_AGO)
+    assert told == [f"{dt.date(1900, 3, 1):%a} -0500-03-01", "18:01"]
 
 
 def nearest_minute(utc: str) -> dt.datetime:

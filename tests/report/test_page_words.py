@@ -153,6 +153,8 @@ def test_at_a_glance_knows_who_is_retrograde_when_the_span_begins() -> None:
 def test_at_a_glance_does_not_speak_of_kinds_that_were_not_asked_for() -> None:
     lines = at_a_glance(table(), seasons_table(), REQUEST.jd_from, (Kind.STATION,))
     assert [line.label for line in lines] == ["Retrograde as the span begins", "Next station"]
+    from_a_site = table().with_columns(verdict=pl.lit(None, pl.String))
+    assert at_a_glance(from_a_site, seasons_table(), REQUEST.jd_from, (Kind.STATION,)) == lines
 
 
 def test_the_closest_pair_is_one_that_glare_does_not_hide() -> None:

@@ -1,4 +1,4 @@
-"""The timeline in a real browser: what it draws, tells, zooms and keeps, by pointer and by keyboard.
+"""The timeline in a real browser: what it draws, tells and keeps in the address.
 
 What it shows is held against the tables beside the page, read with polars, and against its own axis.
 """
@@ -16,23 +16,26 @@ import polars as pl
 import pytest
 
 from tests.report.conftest import Open
+from tests.report.timeline_reading import (
+    PLANETS,
+    address,
+    fact,
+    first_of_months,
+    focus,
+    marks,
+    press,
+    show,
+    span,
+    stamp,
+)
 from wanderers.report.folder import PAGE
 
 pytestmark = pytest.mark.filterwarnings("ignore::ResourceWarning")  # the driver's own sockets
-
-KEYS = {"left": "\ue012", "up": "\ue013", "right": "\ue014", "down": "\ue015", "home": "\ue011"}
-KEYS |= {"enter": "\ue007", "tab": "\ue004", "shift": "\ue008"}
-PLANETS = ["mercury", "venus", "mars", "jupiter", "saturn"]
 
 
 @pytest.fixture(scope="module")
 def events(half_year_report: Path) -> pl.DataFrame:
     return pl.read_parquet(half_year_report / "events.parquet")
-
-
-@pytest.fixture
-def page(open_file: Open, half_year_report: Path) -> Any:
-    return open_file(half_year_report / PAGE, "#at=timeline")
 
 
 def drawn(events: pl.DataFrame) -> pl.DataFrame:
@@ -43,56 +46,6 @@ def drawn(events: pl.DataFrame) -> pl.DataFrame:
     quasi = (pl.col("kind") == "appulse") & (pl.col("detail") == "quasi").fill_null(False)
     meeting = ((pl.col("kind") == "conjunction") | quasi) & pl.col("other").is_in(PLANETS)
     return events.filter(of_planets & (alone | inferior | meeting))
-
-
-def marks(page: Any) -> list[str]:
-    found: list[str] = page.execute_script(
-        "return [...document.querySelectorAll('#timeline .mark')].map((m) => m.getAttribute('aria-label'))"
-    )
-    return found
-
-
-def focus(page: Any, words: str) -> None:
-    script = (
-        "const all = [...document.querySelectorAll('#timeline .mark')];"
-        "all.find((m) => m.getAttribute('aria-label').includes(arguments[0])).focus()"
-    )
-    page.execute_script(script, words)
-
-
-def focused(page: Any) -> str:
-    label: str = page.execute_script("return document.activeElement.getAttribute('aria-label') ?? ''")
-    return label
-
-
-def fact(page: Any) -> str:
-    return str(page.find_element("css selector", "#timeline .fact").text)
-
-
-def press(page: Any, *names: str) -> None:
-    page.switch_to.active_element.send_keys(*(KEYS.get(name, name) for name in names))
-
-
-def show(page: Any, name: str) -> None:
-    page.find_element("css selector", f'#timeline [data-view="{name}"]').click()
-
-
-def span(page: Any) -> tuple[dt.date, dt.date]:
-    """Return the ends of what the timeline says it shows."""
-    first, last = re.findall(r"\d{4}-\d\d-\d\d", page.find_element("css selector", "#timeline .place").text)
-    return dt.date.fromisoformat(first), dt.date.fromisoformat(last)
-
-
-def length(page: Any) -> int:
-    first, last = span(page)
-    return (last - first).days
-
-
-def address(page: Any) -> str:
-    """Return what stands after "#", once the timeline has come to rest."""
-    page.execute_async_script("setTimeout(arguments[0], 300)")
-    kept: str = page.execute_script("return location.hash")
-    return kept
 
 
 @pytest.mark.parametrize(
@@ -124,16 +77,6 @@ def test_there_is_a_lane_a_planet_and_a_mark_an_event(
     assert len(told) == seasons.height + wanted.height
 
 
-def first_of_months(page: Any) -> list[float]:
-    """Return how far from the left the axis has the first of each month in view, January first."""
-    found: list[float] = page.execute_script(
-        "return [...document.querySelectorAll('#timeline .small')].filter((t) => t.textContent === '1')"
-        ".map((t) => t.getBoundingClientRect()).map((box) => box.left + box.width / 2)"
-    )
-    assert len(found) == 7
-    return found
-
-
 def test_marks_stand_where_the_axis_has_their_day(page: Any, events: pl.DataFrame) -> None:
     first, last = first_of_months(page)[1], first_of_months(page)[5]
     days = (dt.date(2027, 6, 1) - dt.date(2027, 2, 1)).days
@@ -161,13 +104,6 @@ def test_focusing_a_mark_tells_its_fact_and_leads_to_its_row(page: Any, events: 
     assert f"row={row['event_id']}" in address(page)
 
 
-def stamp(text: str) -> dt.datetime:
-    """Return the first instant told, UTC."""
-    found = re.search(r"(\d{4}-\d\d-\d\d \d\d:\d\d) UTC", text)
-    assert found, text
-    return dt.datetime.fromisoformat(f"{found[1]}+00:00")
-
-
 def test_an_address_with_a_row_opens_the_page_at_it(
     open_file: Open, half_year_report: Path, events: pl.DataFrame
 ) -> None:
@@ -188,114 +124,6 @@ def test_from_a_site_the_local_time_is_told(open_file: Open, site_report: Path) 
     assert dt.datetime.fromisoformat(f"{local[1]}+01:00") == stamp(told)
     focus(page, "Mars runs backwards")
     assert fact(page).count("2027-01-10") == 2
-
-
-def test_arrows_go_from_mark_to_mark_and_from_lane_to_lane(page: Any) -> None:
-    focus(page, "Mars runs backwards")
-    press(page, "right")
-    press(page, "right")
-    assert "Mars" in focused(page)
-    there = stamp(fact(page))
-    press(page, "left")
-    assert stamp(fact(page)) < there or "runs backwards" in focused(page)
-    focus(page, "Mars at opposition")
-    press(page, "down")
-    assert "Jupiter" in focused(page)
-    press(page, "up")
-    assert "Mars" in focused(page)
-    stops = page.execute_script(
-        "return document.querySelectorAll('#timeline .lanes [tabindex=\"0\"]').length"
-    )
-    assert stops == 1
-
-
-def test_every_mark_can_be_reached_by_arrows(page: Any) -> None:
-    page.execute_script("document.querySelector('#timeline .lanes [tabindex=\"0\"]').focus()")
-    seen = {focused(page)}
-    for _ in PLANETS:
-        press(page, "up")
-    for _ in PLANETS:
-        for way in ("left", "right"):
-            before = None
-            while before != (before := page.execute_script("return document.activeElement.outerHTML")):
-                press(page, way)
-                seen.add(focused(page))
-        press(page, "down")
-    assert seen == set(marks(page))
-
-
-def test_keys_zoom_and_move(page: Any) -> None:
-    whole = span(page)
-    focus(page, "Mars at opposition")
-    press(page, "+")
-    assert length(page) == pytest.approx((whole[1] - whole[0]).days / 2.0, abs=1)
-    assert focused(page).startswith("Mars at opposition")
-    before = span(page)
-    press(page, "shift", "right")
-    assert (span(page)[0] - before[0]).days == pytest.approx(length(page) / 4.0, abs=1)
-    press(page, "-")
-    press(page, "home")
-    assert span(page) == whole
-
-
-def test_buttons_zoom_and_move_as_far_as_the_span_reaches(page: Any) -> None:
-    whole = span(page)
-    assert whole == (dt.date(2027, 1, 1), dt.date(2027, 7, 1))
-    for _ in range(12):
-        show(page, "in")
-    assert length(page) == 10
-    first = span(page)[0]
-    show(page, "earlier")
-    assert (first - span(page)[0]).days == pytest.approx(5, abs=1)
-    for _ in range(60):
-        show(page, "later")
-    assert span(page)[1] == whole[1]
-    later = page.find_element("css selector", '#timeline [data-view="later"]')
-    assert later.get_attribute("aria-disabled") == "true"
-    show(page, "whole")
-    assert span(page) == whole
-
-
-def test_the_wheel_zooms_only_with_the_control_key(page: Any) -> None:
-    wheel = (
-        "const svg = document.querySelector('#timeline .lanes svg'); const box = svg.getBoundingClientRect();"
-        "const turned = new WheelEvent('wheel', { deltaY: -120, ctrlKey: arguments[0], cancelable: true,"
-        " clientX: box.left + box.width / 2, clientY: box.top + 30 });"
-        "svg.dispatchEvent(turned); return turned.defaultPrevented;"
-    )
-    before = length(page)
-    assert page.execute_script(wheel, False) is False
-    assert length(page) == before
-    assert page.execute_script(wheel, True) is True
-    assert length(page) < before
-
-
-def test_dragging_across_the_lanes_zooms_to_what_was_dragged_over(page: Any) -> None:
-    from selenium.webdriver import ActionChains
-
-    february, may = first_of_months(page)[1], first_of_months(page)[4]
-    lanes = page.find_element("css selector", "#timeline .lanes svg")
-    start = february - lanes.rect["x"] - lanes.rect["width"] / 2.0
-    drag = ActionChains(page).move_to_element_with_offset(lanes, round(start), 0).click_and_hold()
-    drag.move_by_offset(round(may - february), 5).release().perform()
-    first, last = span(page)
-    assert abs((first - dt.date(2027, 2, 1)).days) <= 1
-    assert abs((last - dt.date(2027, 5, 1)).days) <= 1
-
-
-def test_pointing_at_a_mark_tells_its_fact_and_a_click_keeps_it(page: Any) -> None:
-    from selenium.webdriver import ActionChains
-
-    shape = page.execute_script(
-        "return [...document.querySelectorAll('#timeline .mark')]"
-        ".find((m) => m.getAttribute('aria-label').startsWith('Mars at opposition')).querySelector('.shape')"
-    )
-    ActionChains(page).move_to_element(shape).perform()
-    assert "Mars at opposition" in fact(page)
-    ActionChains(page).click().perform()
-    assert focused(page).startswith("Mars at opposition")
-    ActionChains(page).move_to_element(page.find_element("css selector", "#timeline-title")).perform()
-    assert "Mars at opposition" in fact(page)
 
 
 def test_the_address_keeps_the_span_and_opens_it_again(open_file: Open, half_year_report: Path) -> None:

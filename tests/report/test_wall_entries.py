@@ -182,6 +182,8 @@ def test_an_occultation_is_claimed_for_the_site_only_where_it_happens_there() ->
              "local_contact4_local": "2027-06-18T01:52:10.000+10:00",
              "local_contact1_altitude_deg": 60.0, "local_contact4_altitude_deg": 50.0}  # fmt: skip
     assert looking(seen | times)[0].startswith("Moon hides Antares 00:59–01:52")
+    later = times | {"local_contact1_local": "2027-06-18T00:59:40.000+10:00"}
+    assert looking(seen | later)[0].startswith("Moon hides Antares 01:00–01:52")  # rounded, not cut
     set_by_then = times | {"local_contact4_altitude_deg": -2.0}
     assert looking(seen | set_by_then)[0].startswith("Moon hides Antares from 00:59")
     assert rank(seen | times) == 0

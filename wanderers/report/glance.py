@@ -46,28 +46,31 @@ def at_a_glance(
 
     Lines about kinds of events that were not asked for are left out.
     """
+    meetings = Kind.CONJUNCTION in kinds or Kind.APPULSE in kinds
+    seen = "verdict" in events.columns
     return (
         _turned_back(seasons, jd_from),
         *(_line(first.title, events.filter(first.rule)) for first in FIRSTS if first.kind in kinds),
-        *([_closest(events)] if Kind.CONJUNCTION in kinds or Kind.APPULSE in kinds else []),
-        *(_watchable(events) if "verdict" in events.columns else []),
+        *([_closest(events)] if meetings else []),
+        *(_watchable_pairs(events) if meetings and seen else []),
+        *(_stations(events) if seen else []),
     )
 
 
-def _watchable(events: pl.DataFrame) -> list[Glance]:
-    """Return the lines for the next sights and the closest pair that a site can watch."""
+def _watchable_pairs(events: pl.DataFrame) -> list[Glance]:
+    """Return the lines for the closest pairs that a site can watch."""
     seen = events.filter(pl.col("verdict") != Verdict.NOT_VISIBLE.value)
-    pairs = seen.filter(IS_MEETING, OTHER_IS_PLANET).sort("seen_separation_deg", "jd_tt")
-    stations = [
-        _line(f"Next station of {body.label}", events.filter(IS_STATION, pl.col("body") == body.value))
-        for body in PLANETS
-        if not events.filter(IS_STATION, pl.col("body") == body.value).is_empty()
-    ]
+    pairs = seen.filter(IS_MEETING, OTHER_IS_PLANET).sort("seen_separation_deg", "jd_tt", nulls_last=True)
     return [
         _line("Closest pair to watch from here", pairs.head(1)),
         _line("Closest two planets to watch from here", pairs.filter(IS_PLANET).head(1)),
-        *stations,
     ]
+
+
+def _stations(events: pl.DataFrame) -> list[Glance]:
+    """Return the lines for each planet's next station, with what a site sees of it."""
+    next_ones = ((body, events.filter(IS_STATION, pl.col("body") == body.value)) for body in PLANETS)
+    return [_line(f"Next station of {body.label}", own) for body, own in next_ones if not own.is_empty()]
 
 
 @dataclass(frozen=True, slots=True)
@@ -89,7 +92,7 @@ IS_MEETING: Final = pl.col("kind").is_in([Kind.CONJUNCTION, Kind.APPULSE])
 DARK: Final = pl.col("elongation_deg") - pl.col("separation_deg").fill_null(0.0) >= words.NEAR_SUN_DEG
 
 FIRSTS: Final = (
-    First("Next station", Kind.STATION, pl.col("kind") == Kind.STATION),
+    First("Next station", Kind.STATION, IS_STATION),
     First("Next opposition", Kind.OPPOSITION, pl.col("kind") == Kind.OPPOSITION),
     First("Next greatest elongation", Kind.GREATEST_ELONGATION, pl.col("kind") == Kind.GREATEST_ELONGATION),
     First("Next inferior conjunction", Kind.SOLAR_CONJUNCTION, IS_INFERIOR),

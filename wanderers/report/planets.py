@@ -12,6 +12,7 @@ from wanderers.ephemeris.bodies import INNER, PLANETS, Body
 from wanderers.events.kinds import Kind
 from wanderers.report import facts, words
 from wanderers.report.contents import Contents
+from wanderers.report.dossier.sources import address_in
 from wanderers.report.pictures import Picture
 
 EVENTS_AT_MOST: Final = 120
@@ -112,7 +113,7 @@ def _section(contents: Contents, body: Body, pictures: Sequence[Picture]) -> Pla
         seasons=tuple(
             replace(
                 season_sheet(season, contents.paths.get(season["season_id"]), paths.get(season["season_id"])),
-                dossier=_dossier(contents, season["season_id"]),
+                dossier=address_in(contents.study, season["season_id"]),
             )
             for season in rows.iter_rows(named=True)
         ),
@@ -120,11 +121,6 @@ def _section(contents: Contents, body: Body, pictures: Sequence[Picture]) -> Pla
         event_count=events.height,
         pictures=tuple(picture for picture in own if not picture.season_id),
     )
-
-
-def _dossier(contents: Contents, season_id: str) -> str:
-    """Return the address of a season's dossier from the page, empty where there is none."""
-    return f"seasons/{season_id}.html" if season_id in contents.study.tracks else ""
 
 
 def own_events(events: pl.DataFrame, body: Body) -> pl.DataFrame:

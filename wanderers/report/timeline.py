@@ -17,7 +17,8 @@ from wanderers.ephemeris.dates import datetime64_from_jd
 from wanderers.ephemeris.timescales import jd_utc_from_tt
 from wanderers.report import facts, words
 from wanderers.report.contents import Contents
-from wanderers.site.clock import HALF_MINUTE_DAYS, local_texts
+from wanderers.report.dossier.sources import address_in
+from wanderers.site.clock import local_dates_and_minutes
 from wanderers.site.places import Site
 from wanderers.site.zones import zone_named
 
@@ -31,7 +32,6 @@ class Stretch:
     """The time in which a planet runs backwards.
 
     Attributes:
-        season: its row in the season table.
         ends: from station to station, UTC in milliseconds since 1970.
         what: one sentence.
         utc: from when to when, to the minute.
@@ -39,7 +39,6 @@ class Stretch:
         dossier: address of its dossier from the page, empty where there is none.
     """
 
-    season: str
     ends: tuple[int, int]
     what: str
     utc: str
@@ -99,12 +98,11 @@ def _lane(contents: Contents, body: Body, seasons: pl.DataFrame) -> Lane:
     local = [_local_minutes(contents.request.site, seasons[f"{turn}_jd_tt"]) for turn in TURNS]
     stretches = tuple(
         Stretch(
-            season=row["season_id"],
             ends=(utc[0][number], utc[1][number]),
             what=_sentence(body, row),
             utc=_span(*(facts.minute(row[f"{turn}_utc"]) for turn in TURNS)),
             local=_span(local[0][number], local[1][number]),
-            dossier=_dossier(contents, row["season_id"]),
+            dossier=address_in(contents.study, row["season_id"]),
         )
         for number, row in enumerate(seasons.iter_rows(named=True))
     )
@@ -121,16 +119,11 @@ def _span(start: str, end: str) -> str:
     return f"{start} to {end}" if start and end else ""
 
 
-def _dossier(contents: Contents, season_id: str) -> str:
-    return f"seasons/{season_id}.html" if season_id in contents.study.tracks else ""
-
-
 def _local_minutes(site: Site | None, jd_tt: pl.Series) -> list[str]:
     """Return instants by the site's clock to the minute, ``2027-01-10 13:59``; empty without a site."""
     if site is None:
         return [""] * jd_tt.len()
-    texts = local_texts(zone_named(site.zone), jd_tt.to_numpy() + HALF_MINUTE_DAYS)
-    return [text[: text.rindex(":", 0, text.index("T") + 7)].replace("T", " ") for text in texts.to_list()]
+    return local_dates_and_minutes(zone_named(site.zone), jd_tt.to_numpy())[0].to_list()
 
 
 def _milliseconds(jd_tt: Any) -> list[int]:

@@ -47,6 +47,16 @@ def local_minutes(zone: Zone, jd_tt: Floats) -> pl.Series:
     return local_texts(zone, jd_tt + HALF_MINUTE_DAYS).str.extract(r"T(\d\d:\d\d)", 1)
 
 
+def local_dates_and_minutes(zone: Zone, jd_tt: Floats) -> tuple[pl.Series, pl.Series]:
+    """Return local dates with the time to the nearest minute, as 2027-01-10 18:32, and offsets, as +01:00.
+
+    Both are null where NaN.
+    """
+    texts = local_texts(zone, jd_tt + HALF_MINUTE_DAYS)
+    shown = texts.str.extract(r"^(.*T\d\d:\d\d)", 1).str.replace("T", " ", literal=True)
+    return shown, texts.str.extract(r"(.{6})$", 1)
+
+
 def _texts(instants: Instants) -> pl.Series:
     """Print instants to the millisecond, null for NaT."""
     years = instants.astype("datetime64[Y]").astype(np.int64) + 1970

@@ -204,14 +204,13 @@ def _set_far_sky(ax: Axes, time: Floats, longitude: Floats, style: Style) -> Non
     at = timeaxis.ticks(float(time[0]), float(time[-1]), division)
     ax.set_yticks(at, [text.replace("\n", " ") for text in timeaxis.tick_texts(at, division)])
     steps = np.array([0.1, 0.2, 0.5, 1.0, 2.0, 5.0, 10.0])
-    step = float(steps[np.argmax(np.ptp(longitude) / steps <= 10)])
-    low, high = sorted(ax.get_xlim())
-    ticks = np.arange(np.ceil(low / step), np.floor(high / step) + 1.0) * step
+    step = curves.round_step(float(np.ptp(longitude)), steps, 10)
+    high, low = ax.get_xlim()
+    ticks = curves.multiples(low, high, step)
     ax.set_xticks(ticks, [f"{value % 360.0:.{0 if step >= 1.0 else 1}f}°" for value in ticks.tolist()])
     ax.set_xlabel("direction on the far sky: ecliptic longitude (J2000), growing to the left, eastward")
     ax.set_ylabel("date (UTC), downward")
-    tidy(ax, style)
-    ax.spines[["top", "right"]].set_visible(True)
+    tidy(ax, style, framed=True)
 
 
 def _draw_orbits(ax: Axes, scene: Scene, style: Style) -> list[Floats]:

@@ -126,6 +126,17 @@ def time_of(track: pl.DataFrame) -> Floats:
     return utc_days(track["jd_tt"].to_numpy())
 
 
+def round_step(extent: float, steps: Floats, most: int) -> float:
+    """Return the smallest step that divides an extent into no more than ``most``; else the largest."""
+    enough = extent / steps <= most
+    return float(steps[int(np.argmax(enough))]) if enough.any() else float(steps[-1])
+
+
+def multiples(low: float, high: float, step: float) -> Floats:
+    """Return the multiples of a step between two limits, shape (k,)."""
+    return np.asarray(np.arange(np.ceil(low / step), np.floor(high / step) + 1.0) * step)
+
+
 def column(table: pl.DataFrame, name: str) -> Floats:
     """Return a column as floats, NaN for null, shape (n,)."""
     return np.asarray(table[name].cast(pl.Float64).fill_null(float("nan")).to_numpy(), dtype=np.float64)

@@ -263,7 +263,7 @@ def _set_coordinates(ax: Axes, sky: SkyField, style: Style) -> None:
     ax.set_yticks(degrees, [angle_text(value) for value in degrees.tolist()])
     ax.set_xlabel("right ascension (hours and minutes, J2000), growing to the left, eastward")
     ax.set_ylabel("declination (degrees, J2000)")
-    _frame(ax, style)
+    tidy(ax, style, framed=True)
 
 
 def _degree_axes(ax: Axes, times: int, style: Style) -> None:
@@ -284,19 +284,12 @@ def _degree_axes(ax: Axes, times: int, style: Style) -> None:
         fontsize=style.type_pt,
         weight="bold",
     )
-    _frame(ax, style)
-
-
-def _frame(ax: Axes, style: Style) -> None:
-    tidy(ax, style)
-    ax.spines[["top", "right"]].set_visible(True)
+    tidy(ax, style, framed=True)
 
 
 def _round_ticks(low: float, high: float, steps: Floats, most: int) -> Floats:
     """Return round values between two limits: of the steps the smallest that gives no more than ``most``."""
-    enough = (high - low) / steps <= most
-    step = float(steps[int(np.argmax(enough))]) if enough.any() else float(steps[-1])
-    return np.asarray(np.arange(np.ceil(low / step), np.floor(high / step) + 1.0) * step)
+    return curves.multiples(low, high, curves.round_step(high - low, steps, most))
 
 
 def ra_text(ra_deg: float) -> str:

@@ -211,9 +211,9 @@ def axes_at(figure: Figure, left: float, right: float, bottom: float, top: float
     return figure.add_axes(box)
 
 
-def tidy(ax: Axes, style: Style, *, grid: str = "both") -> None:
-    """Give axes the common look: two spines, a quiet grid beneath everything."""
-    ax.spines[["top", "right"]].set_visible(False)
+def tidy(ax: Axes, style: Style, *, grid: str = "both", framed: bool = False) -> None:
+    """Give axes the common look: two spines, all four if framed, and a quiet grid beneath everything."""
+    ax.spines[["top", "right"]].set_visible(framed)
     ax.grid(True, axis=grid, color=style.rule, linewidth=0.6)  # type: ignore[arg-type]
     ax.set_axisbelow(True)
 

@@ -16,7 +16,6 @@ TURNS: Final = (("station_retrograde", "at the first turn"), ("station_direct", 
 MIDDLES: Final = {"opposition": "opposition", "inferior_conjunction": "inferior conjunction"}
 HOURS_LIMIT: Final = 48.0
 """Longest difference of time that is told in hours."""
-LIGHT_HOURS_FROM_MINUTES: Final = 90.0
 SPOKEN_DIGITS: Final = 3
 HARDLY: Final = 1.15
 """Ratio below which two brightnesses or sizes are not told apart."""
@@ -89,22 +88,9 @@ def light_minutes(au: float) -> float:
     return au * AU_KM / SPEED_OF_LIGHT_KM_PER_S / 60.0
 
 
-def spoken_light_time(au: float) -> str:
-    """Return how long light takes, in minutes or hours: ``5.6 light-minutes``."""
-    minutes = light_minutes(au)
-    if minutes < LIGHT_HOURS_FROM_MINUTES:
-        return f"{minutes:.1f} light-minutes"
-    return f"{minutes / 60.0:.1f} light-hours"
-
-
 def times_brighter(fainter: float, brighter: float) -> float:
     """Return the ratio of two brightnesses by Pogson's scale, 10^(0.4 dm)."""
     return math.pow(10.0, 0.4 * (fainter - brighter))
-
-
-def spoken_ratio(ratio: float) -> str:
-    """Return a ratio to what it can bear: ``2.3 times``, ``12 times``."""
-    return f"{ratio:.1f} times" if ratio < 9.95 else f"{ratio:.0f} times"
 
 
 def spoken_speed(deg_per_day: float) -> str:
@@ -169,7 +155,7 @@ def _distance(rows: SeasonRows) -> Iterator[Figure]:
     km, minutes = million_km(closest), light_minutes(closest)
     yield Figure("In kilometres", spoken_million_km(closest), km, "million km", origin, f"times {AU_KM} km")
     how = f"times {AU_KM} km, divided by {SPEED_OF_LIGHT_KM_PER_S} km/s and by 60"
-    yield Figure("In light's time", spoken_light_time(closest), minutes, "minutes", origin, how)
+    yield Figure("In light's time", facts.light_time(closest), minutes, "minutes", origin, how)
     hours = after_middle_hours(rows, CLOSEST)
     if hours is not None:
         both = (rows.in_marks(CLOSEST, "jd_tt"), rows.in_marks("middle", "jd_tt"))
@@ -194,7 +180,7 @@ def _light(rows: SeasonRows) -> Iterator[Figure]:
         turn = rows.in_marks(mark, "magnitude")
         yield Figure(f"Brightness {where}", f"magnitude {facts.signed(at, 1)}", at, "magnitude", (turn,))
         ratio = times_brighter(at, peak)
-        said = "hardly brighter" if ratio < HARDLY else f"about {spoken_ratio(ratio)} as bright"
+        said = "hardly brighter" if ratio < HARDLY else f"about {facts.times_brighter(at - peak)} as bright"
         yield Figure(
             f"At its brightest, against {where.removeprefix('at ')}",
             said,

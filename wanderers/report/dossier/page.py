@@ -28,7 +28,7 @@ from wanderers.report.dossier.sentences import (
 from wanderers.report.dossier.sources import FILES, SEASONS_FILE, SeasonRows
 from wanderers.report.pictures import Picture
 from wanderers.report.planets import MIDDLE_CAUTION
-from wanderers.site.clock import HALF_MINUTE_DAYS, local_texts
+from wanderers.site.clock import local_dates_and_minutes
 from wanderers.site.zones import Zone, zone_data_version
 
 MARK_NAMES: Final = {
@@ -212,8 +212,8 @@ def moments(rows: SeasonRows, zone: Zone | None) -> tuple[Moment, ...]:
     jd = np.array([row["jd_tt"] for row in rows.marks.values()])
     local = [""] * jd.size
     if zone is not None:
-        texts = local_texts(zone, jd + HALF_MINUTE_DAYS).to_list()
-        local = [f"{text[:16].replace('T', ' ')} {text[-6:]}" for text in texts]
+        shown = zip(*local_dates_and_minutes(zone, jd), strict=True)
+        local = [f"{minute} {offset}" for minute, offset in shown]
     names = MARK_NAMES | {"middle": middle_word(rows).capitalize()}
     numbers = {mark: str(number) for number, mark in enumerate(schema.SEASON_MARKS, 1)}
     return tuple(

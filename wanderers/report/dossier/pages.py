@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import base64
-import hashlib
 from collections.abc import Mapping, Sequence
 from dataclasses import fields, replace
 from pathlib import Path
@@ -17,9 +15,9 @@ from wanderers.report import facts
 from wanderers.report.charts import above, season
 from wanderers.report.contents import Contents
 from wanderers.report.dossier.page import Dossier, dossier_of
-from wanderers.report.dossier.sources import FILES, FOLDER, season_rows
+from wanderers.report.dossier.sources import FILES, FOLDER, address, season_rows
 from wanderers.report.pictures import Job, Picture
-from wanderers.report.render import environment, packaged
+from wanderers.report.render import environment, packaged, policy_hash
 from wanderers.site.zones import Zone
 
 TEMPLATE: Final = "dossier.html.j2"
@@ -58,13 +56,8 @@ def write_dossiers(
         own = {kind: drawn.get(stem) for kind, stem in stems(row).items()}
         shown = {kind: _with_svg(picture, folder) for kind, picture in own.items() if picture is not None}
         page = dossier_of(season_rows(contents.study, row), shown, contents.kernel, zone)
-        (folder / FOLDER / file_name(row["season_id"])).write_text(rendered(page), encoding="utf-8")
+        (folder / address(row["season_id"])).write_text(rendered(page), encoding="utf-8")
     return tuple((file, holds) for file, _, holds in FILES)
-
-
-def file_name(season_id: str) -> str:
-    """Return the name of a dossier within its folder."""
-    return f"{season_id}.html"
 
 
 def stems(row: Mapping[str, Any]) -> dict[str, str]:
@@ -76,7 +69,6 @@ def stems(row: Mapping[str, Any]) -> dict[str, str]:
 def rendered(page: Dossier) -> str:
     """Return a dossier as HTML that holds everything it needs."""
     program = f"\n{packaged('dossier.js')}"
-    digest = base64.b64encode(hashlib.sha256(program.encode()).digest()).decode()
     return (
         environment()
         .get_template(TEMPLATE)
@@ -84,7 +76,7 @@ def rendered(page: Dossier) -> str:
             {name.name: getattr(page, name.name) for name in fields(page)},
             style=Markup(packaged("page.css") + packaged("dossier.css")),
             program=Markup(program),
-            program_hash=f"sha256-{digest}",
+            program_hash=policy_hash(program),
         )
     )
 

@@ -158,7 +158,7 @@ def _closest(rows: SeasonRows) -> Iterator[Sentence]:
     after = figures.spoken_after_middle(rows, CLOSEST)
     yield Sentence(
         f"Least distance comes on {facts.spoken_day(when)}{f', {after}' if after else ''}: "
-        f"{figures.spoken_million_km(au)}, {figures.spoken_light_time(au)} away.",
+        f"{figures.spoken_million_km(au)}, {facts.light_time(au)} away.",
         (
             rows.in_marks(CLOSEST, "utc"),
             rows.in_marks(CLOSEST, "jd_tt"),
@@ -176,10 +176,9 @@ def _bright(rows: SeasonRows) -> Iterator[Sentence]:
     at_edge = figures.is_at_edge(rows, BRIGHTEST)
     around = "Within the season it is brightest at its very edge, on" if at_edge else "It is brightest about"
     text = f"{around} {facts.spoken_day(when)}, at magnitude {facts.signed(peak, 1)}"
-    ratio = None if turn is None else figures.times_brighter(turn, peak)
-    if ratio is not None and ratio >= figures.HARDLY:
-        text += f", about {figures.spoken_ratio(ratio)} as bright as at its first turn"
-    elif ratio is not None:
+    if turn is not None and figures.times_brighter(turn, peak) >= figures.HARDLY:
+        text += f", about {facts.times_brighter(turn - peak)} as bright as at its first turn"
+    elif turn is not None:
         text += ", hardly brighter than at its first turn"
     yield Sentence(
         f"{text}.",

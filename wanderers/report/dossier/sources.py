@@ -26,6 +26,16 @@ FILES: Final = (
 """Files beside the dossiers, the table of the study that each holds, and what it is."""
 
 
+def address(season_id: str) -> str:
+    """Return where a season's dossier lies, from the report's folder and its page."""
+    return f"{FOLDER}/{season_id}.html"
+
+
+def address_in(study: Study, season_id: str) -> str:
+    """Return the address of a season's dossier, empty where it has none."""
+    return address(season_id) if season_id in study.tracks else ""
+
+
 @dataclass(frozen=True, slots=True)
 class Origin:
     """The table row and column that a figure was read from.

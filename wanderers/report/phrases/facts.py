@@ -62,7 +62,7 @@ def name_form(name: str, words: Language, form: str) -> str:
     """Return a body's or star's name in a grammatical form that the language's file defines."""
     known = words.table("names").get(name.lower())
     if known is None:
-        return words.phrase("forms", "name", form).format(name=_plain(name))
+        return words.phrase("forms", "name", form).format(name=label(name))
     return str(known.get(form) or words.phrase("forms", "name", form).format(name=known["name"]))
 
 
@@ -71,10 +71,6 @@ def constellation_form(abbreviation: str, words: Language, form: str) -> str:
     known = words.table("constellations").get(abbreviation, {})
     default = words.phrase("forms", "constellation", form)
     return str(known.get(form) or default.format(name=known.get("name") or full_name(abbreviation)))
-
-
-def _plain(name: str) -> str:
-    return label(name)
 
 
 def _body(event: Row, words: Language, form: str) -> str | None:
@@ -111,7 +107,7 @@ def _gap(manner: str) -> Fact:
     return text
 
 
-def _figure(column: str, printed: Callable[[float, Language], str]) -> Fact:
+def figure(column: str, printed: Callable[[float, Language], str]) -> Fact:
     """Return a fact that prints one column, unknown where it is null."""
     return lambda event, words: None if event[column] is None else printed(event[column], words)
 
@@ -187,13 +183,13 @@ SOURCES: Final[dict[str, Fact]] = {
     "side_brief": _said("brief_sides", "pair_side"),
     "frame": _said("frames", "frame"),
     "frame_brief": _said("brief_frames", "frame"),
-    "elongation": _figure("elongation_deg", figures.whole_degrees),
-    "elongation_fine": _figure("elongation_deg", figures.fine_degrees),
+    "elongation": figure("elongation_deg", figures.whole_degrees),
+    "elongation_fine": figure("elongation_deg", figures.fine_degrees),
     "sky": _sky,
     "magnitude": _magnitude,
-    "km": _figure("distance_au", figures.kilometres),
-    "million_km": _figure("distance_au", figures.million_kilometres),
-    "au": _figure("distance_au", figures.astronomical_units),
+    "km": figure("distance_au", figures.kilometres),
+    "million_km": figure("distance_au", figures.million_kilometres),
+    "au": figure("distance_au", figures.astronomical_units),
     "geocentric": _geocentric,
     "contact_first": _contact(0),
     "contact_last": _contact(1),

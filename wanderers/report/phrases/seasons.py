@@ -2,11 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from typing import Final
 
 from wanderers.report.phrases import figures
-from wanderers.report.phrases.facts import Fact, Facts, constellation_form
+from wanderers.report.phrases.facts import Fact, Facts, constellation_form, figure
 from wanderers.report.phrases.language import LENGTHS, Language
 from wanderers.report.phrases.moments import (
     NEAR_MIDNIGHT_S,
@@ -69,10 +68,6 @@ def _days(season: Row, words: Language) -> str | None:
     return None if value is None else words.counted("day", words.number(value, 0))
 
 
-def _figure(column: str, printed: Callable[[float, Language], str]) -> Fact:
-    return lambda season, words: None if season[column] is None else printed(season[column], words)
-
-
 def _constellations(season: Row, words: Language) -> str | None:
     """Return where the planet moves back."""
     if not season["constellations"]:
@@ -93,7 +88,7 @@ SOURCES: Final[dict[str, Fact]] = {
     "middle": _date("middle_utc", "day"),
     "middle_date": _date("middle_utc", "full"),
     "days": _days,
-    "arc": _figure("arc_deg", figures.fine_degrees),
+    "arc": figure("arc_deg", figures.fine_degrees),
     "constellations_in": _constellations,
     "frame": _frame("frames"),
     "frame_brief": _frame("brief_frames"),

@@ -57,11 +57,6 @@ def _table(event: Row) -> str | None:
     return "watchable"
 
 
-def best_moment(event: Row) -> Moment | None:
-    """Return the best moment to look, by the site's clock."""
-    return _local_moment(event, "best_local")
-
-
 def _local_moment(event: Row, column: str) -> Moment | None:
     text = event.get(column)
     return None if text is None else read_moment(_OFFSET.sub(NOTHING, text), is_local=True)
@@ -145,7 +140,7 @@ def reason_text(given: str, words: Language) -> str | None:
 
 
 def _reason_part(given: str, words: Language) -> str | None:
-    for pattern, template in _reasons(words.code, tuple(words.table("reasons").items())):
+    for pattern, template in _reasons(tuple(words.table("reasons").items())):
         match = pattern.fullmatch(given)
         if match is None:
             continue
@@ -162,8 +157,8 @@ def _reason_part(given: str, words: Language) -> str | None:
 
 
 @functools.cache
-def _reasons(code: str, rows: tuple[tuple[str, str], ...]) -> tuple[tuple[re.Pattern[str], str], ...]:
-    """Return patterns of reasons, and what the language of that name says for each."""
+def _reasons(rows: tuple[tuple[str, str], ...]) -> tuple[tuple[re.Pattern[str], str], ...]:
+    """Return patterns of reasons, and what a language says for each."""
     return tuple((re.compile(_FIELD.sub(_group, re.escape(key))), template) for key, template in rows)
 
 

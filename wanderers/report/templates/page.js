@@ -8,6 +8,7 @@ const ROWS_ON_PAPER = 3000;
 const ROWS_PREPARED = 2000; // at a time, for the search
 const SHOWN_ROWS = "#table tbody tr";
 const MANY_FOR_A_CALENDAR = 1000;
+const DAY = 86400000; // milliseconds
 const TICKS = ["body", "kind", "verdict", "without"];
 const FIELDS = ["from", "to", "text", "separation", "elongation", "magnitude"];
 
@@ -37,7 +38,7 @@ for (const row of allRows) time[row] = row === 0 ? data.utc.start : time[row - 1
 const lag = reader(data.lag);
 cell.utc = (row) => `${iso(time[row])}Z`;
 cell.tt = (row) => iso(time[row] + lag(row));
-cell.jd_tt = (row) => ((time[row] + lag(row)) / 86400000 + 2440587.5).toFixed(8);
+cell.jd_tt = (row) => ((time[row] + lag(row)) / DAY + 2440587.5).toFixed(8);
 
 /** Prints milliseconds since 1970 as ISO 8601; years beyond 0 to 9999 get a sign and no idle zeros. */
 function iso(milliseconds) {
@@ -56,6 +57,9 @@ function instant(text) {
   if (date.getUTCMonth() !== month - 1 || date.getUTCDate() !== day || hour > 23 || minute > 59) return NaN;
   return date.getTime() + ((hour * 60 + minute) * 60 + second) * 1000;
 }
+
+/** Returns a number as people write it, decimal comma and true minus sign allowed; NaN if it is none. */
+const numeric = (text) => Number(text.replace(",", ".").replace("\u2212", "-"));
 
 const searchTexts = new Array(rowCount);
 
@@ -91,12 +95,13 @@ function seen(row) {
 }
 
 const named = (name) => data.designations[name] ?? (name === name.toLowerCase() ? name[0].toUpperCase() + name.slice(1) : name);
-const clock = (local) => minute(local.slice(0, 19)).slice(-5);
+const clock = (local) => minute(local.replace(/[+-]\d\d:\d\d$/, "")).slice(-5);
+const dayOf = (text) => text.slice(0, text.indexOf("T"));
 
 /** Returns a local date with its weekday, as "Fri 2027-03-05". */
 function dated(local) {
-  const day = local.slice(0, local.indexOf("T"));
-  const weekday = new Date(`${day}T00:00:00Z`).toLocaleDateString("en", { weekday: "short", timeZone: "UTC" });
+  const day = dayOf(local);
+  const weekday = new Date(instant(day)).toLocaleDateString("en", { weekday: "short", timeZone: "UTC" });
   return `${weekday} ${day}`;
 }
 
@@ -126,7 +131,7 @@ const sortKeys = {
 /** Returns the filters in force, each with the words that name it and a test of a row. */
 function filters() {
   const limit = (field, column, fits, words) => {
-    const bound = Number(state[field].replace(",", ".").replace("\u2212", "-"));
+    const bound = numeric(state[field]);
     if (state[field] === "" || Number.isNaN(bound)) return null;
     return { words: `${words} ${state[field]}`, test: (row) => column(row) !== null && fits(column(row), bound) };
   };
@@ -206,7 +211,8 @@ function minute(utc) {
 }
 
 /** Prints the instant of a row by the site's clock, to the minute as in UTC. */
-const localMinute = (row) => minute(`${cell.local_date(row)}T${cell.local_time(row)}`);
+const localTime = (row) => `${cell.local_date(row)}T${cell.local_time(row)}`;
+const localMinute = (row) => minute(localTime(row));
 
 /** Prints an apparent size: arcseconds, large ones in arcminutes. */
 function size(arcsec) {
@@ -366,9 +372,9 @@ function withLook(address) {
 
 /** Marks the fields whose text is no date or number; such a field filters nothing. */
 function markBadFields() {
-  const isNumber = (text) => !Number.isNaN(Number(text.replace(",", ".").replace("\u2212", "-")));
   for (const field of FIELDS.filter((name) => name !== "text")) {
-    const good = state[field] === "" || (field === "from" || field === "to" ? !Number.isNaN(instant(state[field])) : isNumber(state[field]));
+    const read = field === "from" || field === "to" ? instant : numeric;
+    const good = state[field] === "" || !Number.isNaN(read(state[field]));
     find(`input[name="${field}"]`).setAttribute("aria-invalid", String(!good));
   }
 }

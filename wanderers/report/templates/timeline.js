@@ -6,7 +6,6 @@
   const { lanes, span, frame } = data.timeline;
   if (!lanes.length) return;
 
-  const DAY = 86400000;
   const YEAR = 365.25 * DAY;
   const SHORTEST = 10 * DAY;
   const [LANE, TOP, AXIS, GUTTER, SIDE] = [38, 10, 46, 76, 24]; // dots
@@ -190,7 +189,7 @@
     return { small: small.filter(([at]) => at >= view.from && at <= view.to), large: large.filter(([start, end]) => end > view.from && start < view.to) };
   }
 
-  const yearText = (year) => String(year).replace("-", "\u2212");
+  const yearText = (year) => fixed(year, 0);
 
   function drawnTicks() {
     const foot = TOP + LANE * lanes.length;
@@ -207,7 +206,7 @@
 
   // ---- Words beside the drawing ------------------------------------------------------------------------
 
-  const dayText = (instant) => iso(instant).replace(/T.*/, "");
+  const dayText = (instant) => dayOf(iso(instant));
 
   /** Tells which span is in view, and what has no room in it. */
   function say(visible) {
@@ -225,7 +224,7 @@
       return [["strong", `${told}.`], ["span", `${when} UTC`], ["span", local && `${local} local`], ["span", lanes[mark.lane].note, "note"]];
     }
     const { row } = mark;
-    const local = data.site ? `${dated(`${cell.local_date(row)}T`)} ${localMinute(row).slice(-5)} local` : "";
+    const local = data.site ? `${dated(localTime(row))} ${clock(localTime(row))} local` : "";
     const best = data.site && watch(row) ? `Watch ${watch(row)}.` : "";
     const sunward = fixed(cell.elongation_deg(row), 0, "° from the Sun");
     const figures = [constellation(row) && `in ${constellation(row)}`, sunward].filter(Boolean).join(", ");

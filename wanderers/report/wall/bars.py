@@ -12,7 +12,7 @@ from matplotlib.colors import to_hex, to_rgb
 from wanderers.ephemeris.bodies import NAKED_EYE_PLANETS, Body
 from wanderers.report.charts.style import DASHES, LIGHT
 from wanderers.report.wall import names
-from wanderers.report.wall.entries import Stretch, planet_name
+from wanderers.report.wall.entries import Stretch
 from wanderers.report.wall.layout import Box, Grid, Sheet
 from wanderers.report.wall.text import width_pt
 
@@ -90,7 +90,7 @@ def draw_bar(sheet: Sheet, piece: Piece, bottom: float, within: tuple[float, flo
     left = box.left + (TIP if piece.starts else 0.0) + PAD
     right = box.right - (TIP if piece.ends else 0.0) - PAD
     baseline = bottom + 0.5 * (HEIGHT - 0.73 * TYPE)
-    planet = planet_name(piece.stretch.body)
+    planet = piece.stretch.body.label
     for words in (names.RETROGRADE.format(planet=planet), planet):
         wide = width_pt(words, TYPE)
         if wide <= right - left:

@@ -16,7 +16,6 @@ from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.timescales import jd_utc_from_tt
 from wanderers.events.kinds import Kind
 from wanderers.report import words
-from wanderers.report.names import label
 from wanderers.report.wall import importance, names, phrases
 from wanderers.site.clock import local_texts
 from wanderers.site.zones import UNIX_EPOCH_JD, UNIX_EPOCH_ORDINAL, Zone
@@ -156,11 +155,11 @@ def _timed(
     clocks = local_texts(zone, events["jd_tt"].to_numpy())
     for row, instant in zip(events.iter_rows(named=True), clocks, strict=True):
         state = _state(row)
-        day, clock = _day_and_clock(row["best_local"] if state is State.WATCHED else instant)
+        day, clock = phrases.day_and_clock(row["best_local"] if state is State.WATCHED else instant)
         # Compared as texts: years that ``date`` does not know carry a sign, which sorts before digits.
         if not first_day.isoformat() <= day < end_day.isoformat():
             continue
-        happens, _ = _day_and_clock(instant)
+        happens, _ = phrases.day_and_clock(instant)
         yield row | {
             "day": dt.date.fromisoformat(day),
             "minute": 60 * int(clock[:2]) + int(clock[3:]),
@@ -168,12 +167,6 @@ def _timed(
             "state": state,
             "happens": "" if happens == day or row["kind"] in MEETINGS else happens,
         }
-
-
-def _day_and_clock(local: str) -> tuple[str, str]:
-    """Return the date and the minute of a local instant, ISO 8601 with its offset; rounded within the day."""
-    day, clock = words.minute(local[: -len("+01:00")]).split(" ")
-    return day, clock
 
 
 def _state(row: words.Event) -> State:
@@ -307,8 +300,3 @@ def _local_days(jd_tt: pl.Series, zone: Zone) -> list[float]:
     jd = jd_utc_from_tt(jd_tt.fill_null(np.nan).to_numpy())
     days = jd - UNIX_EPOCH_JD + UNIX_EPOCH_ORDINAL + zone.offset_s(jd) / 86_400.0
     return [float(day) for day in days]
-
-
-def planet_name(body: Body) -> str:
-    """Return a planet's name as it is printed."""
-    return label(body.value)

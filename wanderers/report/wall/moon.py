@@ -11,7 +11,6 @@ from wanderers.report.wall.layout import Sheet
 DARK: Final = "#2b2b2b"
 LIT: Final = "#ffffff"
 NAMES: Final = ("New Moon", "First quarter", "Full Moon", "Last quarter")
-SHORT_NAMES: Final = ("New", "First q.", "Full", "Last q.")
 
 
 def draw_moon(sheet: Sheet, x: float, y: float, radius: float, phase: int, *, southern: bool) -> None:

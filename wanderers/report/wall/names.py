@@ -4,11 +4,10 @@ from __future__ import annotations
 
 from typing import Final
 
-MONTHS: Final = (
-    "January", "February", "March", "April", "May", "June",
-    "July", "August", "September", "October", "November", "December",
-)  # fmt: skip
-WEEKDAYS: Final = ("Monday", "Tuesday", "Wednesday", "Thursday", "Friday", "Saturday", "Sunday")
+from wanderers.report import facts, site_words
+
+MONTHS: Final = facts.MONTHS
+WEEKDAYS: Final = site_words.WEEKDAYS
 WEEKDAYS_SHORT: Final = ("Mo", "Tu", "We", "Th", "Fr", "Sa", "Su")
 WEEK: Final = "week"
 MORE: Final = "+{count} more in the table"

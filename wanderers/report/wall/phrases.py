@@ -8,13 +8,13 @@ from typing import Final
 from wanderers.constants import AU_KM
 from wanderers.ephemeris.constellations import full_name
 from wanderers.events.kinds import Kind
+from wanderers.report import facts
 from wanderers.report.names import label
-from wanderers.report.words import FRAME_LABELS, Event, gathered_names
+from wanderers.report.words import FRAME_LABELS, Event, gathered_names, minute
 from wanderers.site import compass
 
 Wordings = tuple[str, ...]
 LETTERS: Final = dict(zip(compass.POINTS, compass.LETTERS, strict=True))
-MINUS: Final = "\N{MINUS SIGN}"
 AIDED: Final = frozenset({"binoculars", "telescope"})
 HIDING_DEG: Final = 0.5
 """Farther away than this at the best moment, the Moon is no longer said to hide anything."""
@@ -74,10 +74,16 @@ def misses(event: Event) -> bool:
 def _between(event: Event) -> str:
     """Return when it is hidden, of those contacts that happen above the horizon."""
     up = {n: (event.get(f"local_contact{n}_altitude_deg") or 0.0) > 0.0 for n in (1, 4)}
-    at = {n: str(event[f"local_contact{n}_local"])[11:16] for n in (1, 4) if up[n]}
+    at = {n: day_and_clock(event[f"local_contact{n}_local"])[1] for n in (1, 4) if up[n]}
     if len(at) == 2:
         return f" {at[1]}–{at[4]}"
     return f" from {at[1]}" if 1 in at else f" until {at[4]}" if 4 in at else ""
+
+
+def day_and_clock(local: str) -> tuple[str, str]:
+    """Return the date and the minute of a local instant, ISO 8601 with its offset; rounded within the day."""
+    day, clock = minute(local[: -len("+01:00")]).split(" ")
+    return day, clock
 
 
 def watched(event: Event) -> bool:
@@ -166,7 +172,7 @@ def _distance_extremum(event: Event) -> Wordings:
 def _brilliancy(event: Event) -> Wordings:
     if event["magnitude"] is None:
         return (f"{_body(event)} at greatest brilliancy",)
-    magnitude = f"{event['magnitude']:.1f}".replace("-", MINUS)
+    magnitude = facts.signed(event["magnitude"], 1)
     return (f"{_body(event)} at greatest brilliancy, magnitude {magnitude}", f"{_body(event)} brightest")
 
 

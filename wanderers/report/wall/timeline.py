@@ -13,7 +13,7 @@ from wanderers.report.charts.style import LIGHT
 from wanderers.report.wall import names
 from wanderers.report.wall.bars import PAD, TIP, draw_tips, tint
 from wanderers.report.wall.edition import Edition
-from wanderers.report.wall.entries import Stretch, planet_name
+from wanderers.report.wall.entries import Stretch
 from wanderers.report.wall.layout import Box, Sheet
 from wanderers.report.wall.text import width_pt
 
@@ -64,7 +64,7 @@ def draw_timeline(sheet: Sheet, stretches: Sequence[Stretch], year: int, edition
     for index, body in enumerate(bodies):
         top = rows.top - ROW * index
         row = Box(rows.left, top - ROW, rows.right, top)
-        sheet.text(row.left, row.bottom + 3.4, planet_name(body), 7.0, bold=True, ink=LIGHT.ink)
+        sheet.text(row.left, row.bottom + 3.4, body.label, 7.0, bold=True, ink=LIGHT.ink)
         for stretch in (s for s in stretches if s.body is body):
             _draw_stretch(sheet, axis, row, stretch)
 

@@ -42,7 +42,7 @@ def year_page(year: int, wall: Wall, edition: Edition) -> Sheet:
     sheet = Sheet(edition.paper)
     top = furniture.draw_head(sheet, f"{year} at a glance", edition)
     chosen = [_headlines(month, wall, edition) for month in _months(year)]
-    notes = _notes(year, [entry for month in chosen for entry in month], wall, edition, sheet.body.width)
+    notes = _notes(year, [entry for month in chosen for entry in month], edition, sheet.body.width)
     base = sheet.body.bottom + furniture.small_height(notes)
     furniture.draw_small(sheet, notes, base, LIGHT.quiet_ink)
     stretches = [s for s in wall.stretches if s.end > _start(year) and s.start < _start(year + 1)]
@@ -82,7 +82,7 @@ def _headlines(month: dt.date, wall: Wall, edition: Edition) -> list[Entry]:
     ]
 
 
-def _notes(year: int, entries: Sequence[Entry], wall: Wall, edition: Edition, width: float) -> list[str]:
+def _notes(year: int, entries: Sequence[Entry], edition: Edition, width: float) -> list[str]:
     """Return the small lines below: what the signs mean, cautions, clock and source."""
     needs = furniture.Needs(
         near_sun=any(entry.near_sun and not entry.at_the_sun for entry in entries),
