@@ -49,6 +49,30 @@ def write_atomically(path: Path, write: Callable[[BinaryIO], None]) -> None:
         temporary.unlink(missing_ok=True)
 
 
+def write_bytes_atomically(path: Path, content: bytes) -> None:
+    """Write finished content under a file's name as :func:`write_atomically` does.
+
+    Raises:
+        OSError: the file cannot be written.
+    """
+
+    def write(file: BinaryIO) -> None:
+        file.write(content)
+
+    write_atomically(path, write)
+
+
+def write_output(path: Path, content: bytes) -> None:
+    """Write finished content where a user wants it; folders above it that are missing are made.
+
+    Raises:
+        OutputError: it cannot be written.
+    """
+    with reported_as_output_error(path):
+        path.parent.mkdir(parents=True, exist_ok=True)
+        write_bytes_atomically(path, content)
+
+
 def require_writable(path: Path, *, folder: bool = False) -> None:
     """Make sure, before long work starts, that a file or a folder can be written.
 

@@ -1,72 +1,28 @@
-"""Tracks on disk: built once, kept, checked when read, and never trusted blindly."""
+"""Tracks on disk: built once, kept, and the same from any executor."""
 
 from __future__ import annotations
 
 import multiprocessing
-import pickle
 import sys
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 from concurrent.futures import Executor, Future, ProcessPoolExecutor, ThreadPoolExecutor
-from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
 import pytest
 
+from tests.ephemeris.small_store import FIRST, SEAM_JD, SECOND, Told, answers, block_files
+from wanderers import seals
 from wanderers.arrays import Floats
 from wanderers.ephemeris import store as store_module
 from wanderers.ephemeris.blocks import block_start_jd
 from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.kernels import Kernel, inspect_kernel
 from wanderers.ephemeris.store import TrackStore
-from wanderers.ephemeris.tracks import POSITION, ROTATION
+from wanderers.ephemeris.tracks import POSITION
 
-FIRST, SECOND = 17, 18
-"""The two blocks that the small kernel reaches into; the seam is at JD 2451920.5."""
-SEAM_JD = 2_451_920.5
 SIX_BLOCKS = range(15, 21)
 """1926 to 2076: more than stay in memory, and wanted by other tests too."""
-JD_TT = np.linspace(SEAM_JD - 200.0, SEAM_JD + 200.0, 333)
-
-
-@pytest.fixture(scope="module")
-def small(small_kernel: Path) -> Kernel:
-    return inspect_kernel(small_kernel)
-
-
-@pytest.fixture(scope="module")
-def expected(small: Kernel, tmp_path_factory: pytest.TempPathFactory) -> Floats:
-    """What every store of the small kernel must give."""
-    return answers(TrackStore(small, tmp_path_factory.mktemp("expected")))
-
-
-def answers(store: TrackStore) -> Floats:
-    """Positions and rotations on both sides of the seam, as one array."""
-    tracks = store.tracks(float(JD_TT[0]), float(JD_TT[-1]))
-    parts = [tracks.evaluate(body, JD_TT, POSITION, 2) for body in store.kernel.bodies]
-    return np.concatenate([*parts, tracks.observer.evaluate(0, JD_TT, ROTATION, 2)], axis=1)
-
-
-def block_files(folder: Path) -> list[Path]:
-    return sorted(folder.glob("tracks/*/*"))
-
-
-@pytest.fixture
-def filled(small: Kernel, tmp_path: Path) -> Path:
-    """A cache folder with both blocks in it."""
-    TrackStore(small, tmp_path).ensure([FIRST, SECOND])
-    assert len(block_files(tmp_path)) == 2
-    return tmp_path
-
-
-class Told:
-    """Collects warnings."""
-
-    def __init__(self) -> None:
-        self.lines: list[str] = []
-
-    def __call__(self, line: str) -> None:
-        self.lines.append(line)
 
 
 # ---- building and keeping
@@ -146,127 +102,6 @@ def test_a_copy_of_a_kernel_shares_its_tracks(small: Kernel, small_kernel: Path,
     store = TrackStore(inspect_kernel(copy), filled, progress=lambda done, total: told.append((done, total)))
     store.ensure([FIRST, SECOND])
     assert told == []
-
-
-# ---- damage
-
-
-def flipped(path: Path, place: float) -> None:
-    content = bytearray(path.read_bytes())
-    content[int(place * len(content))] ^= 0x10
-    path.write_bytes(content)
-
-
-def truncated(path: Path) -> None:
-    path.write_bytes(path.read_bytes()[:-5000])
-
-
-def half(path: Path) -> None:
-    content = path.read_bytes()
-    path.write_bytes(content[: len(content) // 2])
-
-
-def emptied(path: Path) -> None:
-    path.write_bytes(b"")
-
-
-def text(path: Path) -> None:
-    path.write_text("not a block\n" * 100)
-
-
-def zeros(path: Path) -> None:
-    path.write_bytes(bytes(path.stat().st_size))
-
-
-def foreign_archive(path: Path) -> None:
-    with path.open("wb") as file:
-        np.savez(file, stamp=np.array("somebody else's"), data=np.arange(5.0))
-
-
-def archive_without_stamp(path: Path) -> None:
-    with path.open("wb") as file:
-        np.savez(file, data=np.arange(5.0))
-
-
-def single_array(path: Path) -> None:
-    with path.open("wb") as file:
-        np.save(file, np.arange(5.0))
-
-
-def pickled(path: Path) -> None:
-    path.write_bytes(pickle.dumps({"stamp": "anything"}))
-
-
-def neighbour(path: Path) -> None:
-    """The other block under this one's name."""
-    (other,) = (one for one in path.parent.iterdir() if one != path)
-    path.write_bytes(other.read_bytes())
-
-
-DAMAGES: list[Callable[[Path], None]] = [
-    *(lambda path, place=place: flipped(path, place) for place in (0.2, 0.5, 0.8)),
-    truncated,
-    half,
-    emptied,
-    text,
-    zeros,
-    foreign_archive,
-    archive_without_stamp,
-    single_array,
-    pickled,
-    neighbour,
-]
-
-
-def assert_rebuilt(small: Kernel, folder: Path, damaged: Path, expected: Floats) -> None:
-    """One warning that names the file, the right answers, and a good file in its place."""
-    told = Told()
-    found = answers(TrackStore(small, folder, warn=told))
-    assert np.array_equal(found, expected)
-    assert len(told.lines) == 1
-    assert str(damaged) in told.lines[0] and "\n" not in told.lines[0]
-    after = Told()
-    assert np.array_equal(answers(TrackStore(small, folder, warn=after)), expected)
-    assert after.lines == []
-
-
-@pytest.mark.parametrize("damage", DAMAGES, ids=lambda damage: damage.__name__)
-def test_a_damaged_or_foreign_block_is_rebuilt_with_one_warning(
-    small: Kernel, filled: Path, expected: Floats, damage: Callable[[Path], None]
-) -> None:
-    damaged = block_files(filled)[1]
-    damage(damaged)
-    assert_rebuilt(small, filled, damaged, expected)
-
-
-@pytest.mark.parametrize("wrong", ["bodies", "kernel", "number"])
-def test_a_whole_block_of_something_else_is_rebuilt_with_one_warning(
-    small: Kernel, filled: Path, expected: Floats, wrong: str
-) -> None:
-    store, damaged = TrackStore(small, filled), block_files(filled)[1]
-    block = store_module.read_block(damaged, SECOND, store._stamp(), small.bodies)
-    changed = {
-        "bodies": replace(block, bodies=block.bodies[:-1]),
-        "kernel": block,
-        "number": replace(block, index=FIRST),
-    }[wrong]
-    stamp = f"{'0' * 64} v1" if wrong == "kernel" else store._stamp()
-    store_module.write_block(damaged, changed, stamp)
-    assert_rebuilt(small, filled, damaged, expected)
-
-
-def test_no_flipped_bit_gets_through(small: Kernel, filled: Path) -> None:
-    store, path = TrackStore(small, filled), block_files(filled)[1]
-    content = path.read_bytes()
-    random = np.random.default_rng(11)
-    directory = content.rindex(b"stamp.npy") - 50  # the archive's table of contents, up to the end
-    places = [*range(200), *range(directory, len(content)), *random.integers(0, len(content), 200).tolist()]
-    for place in places:
-        spoilt = bytearray(content)
-        spoilt[place] ^= 1 << int(random.integers(8))
-        path.write_bytes(spoilt)
-        with pytest.raises(ValueError):
-            store_module.read_block(path, SECOND, store._stamp(), small.bodies)
 
 
 # ---- who builds
@@ -379,10 +214,10 @@ def test_a_full_or_protected_cache_folder_only_warns(
     small: Kernel, tmp_path: Path, expected: Floats, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     # The superuser may write anywhere, hence by hand.
-    def refuse(path: Path, write: object) -> None:
+    def refuse(path: Path, content: bytes) -> None:
         raise PermissionError(13, "Permission denied", str(path))
 
-    monkeypatch.setattr(store_module, "write_atomically", refuse)
+    monkeypatch.setattr(seals, "write_bytes_atomically", refuse)
     told = Told()
     assert_works_with_warnings(TrackStore(small, tmp_path, warn=told), told, expected)
     assert "Permission denied" in told.lines[0]

@@ -14,9 +14,8 @@ import click
 import polars as pl
 
 from wanderers.cli.options import warn
-from wanderers.cli.output import write_file
 from wanderers.errors import UsageProblem
-from wanderers.files import reported_as_output_error
+from wanderers.files import reported_as_output_error, write_output
 from wanderers.report import calendars
 from wanderers.report.calendar_parts import is_part, part_title, split
 from wanderers.report.calendar_update import CalendarFileError, Published, UtcSpan, read_calendar
@@ -120,7 +119,7 @@ def write_calendars(issues: Mapping[str, Issue], plan: Plan) -> None:
         with reported_as_output_error(path):
             same = path.is_file() and path.read_bytes() == calendar.content
         if not same:
-            write_file(path, calendar.content)
+            write_output(path, calendar.content)
 
 
 def warn_about(events: pl.DataFrame, plan: Plan) -> None:

@@ -10,13 +10,13 @@ import click
 import polars as pl
 
 from wanderers.cli.options import Workplace
-from wanderers.cli.output import write_file
 from wanderers.cli.view_options import View, selected
 from wanderers.ephemeris.store import TrackStore
 from wanderers.errors import UsageProblem
 from wanderers.events.almanac import almanac
 from wanderers.events.catalogue import Query
 from wanderers.events.sides import with_sides
+from wanderers.files import write_output
 from wanderers.report import calendars
 from wanderers.report.calendars import Style
 from wanderers.report.editions import Edition, read_editions
@@ -56,7 +56,7 @@ def write_editions(
     for edition, site in wanted:
         table = _seen(store, query, events, replace(view, site=site), edition)
         for ending, content in _files(table, edition, site, style, store.kernel.name).items():
-            write_file(target / f"{edition.name}.{ending}", content)
+            write_output(target / f"{edition.name}.{ending}", content)
         if not workplace.quiet:
             click.echo(f"wanderers: {edition.name}: {table.height} events", err=True)
     click.echo(target)

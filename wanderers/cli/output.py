@@ -15,7 +15,7 @@ import polars as pl
 
 from wanderers.errors import OutputError
 from wanderers.events.old_dates import has_old_dates, with_julian_dates
-from wanderers.files import reported_as_output_error, require_writable, write_atomically
+from wanderers.files import reported_as_output_error, require_writable, write_atomically, write_output
 from wanderers.report.tables import print_table
 
 Command = TypeVar("Command", bound=Callable[..., Any])
@@ -112,22 +112,7 @@ def write_bytes(content: bytes, destination: Destination) -> None:
     if destination.path is None:
         click.echo(content, nl=False)
         return
-    write_file(destination.path, content)
-
-
-def write_file(path: Path, content: bytes) -> None:
-    """Write finished content to a file; folders above it that are missing are made.
-
-    Raises:
-        OutputError: it cannot be written.
-    """
-
-    def write(file: BinaryIO) -> None:
-        file.write(content)
-
-    with reported_as_output_error(path):
-        path.parent.mkdir(parents=True, exist_ok=True)
-        write_atomically(path, write)
+    write_output(destination.path, content)
 
 
 def _write_to_stdout(table: pl.DataFrame, form: str, heading: str) -> None:

@@ -15,7 +15,6 @@ import polars as pl
 
 from wanderers import schema
 from wanderers.cli.options import Span, Workplace
-from wanderers.cli.output import write_file
 from wanderers.cli.view_options import View, viewed
 from wanderers.ephemeris import timescales
 from wanderers.ephemeris.bodies import PLANETS
@@ -24,7 +23,7 @@ from wanderers.events.almanac import almanac
 from wanderers.events.catalogue import Query
 from wanderers.events.kinds import Kind
 from wanderers.events.seasons import seasons
-from wanderers.files import require_writable
+from wanderers.files import require_writable, write_output
 from wanderers.site.audience import Removed
 
 Command = TypeVar("Command", bound=Callable[..., Any])
@@ -110,7 +109,7 @@ def write_printable(
         site=view.site,
         zone="UTC" if view.site is None else view.site.zone,
     )
-    write_file(printable.path, content)
+    write_output(printable.path, content)
     return removed
 
 

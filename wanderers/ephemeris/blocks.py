@@ -21,7 +21,7 @@ from wanderers.ephemeris.chebyshev import Series
 from wanderers.ephemeris.nutation import nutation_at_nodes
 from wanderers.ephemeris.spk_files import open_spk
 
-FORMAT_VERSION: Final = 7
+FORMAT_VERSION: Final = 8
 """Raise it whenever what a block holds changes: older files are then rebuilt."""
 
 ORIGIN_JD: Final = 2_287_184.5

@@ -8,9 +8,9 @@ import re
 from collections.abc import Callable
 from contextlib import suppress
 from pathlib import Path
-from typing import Any, BinaryIO, Final
+from typing import Any, Final
 
-from wanderers.files import write_atomically
+from wanderers.files import write_bytes_atomically
 
 CHECKSUMS_NAME: Final = "kernel_checksums.json"
 _VERSION: Final = 1
@@ -85,8 +85,4 @@ def _is_row(row: object) -> bool:
 
 def _remember(file: Path, rows: dict[str, list[Any]]) -> None:
     content = json.dumps({"version": _VERSION, "kernels": rows}, indent=1).encode("ascii")
-
-    def write(out: BinaryIO) -> None:
-        out.write(content)
-
-    write_atomically(file, write)
+    write_bytes_atomically(file, content)

@@ -1,20 +1,19 @@
 """Tracks on disk: blocks are computed once, kept, checked when read, and extended when more is asked.
 
-A block file is an ``.npz`` archive followed by its CRC-32; named by the kernel's SHA-256 and the
-format's version and written atomically, so a damaged or foreign file is noticed and rebuilt, and an
-interrupted build keeps every block that was finished.
+A block file is a sealed ``.npz`` archive, named by the kernel's SHA-256 and the format's version and written
+atomically, so a damaged or foreign file is noticed and rebuilt, and an interrupted build keeps every block
+that was finished.
 """
 
 from __future__ import annotations
 
 import io
 import threading
-import zlib
 from collections.abc import Callable, Iterable
 from concurrent.futures import Executor, Future, as_completed
 from dataclasses import dataclass, field
 from pathlib import Path
-from typing import BinaryIO, Final
+from typing import Final
 
 import numpy as np
 
@@ -25,13 +24,12 @@ from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.chebyshev import Series
 from wanderers.ephemeris.kernels import Kernel, usable_span_jd_tt
 from wanderers.ephemeris.tracks import Tracks
-from wanderers.files import write_atomically
+from wanderers.seals import read_sealed, write_sealed
 
 Progress = Callable[[int, int], None]
 """Told, after each block, how many are done of how many."""
 
 BLOCKS_IN_MEMORY: Final = 8
-CHECKSUM_BYTES: Final = 4
 SLACK_DAYS: Final = 64.0
 """How far beyond a span tracks are handed out, where the blocks reach."""
 
@@ -149,7 +147,6 @@ class TrackStore:
         self._remember(block)
         path = self._path(block.index)
         try:
-            path.parent.mkdir(parents=True, exist_ok=True)
             write_block(path, block, self._stamp())
         except OSError as error:
             self.warn(f"cache folder {path.parent} cannot be written ({error.strerror}): tracks are not kept")
@@ -169,13 +166,12 @@ class TrackStore:
 
 
 def write_block(path: Path, block: Block, stamp: str) -> None:
-    """Write a block atomically.
+    """Write a block atomically, sealed with its stamp and number.
 
     Raises:
         OSError: the file cannot be written.
     """
     members: dict[str, object] = {
-        "stamp": np.array(f"{stamp} {block.index}"),
         "bodies": np.array([body.value for body in block.bodies]),
     }
     for name, series in (("planets", block.planets), ("moon", block.moon), ("observer", block.observer)):
@@ -183,13 +179,7 @@ def write_block(path: Path, block: Block, stamp: str) -> None:
             members |= _members(name, series)
     archive = io.BytesIO()
     np.savez(archive, **members)  # type: ignore[arg-type]
-    content = archive.getvalue()
-
-    def write(file: BinaryIO) -> None:
-        file.write(content)
-        file.write(_checksum(content))
-
-    write_atomically(path, write)
+    write_sealed(path, archive.getvalue(), f"{stamp} {block.index}")
 
 
 def read_block(path: Path, index: int, stamp: str, bodies: tuple[Body, ...]) -> Block:
@@ -199,24 +189,14 @@ def read_block(path: Path, index: int, stamp: str, bodies: tuple[Body, ...]) -> 
         OSError: it cannot be read.
         ValueError: it is not what was written, or another kernel's or version's.
     """
-    whole = path.read_bytes()
-    content = whole[:-CHECKSUM_BYTES]
-    if _checksum(content) != whole[-CHECKSUM_BYTES:]:
-        raise ValueError("the checksum does not fit")
+    content = read_sealed(path, f"{stamp} {index}")
     with np.load(io.BytesIO(content), allow_pickle=False) as archive:
-        if str(archive["stamp"]) != f"{stamp} {index}":
-            raise ValueError("another kernel's or version's block")
         held = tuple(Body(name) for name in archive["bodies"].tolist())
         moon = _series("moon", archive) if "moon_head" in archive else None
         block = Block(index, held, _series("planets", archive), moon, _series("observer", archive))
     if set(held) | ({Body.MOON} if moon else set()) != set(bodies):
         raise ValueError("other bodies")
     return block
-
-
-def _checksum(content: bytes) -> bytes:
-    """Return the CRC-32: it notices damage, and takes a quarter of the time of a cryptographic digest."""
-    return zlib.crc32(content).to_bytes(CHECKSUM_BYTES, "big")
 
 
 def _members(name: str, series: Series) -> dict[str, object]:

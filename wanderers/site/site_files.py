@@ -20,12 +20,12 @@ import tomllib
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any, BinaryIO, Final
+from typing import Any, Final
 
 import platformdirs
 
 from wanderers.errors import UsageProblem, WanderersError
-from wanderers.files import reported_as_output_error, write_atomically
+from wanderers.files import write_output
 from wanderers.site.places import HorizonProfile, Site, SiteError, horizon_of
 from wanderers.site.zones import zone_named
 
@@ -117,14 +117,7 @@ def add_site(path: Path, site: Site) -> None:
         raise SiteError(f"{path} has a site '{site.name}' already: choose another name or edit the file")
     before = path.read_text(encoding="utf-8") if path.exists() else ""
     gap = "" if not before else "\n" if before.endswith("\n") else "\n\n"
-    content = (before + gap + as_toml(site)).encode()
-
-    def write(file: BinaryIO) -> None:
-        file.write(content)
-
-    with reported_as_output_error(path):
-        path.parent.mkdir(parents=True, exist_ok=True)
-        write_atomically(path, write)
+    write_output(path, (before + gap + as_toml(site)).encode())
 
 
 def as_toml(site: Site) -> str:
