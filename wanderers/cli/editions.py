@@ -13,8 +13,8 @@ from wanderers.cli.options import Workplace
 from wanderers.cli.view_options import View, selected
 from wanderers.ephemeris.store import TrackStore
 from wanderers.errors import UsageProblem
-from wanderers.events.almanac import almanac
 from wanderers.events.catalogue import Query
+from wanderers.events.kept import kept_almanac
 from wanderers.events.sides import with_sides
 from wanderers.files import write_output
 from wanderers.report import calendars
@@ -52,7 +52,7 @@ def write_editions(
         if site is None and view.audience.must_see:
             raise UsageProblem(f"edition {edition.name} has no site: leave out --visible and the like")
     store, target = workplace.store, folder or FOLDER
-    events = with_sides(store, almanac(store, query))
+    events = with_sides(store, kept_almanac(store, query))
     for edition, site in wanted:
         table = _seen(store, query, events, replace(view, site=site), edition)
         for ending, content in _files(table, edition, site, style, store.kernel.name).items():

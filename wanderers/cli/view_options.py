@@ -14,8 +14,8 @@ import polars as pl
 from wanderers.cli.site_options import rules_options, site_options
 from wanderers.ephemeris.store import TrackStore
 from wanderers.errors import UsageProblem
-from wanderers.events.almanac import almanac
 from wanderers.events.catalogue import Query
+from wanderers.events.kept import kept_almanac
 from wanderers.report.site_tables import site_heading
 from wanderers.report.tables import almanac_heading, counted
 from wanderers.site.almanac import events_of_site, with_parallax
@@ -134,7 +134,7 @@ def viewed(
     if site is not None and within_deg is not None and view.audience.must_see:
         view = replace(view, audience=replace(view.audience, within_deg=within_deg))
         query = with_parallax(query)
-    events = almanac(store, query) if site is None else events_of_site(store, query, site)
+    events = kept_almanac(store, query) if site is None else events_of_site(store, query, site)
     return selected(store, events, view)
 
 

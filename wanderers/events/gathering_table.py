@@ -15,8 +15,8 @@ from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.sky import SUN, Sky
 from wanderers.ephemeris.store import TrackStore
 from wanderers.ephemeris.vectors import separation_deg
-from wanderers.events.almanac import almanac
 from wanderers.events.catalogue import Query, sky_of
+from wanderers.events.kept import kept_almanac
 from wanderers.events.kinds import Kind
 from wanderers.events.ledger import Arrays, by_block
 from wanderers.events.scene import Choice, Limits
@@ -70,7 +70,7 @@ def gatherings(
         wanted.bodies, stars_for=(), limits=Limits(gathering_deg=searched), fewest_gathered=wanted.at_least
     )
     query = Query(jd_from, jd_to, frozenset({Kind.GATHERING}), choice=choice)
-    table = almanac(store, query)
+    table = kept_almanac(store, query)
     table = table.with_columns(**_measures(store, table))
     wide = table["separation_deg"] >= wanted.within_deg
     glaring = table["least_elongation_deg"] < wanted.least_elongation_deg

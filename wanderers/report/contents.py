@@ -17,8 +17,8 @@ from wanderers.ephemeris.dates import iso_strings
 from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.kernels import Kernel
 from wanderers.ephemeris.store import TrackStore
-from wanderers.events.almanac import almanac
 from wanderers.events.catalogue import Query
+from wanderers.events.kept import kept_almanac
 from wanderers.events.kinds import Kind
 from wanderers.events.scene import Choice, Limits
 from wanderers.events.season_study import Study, study_seasons
@@ -176,7 +176,7 @@ def gather(store: TrackStore, request: Request, progress: Progress = lambda word
 
 def _events(store: TrackStore, request: Request) -> pl.DataFrame:
     if request.site is None:
-        return almanac(store, _query(request))
+        return kept_almanac(store, _query(request))
     return almanac_from_site(store, _query(request), request.site, request.rules)
 
 

@@ -13,9 +13,10 @@ from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.frames import Frame
 from wanderers.ephemeris.sky import FIRST_STAR, Sky
 from wanderers.ephemeris.store import TrackStore
-from wanderers.events.almanac import almanac, event_table
+from wanderers.events.almanac import event_table
 from wanderers.events.catalogue import Query, name_events, sky_of, stars_met
 from wanderers.events.discs import OCCULTATION_DETAILS, Pairs
+from wanderers.events.kept import kept_almanac
 from wanderers.events.kinds import Batch, Kind, batch
 from wanderers.site.circumstances import with_circumstances
 from wanderers.site.event_targets import parties_of
@@ -68,7 +69,7 @@ def seen_from_site(
 
 def events_of_site(store: TrackStore, query: Query, site: Site) -> pl.DataFrame:
     """Return the event table of a span with the occultations by the Moon that only the site sees."""
-    return with_local_occultations(store, query, site, almanac(store, query))
+    return with_local_occultations(store, query, site, kept_almanac(store, query))
 
 
 def with_local_occultations(
@@ -104,7 +105,7 @@ def _close_passes(store: TrackStore, query: Query, events: pl.DataFrame) -> pl.D
         asked = Query(
             query.jd_from, query.jd_to, frozenset({Kind.APPULSE}), frozenset({Frame.ECLIPTIC}), choice
         )
-        events = almanac(store, asked)
+        events = kept_almanac(store, asked)
     return events.filter(
         pl.col("kind") == Kind.APPULSE.value,
         pl.col("body") == Body.MOON.value,
