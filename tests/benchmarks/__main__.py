@@ -11,22 +11,18 @@ from __future__ import annotations
 import argparse
 import os
 import platform
-import resource
 import tempfile
-import time
-from collections.abc import Callable
 from concurrent.futures import ThreadPoolExecutor
-from dataclasses import dataclass
 from datetime import date
 from pathlib import Path
 
 from tests.benchmarks import from_site
+from tests.benchmarks.asking import asked, fresh_store
 from tests.benchmarks.bare_pass import bare_pass
 from tests.benchmarks.general_search import general_search, same_events
+from tests.benchmarks.measuring import Row, alone, timed
 from wanderers.ephemeris.bodies import PLANETS
 from wanderers.ephemeris.frames import Frame
-from wanderers.ephemeris.kernels import find_kernel, inspect_kernel
-from wanderers.ephemeris.store import TrackStore
 from wanderers.events.almanac import almanac
 from wanderers.events.catalogue import Query, find_events
 from wanderers.events.kept import kept_almanac
@@ -35,54 +31,6 @@ from wanderers.events.scene import Choice
 
 J2000_YEAR_START = 2_451_544.5
 DAYS_PER_YEAR = 365.25
-
-
-@dataclass(frozen=True, slots=True)
-class Spent:
-    """Seconds that passed, and processor seconds of all processes."""
-
-    passed_s: float
-    processor_s: float
-
-    def __str__(self) -> str:
-        return f"{self.passed_s:8.2f} s ({self.processor_s:.2f})"
-
-
-@dataclass(frozen=True, slots=True)
-class Row:
-    """One line of the table."""
-
-    work: str
-    ours: Spent
-    against: str
-    theirs: Spent
-
-    def __str__(self) -> str:
-        faster = self.theirs.passed_s / self.ours.passed_s
-        sparer = self.theirs.processor_s / self.ours.processor_s
-        return (
-            f"{self.work:<50} {self.ours}  {self.against:<20} {self.theirs}"
-            f"  {faster:8.2f} x ({1.0 / faster:.2f})  processor {sparer:8.2f} x ({1.0 / sparer:.2f})"
-        )
-
-
-def timed(work: Callable[[], object]) -> tuple[Spent, object]:
-    """Return what some work took, and its result."""
-    start, start_processor = time.perf_counter(), processor_s()
-    result = work()
-    return Spent(time.perf_counter() - start, processor_s() - start_processor), result
-
-
-def processor_s() -> float:
-    """Return processor seconds of this process and of those it waited for."""
-    times = os.times()
-    return times.user + times.system + times.children_user + times.children_system
-
-
-def fresh_store(folder: Path) -> TrackStore:
-    """Return a store with nothing in memory."""
-    kernel = inspect_kernel(find_kernel(None, folder, {}), folder)
-    return TrackStore(kernel, folder)
 
 
 def against_general_search(years: int) -> list[Row]:
@@ -114,17 +62,16 @@ def against_bare_pass(folder: Path, years: int) -> list[Row]:
     indices = store.block_indices(*span)
     bare_took, _ = timed(lambda: [bare_pass(store, index) for index in indices])
     with tempfile.TemporaryDirectory() as cold:
-        cold_took, found = timed(lambda: kept_almanac(fresh_store(Path(cold)), query).height)
-        warm_took, events = timed(lambda: almanac(fresh_store(Path(cold)), query).height)
-        again_took, read = timed(lambda: kept_almanac(fresh_store(Path(cold)), query).height)
-    assert found == events == read
+        cold_run, warm_run, again_run = (
+            alone(asked, table, Path(cold), query) for table in (kept_almanac, almanac, kept_almanac)
+        )
+    assert cold_run.result == warm_run.result == again_run.result
     what = f"every kind, {years} years"
-    print(f"{what}: {events} events, {_peaks()}")
-    return [
-        Row(f"{what}, cold", cold_took, "bare pass, one core", bare_took),
-        Row(f"{what}, tracks warm", warm_took, "bare pass, one core", bare_took),
-        Row(f"{what}, asked again", again_took, "bare pass, one core", bare_took),
-    ]
+    rows = []
+    for name, run in (("cold", cold_run), ("tracks warm", warm_run), ("asked again", again_run)):
+        print(f"{what}, {name}: {run.result} events, {run.peaks}")
+        rows.append(Row(f"{what}, {name}", run.spent, "bare pass, one core", bare_took))
+    return rows
 
 
 def from_a_site(folder: Path) -> list[Row]:
@@ -141,14 +88,6 @@ def from_a_site(folder: Path) -> list[Row]:
         Row("nights, a year, nine bodies", ours_took, "skyfield's functions", theirs_took),
         Row("almanac, a year, with a site", seen_took, "without one", bare_took),
     ]
-
-
-def _peaks() -> str:
-    """Say the peak of this process so far, and of its largest worker, which shares most of it."""
-    own, worker = (
-        resource.getrusage(who).ru_maxrss / 1e6 for who in (resource.RUSAGE_SELF, resource.RUSAGE_CHILDREN)
-    )
-    return f"peak memory {own:.2f} GB, of a worker {worker:.2f} GB, most of it shared"
 
 
 def main() -> None:

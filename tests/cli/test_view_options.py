@@ -298,3 +298,18 @@ def test_an_outlook_needs_a_site_and_a_span(run: Program) -> None:
     refused(run(*OUTLOOK), "--outlook", "--site")
     refused(run(*OUTLOOK[:-1], "0", *HILL), "--outlook", "0")
     refused(run(*OUTLOOK, *HILL, "--format", "markdown"), "--outlook")
+
+
+@pytest.mark.parametrize(
+    "option",
+    [
+        ("--min-altitude", "5"),
+        ("--sun-below", "-18"),
+        ("--extinction", "0.3"),
+        ("--dark-sky", "5.5"),
+        ("--frame", "j2000"),
+    ],
+    ids=lambda option: option[0],
+)
+def test_an_outlook_refuses_what_it_would_not_heed(run: Program, option: tuple[str, str]) -> None:
+    refused(run(*OUTLOOK, *HILL, *option), "--outlook", option[0])

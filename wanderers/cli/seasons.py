@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+from typing import Final
+
 import click
+from click.core import ParameterSource
 
 from wanderers.cli.options import (
     Span,
@@ -20,6 +23,7 @@ from wanderers.ephemeris.bodies import PLANETS, Body
 from wanderers.ephemeris.frames import Frame
 from wanderers.errors import UsageProblem
 from wanderers.events.seasons import seasons
+from wanderers.plans.outlook import DARK_DEG, HIGH_DEG
 from wanderers.plans.outlook import outlook as compared
 from wanderers.report.outlook_table import outlook_heading
 from wanderers.report.phrases.markdown import Wording
@@ -33,6 +37,15 @@ BESIDE_OTHERS = (
     "Set the seasons of the span beside those of so many years before and after, as --site sees them, ranked."
 )
 
+FIXED_BY_OUTLOOK: Final = {
+    "frames": "--frame",
+    "min_altitude": "--min-altitude",
+    "sun_below": "--sun-below",
+    "extinction": "--extinction",
+    "dark_sky": "--dark-sky",
+}
+"""Options by parameter that an outlook does not heed."""
+
 
 @click.command("seasons")
 @span_options(default_years=2)
@@ -43,7 +56,9 @@ BESIDE_OTHERS = (
 @rules_options
 @workplace_options
 @sentence_options
+@click.pass_context
 def command(
+    context: click.Context,
     *,
     span: Span,
     bodies: tuple[Body, ...],
@@ -67,6 +82,7 @@ def command(
     """
     require_in_kernel(workplace, span, bodies)
     if outlook is not None:
+        _refuse_other_measures(context)
         _print_outlook(span, bodies, outlook, site, workplace, destination)
         return
     planets = tuple(body for body in bodies if body in PLANETS)
@@ -85,6 +101,20 @@ def command(
             f"{heading}; at the middle, as seen from {place_words(site)}, local times {zone_words(site)}"
         )
     write_table(table, destination, heading)
+
+
+def _refuse_other_measures(context: click.Context) -> None:
+    """Refuse options that would change nothing: seasons are compared by measures of the outlook's own."""
+    given = [
+        option
+        for name, option in FIXED_BY_OUTLOOK.items()
+        if context.get_parameter_source(name) is ParameterSource.COMMANDLINE
+    ]
+    if given:
+        raise UsageProblem(
+            f"--outlook compares seasons in the ecliptic, by hours above {HIGH_DEG:.0f} degrees with the Sun "
+            f"below {DARK_DEG:.0f}: leave out {' and '.join(given)}"
+        )
 
 
 def _print_outlook(
