@@ -41,8 +41,8 @@ def cache_option(command: Callable[..., None]) -> Callable[..., None]:
         "--cache",
         type=click.Path(path_type=Path),
         metavar="DIR",
-        help="Folder for kernels and computed tracks. [default: ./data_cache if there is one, else the "
-        "user's cache folder]",
+        help="Folder for kernels, computed tracks and kept events. [default: ./data_cache if there is one, "
+        "else the user's cache folder]",
     )(command)
 
 
