@@ -181,7 +181,7 @@ def workplace_options(command: Command) -> Command:
         "--cache",
         type=click.Path(path_type=Path),
         metavar="DIR",
-        help="Folder for kernels, tracks and events. [default: ./data_cache if there is one, else the user's]",
+        help="Folder for kernels, tracks, events. [default: ./data_cache if there is one, else the user's]",
     )
     @click.option("--quiet", is_flag=True, help="Show no progress.")
     @functools.wraps(command)

@@ -24,6 +24,16 @@ from wanderers.site.visibility import VERDICTS, Verdict, verdicts
 NEVER_TOGETHER: Final = "never high together in a sky dark enough"
 OF_THE_SUN: Final = (Kind.SEASON_POINT.value, Kind.CONSTELLATION_ENTRY.value)
 SUN_INSTANT: Final = "an instant of the Sun's path, nothing to look at"
+TOLD_OF_DECIDING: Final = (
+    "magnitude",
+    "moon_separation_deg",
+    "margin_sky",
+    "margin_arcus",
+    "margin_crescent",
+    "margin",
+)
+"""What is told of the member that decides."""
+
 TOGETHER: Final = {2: "both ", 3: "all three ", 4: "all four ", 5: "all five "}
 
 
@@ -79,31 +89,24 @@ def _circumstances(watched: Watch, parties: Parties, best: Prospects, members: M
     blocked = ~can & (best.blocker != NO_ROW)
     deciding = np.where(blocked, best.blocker, members.faintest)
     target = np.take_along_axis(parties.member, deciding[:, None], axis=1)[:, 0]
-    margin, altitude = of_member(members.margin, deciding), _least(members.altitude_deg)
-    verdict = np.where(
-        can, verdicts(margin, watched.rules.criteria, members.sun_altitude_deg), len(VERDICTS) - 1
-    )
-    magnitude = of_member(members.magnitude, deciding)
+    told = {name: of_member(getattr(members, name), deciding) for name in TOLD_OF_DECIDING}
+    shown = verdicts(told["margin"], watched.rules.criteria, members.sun_altitude_deg)
+    verdict = np.where(can, shown, len(VERDICTS) - 1)
     extinction = watched.rules.criteria.extinction_at(watched.evenings.site.elevation_m)
     azimuth = of_member(members.azimuth_deg, deciding)
     with_moon = (parties.member == Body.MOON.order).any(axis=1)
     numbers = {
-        "altitude_deg": altitude,
-        "magnitude": magnitude,
+        **told,
+        "altitude_deg": _least(members.altitude_deg),
         "dimmed_magnitude": dimmed_magnitude(
-            magnitude, of_member(members.altitude_deg, deciding), extinction
+            told["magnitude"], of_member(members.altitude_deg, deciding), extinction
         ),
         "sun_altitude_deg": members.sun_altitude_deg,
         "moon_altitude_deg": members.moon_altitude_deg,
         "moon_illuminated": np.where(with_moon, 0.0, members.moon_illuminated),
-        "moon_separation_deg": of_member(members.moon_separation_deg, deciding),
         "elongation_deg": _least(
             np.where(parties.member == Body.SUN.order, np.nan, members.sun_separation_deg)
         ),
-        "margin_sky": of_member(members.margin_sky, deciding),
-        "margin_arcus": of_member(members.margin_arcus, deciding),
-        "margin_crescent": of_member(members.margin_crescent, deciding),
-        "margin": margin,
         "best_jd": best.best_jd,
         "sunset_jd": watched.sunset_jd[best.evening],
         "sunrise_jd": watched.sunrise_jd[best.evening],
