@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable
 from dataclasses import replace
 from datetime import date, timedelta
 from typing import Any
@@ -11,11 +11,9 @@ import numpy as np
 import polars as pl
 import pytest
 from scipy.stats import binom
-from skyfield.api import load_file
 
 from tests.plans.places import ATOLL, CAPE, HILL, INHABITED, RIDGE, Watcher
 from wanderers.ephemeris.bodies import Body
-from wanderers.ephemeris.kernels import Kernel
 from wanderers.ephemeris.store import TrackStore
 from wanderers.errors import UsageProblem
 from wanderers.plans.campaign import Campaign, plan_campaign
@@ -45,13 +43,6 @@ def plan(store: TrackStore) -> Plan:
         return known[key]
 
     return planned
-
-
-@pytest.fixture(scope="module")
-def opened(kernel: Kernel) -> Iterator[Any]:
-    file = load_file(str(kernel.path))
-    yield file
-    file.close()
 
 
 @pytest.mark.parametrize("site", INHABITED, ids=lambda site: site.name)

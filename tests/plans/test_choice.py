@@ -11,7 +11,8 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from wanderers.plans.choice import Problem, burden, choose, longest_hole
+from wanderers.plans.choice import Problem, burden, choose
+from wanderers.plans.clouds import longest_hole
 
 PLACES = st.lists(st.floats(0.0, 20.0), min_size=1, max_size=11)
 COSTS = st.lists(st.floats(0.0, 1.0), min_size=12, max_size=12)
@@ -97,7 +98,7 @@ def test_one_more_usable_night_never_worsens_the_objective(
 def test_without_marks_and_costs_steps_are_even() -> None:
     some = problem(np.linspace(0.0, 20.0, 41).tolist(), [0.0] * 41, [])
     np.testing.assert_allclose(some.position[choose(some, 3).nights], [5.0, 10.0, 15.0])
-    assert longest_hole(some, choose(some, 3).nights) == pytest.approx(5.0)
+    assert longest_hole(some.position[choose(some, 3).nights], some.start, some.end) == pytest.approx(5.0)
 
 
 def test_a_mark_draws_a_night_to_it() -> None:

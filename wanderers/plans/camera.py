@@ -14,6 +14,7 @@ import numpy as np
 
 from wanderers.arrays import Floats
 from wanderers.constants import ARCSEC_PER_DEG
+from wanderers.ephemeris.vectors import wrapped_deg
 from wanderers.errors import UnknownNameError, UsageProblem
 from wanderers.plans.frame import DEFAULT_MARGIN, SLACK, CameraFrame, smallest_frame
 
@@ -294,5 +295,4 @@ def tilt_deg(position_angle_deg: float, parallactic_angle_deg: Floats) -> Floats
     Positive when the upper side is turned to the left as seen from behind the camera. The parallactic angle
     is the position angle of the zenith, so this is the difference of two position angles.
     """
-    lean = position_angle_deg - parallactic_angle_deg
-    return np.asarray(lean - 360.0 * np.ceil((lean - 180.0) / 360.0))
+    return wrapped_deg(position_angle_deg - parallactic_angle_deg)

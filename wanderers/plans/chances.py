@@ -6,8 +6,14 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from wanderers.arrays import Floats
-from wanderers.plans.clouds import chance_of_all, expected_count, expected_longest_hole
+from wanderers.arrays import Floats, Ints
+from wanderers.plans.clouds import (
+    chance_of_all,
+    chance_of_any,
+    expected_count,
+    expected_longest_hole,
+    longest_hole,
+)
 from wanderers.plans.draft import Draft
 from wanderers.plans.season import TURNS, CampaignSeason
 from wanderers.plans.spares import Line
@@ -65,12 +71,13 @@ def chances_of(season: CampaignSeason, line: Line, draft: Draft, cloudy: float) 
     alive = draft.new.nights
     is_done = np.isin(alive, draft.done)
     clear = np.where(is_done, 1.0, 1.0 - cloudy)
-    backed = np.array([len(draft.spares.get(night, [])) for night in alive.tolist()])
-    with_spares = np.where(is_done, 1.0, 1.0 - cloudy ** (1.0 + backed))
+    tries = np.array([1 + len(draft.spares.get(night, [])) for night in alive.tolist()], dtype=np.int64)
+    with_spares = np.where(is_done, 1.0, chance_of_any(cloudy, tries))
     groups = _groups(season, line, draft)
     reach = np.union1d(draft.usable, draft.done).astype(np.int64)
     reach = reach[[0, -1]] if reach.size else reach
-    ends, along = line.jd[reach], line.along_deg[reach]
+    hole_deg, expected_hole_deg = _holes(line.along_deg, alive, clear, reach)
+    hole_days, expected_hole_days = _holes(line.jd, alive, clear, reach)
     return Chances(
         cloudy=cloudy,
         planned=int(alive.size),
@@ -82,10 +89,10 @@ def chances_of(season: CampaignSeason, line: Line, draft: Draft, cloudy: float) 
             if moment.must
         ),
         both_turns=_chance_of([groups[name] for name in TURNS], cloudy),
-        longest_hole_deg=_longest(line.along_deg[alive], along),
-        expected_longest_hole_deg=_expected(line.along_deg[alive], clear, along),
-        longest_hole_days=_longest(line.jd[alive], ends),
-        expected_longest_hole_days=_expected(line.jd[alive], clear, ends),
+        longest_hole_deg=hole_deg,
+        expected_longest_hole_deg=expected_hole_deg,
+        longest_hole_days=hole_days,
+        expected_longest_hole_days=expected_hole_days,
     )
 
 
@@ -93,9 +100,8 @@ def _groups(season: CampaignSeason, line: Line, draft: Draft) -> dict[str, froze
     """Return the nights that may serve each moment, None where it is done already."""
     spare = [night for own in draft.spares.values() for night in own]
     to_come = np.union1d(np.setdiff1d(draft.new.nights, draft.done), np.array(spare, dtype=np.int64))
-    places = season.path.along_at(np.array([moment.jd_tt for moment in season.moments]))
     out: dict[str, frozenset[str] | None] = {}
-    for moment, place in zip(season.moments, places.tolist(), strict=True):
+    for moment, place in zip(season.moments, season.moment_deg.tolist(), strict=True):
         near = line.serves(moment, place)
         able = frozenset(str(night) for night in to_come[near[to_come.astype(np.int64)]].tolist())
         out[moment.name] = None if near[draft.done].any() else able
@@ -112,10 +118,10 @@ def _chance_of(groups: list[frozenset[str] | None], cloudy: float) -> float:
     return chance_of_all(cloudy, open_groups) if all(open_groups) else 0.0
 
 
-def _longest(position: Floats, ends: Floats) -> float:
-    """Return the longest hole; 0 where no night can be used."""
-    return float(np.max(np.diff(np.concatenate([ends[:1], position, ends[1:]])), initial=0.0))
-
-
-def _expected(position: Floats, clear: Floats, ends: Floats) -> float:
-    return expected_longest_hole(position, clear, *ends.tolist()) if ends.size else 0.0
+def _holes(position: Floats, alive: Ints, clear: Floats, reach: Ints) -> tuple[float, float]:
+    """Return the longest hole if all planned nights are clear, and as expected; 0 where none can be used."""
+    if reach.size == 0:
+        return 0.0, 0.0
+    start, end = position[reach].tolist()
+    planned = position[alive]
+    return longest_hole(planned, start, end), expected_longest_hole(planned, clear, start, end)

@@ -106,11 +106,6 @@ def burden(problem: Problem, nights: Ints) -> float:
     return float(holes + marks + np.sum(problem.cost[nights]))
 
 
-def longest_hole(problem: Problem, nights: Ints) -> float:
-    """Return the longest stretch of position without a night, the ends' included."""
-    return float(np.max(np.diff(np.concatenate([[problem.start], problem.position[nights], [problem.end]]))))
-
-
 def hole_burdens(problem: Problem) -> Floats:
     """Return the burden of every hole with the marks in it, shape (n + 2, n + 2).
 

@@ -11,12 +11,12 @@ from itertools import combinations
 
 import numpy as np
 
-from wanderers.arrays import Floats
+from wanderers.arrays import Floats, Ints
 
 
-def chance_of_any(cloudy: float, tries: int) -> float:
-    """Return the chance that at least one of some nights is clear: 1 - p^k."""
-    return 1.0 - cloudy**tries
+def chance_of_any(cloudy: float, tries: Ints) -> Floats:
+    """Return the chance that at least one of so many nights is clear, shape (n,): 1 - p^k."""
+    return np.asarray(1.0 - cloudy**tries)
 
 
 def chance_of_all(cloudy: float, groups: Sequence[frozenset[str]]) -> float:
@@ -39,6 +39,17 @@ def chance_of_all(cloudy: float, groups: Sequence[frozenset[str]]) -> float:
 def expected_count(clear: Floats) -> float:
     """Return the expected number of clear nights, from the chance of each, shape (n,)."""
     return float(np.sum(clear))
+
+
+def longest_hole(position: Floats, start: float, end: float) -> float:
+    """Return the longest stretch without a night, the ends' included.
+
+    Args:
+        position: of each night, never falling, shape (n,).
+        start: position of the beginning.
+        end: of the end.
+    """
+    return float(np.max(np.diff(np.concatenate([[start], position, [end]]))))
 
 
 def expected_longest_hole(position: Floats, clear: Floats, start: float, end: float) -> float:

@@ -34,7 +34,7 @@ AIRMASS_TOLERANCE: Final = 0.5
 """At 0.25 magnitudes an air mass this is the error of a careful estimate. Common practice, no source."""
 LOWEST_DEG: Final = 10.0
 """Lower stars are not offered: haze, which differs by direction, decides. Common practice, no source."""
-WANTED: Final = 3
+STARS_A_NIGHT: Final = 3
 
 PLANET_B_V: Final = {
     Body.MERCURY: 0.97,
@@ -223,14 +223,15 @@ def _chosen(fit: pl.DataFrame, body: Body) -> pl.DataFrame:
     brighter = pl.col("difference_mag") <= 0.0
     first = pl.col("score").rank("ordinal").over("night", brighter) == 1
     ranked = fit.sort("night", "score", "hip").with_columns(spare=~first)
-    taken = ranked.sort("night", "spare", "score", "hip").group_by("night", maintain_order=True).head(WANTED)
+    by_night = ranked.sort("night", "spare", "score", "hip").group_by("night", maintain_order=True)
+    taken = by_night.head(STARS_A_NIGHT)
     noted = taken.sort("night", "score", "hip").with_columns(note=_note(body))
     return noted.drop("spare", "score", "colour_difference")
 
 
 def _note(body: Body) -> pl.Expr:
     """Return what to mind with a star, in words."""
-    name = body.value.capitalize()
+    name = body.label
     colour = pl.col("colour_difference")
     redder = pl.when(colour >= UNLIKE_COLOUR_MAG).then(
         pl.lit(f"redder than {name}: in the dark it may look too faint")
@@ -246,7 +247,7 @@ def _why_none(
     planet: _Planet, night: int, steady: StarCatalogue, high: pl.DataFrame, tolerance_mag: float
 ) -> str:
     """Say why a night has no comparison star, and what comes nearest."""
-    name, magnitude = planet.body.value.capitalize(), float(planet.magnitude[night])
+    name, magnitude = planet.body.label, float(planet.magnitude[night])
     if not np.isfinite(planet.airmass[night]):
         return f"{name} is below the horizon"
     if not np.isfinite(magnitude):

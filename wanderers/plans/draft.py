@@ -71,17 +71,17 @@ def draft_of(season: CampaignSeason, nights: pl.DataFrame, request: CampaignRequ
     old = eligible[choose(problem.only(eligible), aim.count).nights]
     done, lost, past = _happened(days, request, old)
     new = mend(problem, old, lost=lost, done=done, open_to_choice=open_now)
-    moment_deg = season.path.along_at(np.array([moment.jd_tt for moment in season.moments]))
-    held = _held(season, line, old, new, np.setdiff1d(np.intersect1d(done, old), new.added))
+    held_before = holders(line, old, season.moments, season.moment_deg)
+    settled = np.setdiff1d(np.intersect1d(done, old), new.added)
+    held = _held(season, line, held_before, new, settled)
+    to_come = set(np.setdiff1d(new.nights, done).tolist())
     musts = {
-        held[moment.name]: float(place)
-        for moment, place in zip(season.moments, moment_deg, strict=True)
-        if moment.must and moment.name in held
+        held[moment.name]: place
+        for moment, place in zip(season.moments, season.moment_deg.tolist(), strict=True)
+        if moment.must and held.get(moment.name) in to_come
     }
     free = open_now.copy()
     free[lost] = False
-    to_come = np.setdiff1d(new.nights, done)
-    musts = {night: place for night, place in musts.items() if night in to_come}
     spares = spare_nights(line, new.nights, musts, free, request.spares)
     return Draft(
         old=old,
@@ -89,7 +89,7 @@ def draft_of(season: CampaignSeason, nights: pl.DataFrame, request: CampaignRequ
         done=done,
         lost_past=np.intersect1d(np.intersect1d(lost, old), past),
         held=held,
-        held_before=holders(line, old, season.moments, moment_deg),
+        held_before=held_before,
         spares={night: own for night, own in spares.items() if night in to_come},
         step_deg=aim.step_deg,
         usable=eligible,
@@ -123,11 +123,11 @@ def _happened(days: list[str], request: CampaignRequest, old: Ints) -> tuple[Int
     )
 
 
-def _held(season: CampaignSeason, line: Line, old: Ints, new: Replan, settled: Ints) -> dict[str, int]:
+def _held(
+    season: CampaignSeason, line: Line, before: dict[str, int], new: Replan, settled: Ints
+) -> dict[str, int]:
     """Return which night serves each moment: the one that did, else the nearest whose role is not settled."""
-    moment_deg = season.path.along_at(np.array([moment.jd_tt for moment in season.moments]))
-    before = holders(line, old, season.moments, moment_deg)
-    now = holders(line, np.setdiff1d(new.nights, settled), season.moments, moment_deg)
+    now = holders(line, np.setdiff1d(new.nights, settled), season.moments, season.moment_deg)
     alive = set(new.nights.tolist())
     return {
         moment.name: before[moment.name] if before.get(moment.name) in alive else now[moment.name]
@@ -139,12 +139,11 @@ def _held(season: CampaignSeason, line: Line, old: Ints, new: Replan, settled: I
 def served(season: CampaignSeason, line: Line, draft: Draft) -> dict[str, bool]:
     """Return whether each moment that a campaign must have is had."""
     alive = draft.new.nights
-    out = {}
-    for moment in season.moments:
-        if moment.must:
-            place = float(season.path.along_at(np.array([moment.jd_tt]))[0])
-            out[moment.name] = bool(line.serves(moment, place)[alive].any())
-    return out
+    return {
+        moment.name: bool(line.serves(moment, place)[alive].any())
+        for moment, place in zip(season.moments, season.moment_deg.tolist(), strict=True)
+        if moment.must
+    }
 
 
 def problem_of(season: CampaignSeason, nights: pl.DataFrame, aim: Aim) -> Problem:
@@ -153,8 +152,7 @@ def problem_of(season: CampaignSeason, nights: pl.DataFrame, aim: Aim) -> Proble
     def position(along: Floats, turned: Floats) -> Floats:
         return np.asarray(along + aim.bend_deg * turned)
 
-    marks = np.array([moment.jd_tt for moment in season.moments])
-    jd = np.concatenate([[season.start_jd, season.end_jd], marks])
+    jd = np.concatenate([[season.start_jd, season.end_jd], season.moment_jd])
     placed = position(season.path.along_at(jd), season.path.turned_at(jd))
     wanted = np.array([moment.must for moment in season.moments])
     quality = nights["score"].fill_null(0.0).to_numpy()

@@ -15,6 +15,7 @@ from typing import Final
 import numpy as np
 
 from wanderers.arrays import Bools, Floats
+from wanderers.ephemeris.vectors import latitude_deg, longitude_deg, unit_vectors
 from wanderers.errors import UsageProblem
 
 DEFAULT_MARGIN: Final = 0.15
@@ -66,12 +67,6 @@ class CameraFrame:
     position_angle_deg: float
     width_deg: float
     height_deg: float
-
-    @property
-    def long_side_position_angle_deg(self) -> float:
-        """Position angle of the longer side, [0, 180)."""
-        turn = 90.0 if self.width_deg >= self.height_deg else 0.0
-        return float((self.position_angle_deg + turn) % 180.0)
 
     @property
     def axes(self) -> Floats:
@@ -181,15 +176,14 @@ def smallest_frame(
 
 def directions_of(ra_deg: Floats, dec_deg: Floats) -> Floats:
     """Return the unit vectors of places, shape (3, n)."""
-    ra, dec = np.radians(ra_deg), np.radians(dec_deg)
-    return np.stack([np.cos(dec) * np.cos(ra), np.cos(dec) * np.sin(ra), np.sin(dec)])
+    return unit_vectors(ra_deg, dec_deg)
 
 
 def coordinates(directions: Floats) -> tuple[Floats, Floats]:
     """Return right ascension [0, 360) and declination of vectors, shape (3, n)."""
-    x, y, z = directions
-    ra = np.degrees(np.arctan2(y, x)) % 360.0  # just below zero this rounds to 360
-    return np.where(ra < 360.0, ra, 0.0), np.degrees(np.arctan2(z, np.hypot(x, y)))
+    stack = directions[np.newaxis]
+    ra = longitude_deg(stack)[0]  # just below zero this rounds to 360
+    return np.where(ra < 360.0, ra, 0.0), latitude_deg(stack)[0]
 
 
 def _coordinates_of(direction: Floats) -> tuple[float, float]:

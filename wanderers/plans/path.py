@@ -48,6 +48,10 @@ class Path:
         """Return the arc length at instants, shape (k,), degrees."""
         return np.asarray(np.interp(jd, self.jd, self.along_deg))
 
+    def reached_deg(self, jd_tt: float) -> float:
+        """Return the arc length at one instant, degrees."""
+        return float(self.along_at(np.array([jd_tt]))[0])
+
     def turned_at(self, jd: Floats) -> Floats:
         """Return the sum of all turns at instants, shape (k,), degrees."""
         return np.asarray(np.interp(jd, self.jd, self.turned_deg))
@@ -63,7 +67,7 @@ def path_of(store: TrackStore, body: Body, jd_from: float, jd_to: float) -> Path
     """Follow a body over a span, TT."""
     sky = Sky(store.tracks(jd_from, jd_to))
     jd = np.linspace(jd_from, jd_to, int(np.ceil((jd_to - jd_from) / STEP_DAYS)) + 1)
-    direction = sky.apparent(np.full(jd.size, body.order), jd)[0]
+    direction = direction_at(sky, body, jd)
     return Path(body, jd, direction, arc_length_deg(direction), turning_deg(direction))
 
 

@@ -127,8 +127,7 @@ def aim_of(season: CampaignSeason, request: CampaignRequest, nights: pl.DataFram
     A number asked for is taken as it is. A step, along the path or in time, gives as many nights as are met
     going along the usable ones by no less than that step: stretches without any ask for none.
     """
-    ends = np.array([season.start_jd, season.end_jd])
-    length = float(np.diff(season.path.along_at(ends))[0])
+    length = season.path.reached_deg(season.end_jd) - season.path.reached_deg(season.start_jd)
     usable = nights.filter(pl.col("usable"))
     if request.nights is not None:
         count, step = request.nights, length / (request.nights + 1)

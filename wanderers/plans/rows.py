@@ -6,14 +6,13 @@ import numpy as np
 import polars as pl
 
 from wanderers.arrays import Floats, Ints
-from wanderers.ephemeris.vectors import separation_deg
+from wanderers.ephemeris.vectors import separation_deg, unit_vectors
 from wanderers.plans import wording
 from wanderers.plans.columns import PLAN_COLUMNS, arranged
 from wanderers.plans.draft import Draft
-from wanderers.plans.frame import directions_of
 from wanderers.plans.replan import Status
-from wanderers.plans.rules import WEEKDAYS
 from wanderers.plans.season import CampaignSeason
+from wanderers.plans.usable import WEEKDAY_NAME
 from wanderers.site import clock
 from wanderers.site.places import Site
 from wanderers.site.zones import zone_named
@@ -64,6 +63,11 @@ def spare_rows(site: Site, season: CampaignSeason, nights: pl.DataFrame, draft: 
     return arranged(table, PLAN_COLUMNS)
 
 
+def directions(nights: pl.DataFrame) -> Floats:
+    """Return where the planet stands on some nights, unit vectors in ICRS axes, shape (3, n)."""
+    return unit_vectors(nights["ra_j2000_deg"].to_numpy(), nights["dec_j2000_deg"].to_numpy())
+
+
 def _described(
     site: Site, season: CampaignSeason, nights: pl.DataFrame, places: Ints, planned: Ints
 ) -> pl.DataFrame:
@@ -72,25 +76,23 @@ def _described(
     zone = zone_named(site.zone)
     times: dict[str, pl.Series] = {}
     for name in TIMES:
-        column = "recommended_jd" if name == "recommended" else f"{name}_jd"
-        jd = table[column].fill_null(np.nan).to_numpy()
+        jd = table[f"{name}_jd"].fill_null(np.nan).to_numpy()
         times |= {f"{name}_utc": clock.utc_texts(jd), f"{name}_local": clock.local_texts(zone, jd)}
-    beginning = float(season.path.along_at(np.array([season.start_jd]))[0])
     return table.with_columns(
         **times,
-        weekday=pl.col("weekday").replace_strict(dict(enumerate(WEEKDAYS)), return_dtype=pl.String),
+        weekday=WEEKDAY_NAME,
         site=pl.lit(site.name),
         zone=pl.lit(zone.name),
         recommended_jd_tt=pl.col("recommended_jd"),
         move_deg=pl.Series(_moves(nights, places, planned), nan_to_null=True),
-        path_deg=pl.col("path_deg") - beginning,
+        path_deg=pl.col("path_deg") - season.path.reached_deg(season.start_jd),
         score=pl.col("score").round(0),
     )
 
 
 def _moves(nights: pl.DataFrame, places: Ints, planned: Ints) -> Floats:
     """Return how far nights lie from the planned night before each, degrees, NaN for the first."""
-    direction = directions_of(nights["ra_j2000_deg"].to_numpy(), nights["dec_j2000_deg"].to_numpy())
+    direction = directions(nights)
     before = np.searchsorted(planned, places) - 1
     if planned.size == 0:
         return np.full(places.size, np.nan)

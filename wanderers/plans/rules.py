@@ -5,6 +5,9 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from typing import Final
 
+import numpy as np
+
+from wanderers.arrays import Floats
 from wanderers.ephemeris.bodies import INNER, Body
 from wanderers.errors import UsageProblem
 from wanderers.site.rules import Rules
@@ -66,6 +69,16 @@ class CampaignRules:
     def watch(self) -> Rules:
         """The part of the rules that opens and closes windows."""
         return Rules(self.min_altitude_deg, self.sun_below_deg, self.criteria)
+
+    @property
+    def weekdays_asked(self) -> tuple[int, ...]:
+        """Weekdays of the evenings that come into question, rising; none where every evening does."""
+        asked = tuple(sorted(set(self.weekdays)))
+        return () if asked == EVERY_DAY else asked
+
+    def moon_limit_deg(self, lit: Floats) -> Floats:
+        """Return the separation to keep from a Moon of which that part is lit, shape (n,)."""
+        return np.where(lit > self.moon_half, self.moon_bright_deg, self.moon_faint_deg)
 
     @property
     def in_twilight(self) -> bool:

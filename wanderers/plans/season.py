@@ -10,6 +10,7 @@ import numpy as np
 import polars as pl
 
 from wanderers import constants, schema
+from wanderers.arrays import Floats
 from wanderers.ephemeris.bodies import INNER, PLANETS, Body
 from wanderers.ephemeris.dates import iso_strings, parse_date
 from wanderers.ephemeris.frames import Frame
@@ -76,6 +77,16 @@ class CampaignSeason:
     end_jd: float
     path: Path
     notes: tuple[str, ...]
+
+    @property
+    def moment_jd(self) -> Floats:
+        """When the moments are, TT, shape (m,)."""
+        return np.array([moment.jd_tt for moment in self.moments])
+
+    @property
+    def moment_deg(self) -> Floats:
+        """Where the moments lie: arc length along the path, degrees, shape (m,)."""
+        return self.path.along_at(self.moment_jd)
 
 
 def campaign_season(

@@ -8,13 +8,12 @@ allows: hour angle, and with it the parallactic angle, changes as little as it c
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Any, Final
+from typing import Final
 
 import numpy as np
 import polars as pl
 
 from wanderers.arrays import Bools, Floats, Ints
-from wanderers.constants import SECONDS_PER_DAY
 from wanderers.ephemeris import kernels
 from wanderers.ephemeris.appearance import appearance
 from wanderers.ephemeris.bodies import Body
@@ -23,24 +22,25 @@ from wanderers.ephemeris.sky import Sky
 from wanderers.ephemeris.store import TrackStore
 from wanderers.ephemeris.vectors import latitude_deg, longitude_deg
 from wanderers.plans.path import Path
-from wanderers.plans.rules import EVERY_DAY, WEEKDAYS, CampaignRules
+from wanderers.plans.rules import WEEKDAYS, CampaignRules
 from wanderers.site import clock, reasons
 from wanderers.site.airmass import airmass, dimmed_magnitude
 from wanderers.site.compass import POINTS, compass_point
 from wanderers.site.evenings import Evenings, evenings
+from wanderers.site.hours import EPOCH_WEEKDAY
 from wanderers.site.ledger import ledger
 from wanderers.site.look import Heaven, View, heaven, margins_of, view_body
 from wanderers.site.places import Site
 from wanderers.site.topocentric import parallactic_angle_deg
 from wanderers.site.visibility import VERDICTS, Verdict, verdicts
+from wanderers.site.zones import Days
 
 SAMPLES: Final = 73
 """Moments tried in a window, apart from culmination: ten minutes apart in a night of twelve hours."""
-INSET_DAYS: Final = 5.0 / 1_440.0
+INSET_DAYS: Final = 5.0 / reasons.MINUTES_PER_DAY
 """How far inside the window the recommended time stays: the first frame must not touch its limits."""
-MINUTES_PER_DAY: Final = SECONDS_PER_DAY / 60.0
-MONDAY_OFFSET: Final = 3
-"""1970-01-01 was a Thursday."""
+WEEKDAY_NAME: Final = pl.col("weekday").replace_strict(dict(enumerate(WEEKDAYS)), return_dtype=pl.String)
+"""In a table of nights, whose weekdays are numbers."""
 DARK_SUN_DEG: Final = -18.0
 TWILIGHT_WORTH: Final = 0.6
 MOONLIGHT_WORTH: Final = 0.6
@@ -61,9 +61,10 @@ def all_nights(
 
     Returns:
         numbers of :func:`wanderers.site.ledger.ledger` with the angles at ``recommended_jd``, and
-        ``evening_date, weekday, usable, reason, recommended_jd, nominal_jd, path_deg, turned_deg, bend``
-        and ``score``; ``reason`` says why a night is not usable and is null where it is. A night without a
-        window is described in its middle, ``nominal_jd``.
+        ``evening_date, weekday, usable, reason, recommended_jd, nominal_jd, path_deg, turned_deg, bend,
+        moon_limit_deg`` (the distance to keep from the Moon) and ``score``; ``reason`` says why a night is
+        not usable and is null where it is. A night without a window is described in its middle,
+        ``nominal_jd``.
 
     Raises:
         SpanError: an evening outside the kernel.
@@ -89,9 +90,9 @@ def all_nights(
     return _judged(_worded(some, table, rules), rules)
 
 
-def weekdays_of(days: np.ndarray[Any, np.dtype[np.datetime64]]) -> Ints:
+def weekdays_of(days: Days) -> Ints:
     """Return the weekday of calendar dates, Monday 0, shape (n,)."""
-    return np.asarray((days.astype("datetime64[D]").astype(np.int64) + MONDAY_OFFSET) % 7)
+    return np.asarray((days.astype("datetime64[D]").astype(np.int64) + EPOCH_WEEKDAY) % 7)
 
 
 def recommended_jd(
@@ -124,10 +125,14 @@ def recommended_jd(
     return out
 
 
+def moon_lit(over: Heaven) -> Floats:
+    """Return the illuminated part of the Moon's disc, shape (n,); NaN without a Moon."""
+    return np.asarray(np.cos(np.radians(over.moon_phase_angle_deg) / 2.0) ** 2)
+
+
 def moon_too_near(over: Heaven, seen: View, rules: CampaignRules) -> Bools:
     """Return where the Moon is up and nearer than its light allows, shape (n,)."""
-    lit = np.cos(np.radians(over.moon_phase_angle_deg) / 2.0) ** 2
-    limit = np.where(lit > rules.moon_half, rules.moon_bright_deg, rules.moon_faint_deg)
+    limit = rules.moon_limit_deg(moon_lit(over))
     return np.asarray((over.moon_altitude_deg > 0.0) & (seen.lights.moon_separation_deg < limit))
 
 
@@ -140,6 +145,7 @@ def look_at(sky: Sky, site: Site, body: Body, jd: Floats, rules: CampaignRules) 
     fixed = sky.apparent(target, jd)
     margins = margins_of(seen, looks.magnitude, rules.criteria, site)
     extinction = rules.criteria.extinction_at(site.elevation_m)
+    lit = moon_lit(over)
     return {
         "altitude_deg": seen.altitude_deg,
         "airless_altitude_deg": seen.place.airless_altitude_deg,
@@ -156,7 +162,8 @@ def look_at(sky: Sky, site: Site, body: Body, jd: Floats, rules: CampaignRules) 
         "constellation_number": looks.constellation.astype(np.float64),
         "ra_j2000_deg": longitude_deg(fixed)[0],
         "dec_j2000_deg": latitude_deg(fixed)[0],
-        "moon_illuminated": np.cos(np.radians(over.moon_phase_angle_deg) / 2.0) ** 2,
+        "moon_illuminated": lit,
+        "moon_limit_deg": rules.moon_limit_deg(lit),
         "moon_separation_deg": seen.lights.moon_separation_deg,
         "moon_altitude_deg": over.moon_altitude_deg,
         "margin_sky": margins.sky,
@@ -234,12 +241,8 @@ class _Test:
 def _tests(rules: CampaignRules) -> list[_Test]:
     """Return what is asked of a night, in the order in which reasons are given."""
     watchable = pl.col("recommended_jd").is_not_null()
-    minutes = (pl.col("window_end_jd") - pl.col("window_start_jd")) * MINUTES_PER_DAY
-    limit = (
-        pl.when(pl.col("moon_illuminated") > rules.moon_half)
-        .then(rules.moon_bright_deg)
-        .otherwise(rules.moon_faint_deg)
-    )
+    minutes = (pl.col("window_end_jd") - pl.col("window_start_jd")) * reasons.MINUTES_PER_DAY
+    limit = pl.col("moon_limit_deg")
     moon = (pl.col("moon_altitude_deg") > 0.0) & (pl.col("moon_separation_deg") < limit)
     moon_words = pl.concat_str(
         pl.lit("the Moon, "),
@@ -260,9 +263,8 @@ def _tests(rules: CampaignRules) -> list[_Test]:
     if rules.in_twilight:
         lost = watchable & (pl.col("verdict") == Verdict.NOT_VISIBLE.value)
         tests.append(_Test(lost, reasons.obstacle()))
-    if set(rules.weekdays) != set(EVERY_DAY):
-        named = pl.col("weekday").replace_strict(dict(enumerate(WEEKDAYS)), return_dtype=pl.String)
-        wanted = ", ".join(WEEKDAYS[day] for day in sorted(set(rules.weekdays)))
-        other = ~pl.col("weekday").is_in(sorted(set(rules.weekdays)))
-        tests.append(_Test(other, pl.concat_str(pl.lit("a "), named, pl.lit(f", not {wanted}"))))
+    if rules.weekdays_asked:
+        wanted = ", ".join(WEEKDAYS[day] for day in rules.weekdays_asked)
+        other = ~pl.col("weekday").is_in(rules.weekdays_asked)
+        tests.append(_Test(other, pl.concat_str(pl.lit("a "), WEEKDAY_NAME, pl.lit(f", not {wanted}"))))
     return tests

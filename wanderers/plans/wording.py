@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from datetime import date
 from typing import Any, Final
 
 import numpy as np
@@ -12,7 +11,7 @@ from wanderers.plans.columns import CHANGE_COLUMNS, arranged
 from wanderers.plans.draft import Draft
 from wanderers.plans.replan import Status
 from wanderers.plans.request import Aim, CampaignRequest
-from wanderers.plans.rules import EVERY_DAY, WEEKDAYS, CampaignRules
+from wanderers.plans.rules import WEEKDAYS, CampaignRules
 from wanderers.plans.season import NEXT, CampaignSeason, Moment
 from wanderers.site import reasons as sky_words
 
@@ -27,7 +26,6 @@ CLOSER: Final = 0.8
 """Part of the even step below which a step is called closer."""
 TOLD_DEG: Final = 0.05
 MOVED_MINUTES: Final = 15.0
-MINUTES_PER_DAY: Final = 1_440.0
 
 
 def reasons(season: CampaignSeason, nights: pl.DataFrame, draft: Draft, night: int) -> str:
@@ -99,8 +97,8 @@ def notes(
 def rules_sentence(season: CampaignSeason, rules: CampaignRules) -> str:
     """Return what a night had to offer."""
     days = ""
-    if set(rules.weekdays) != set(EVERY_DAY):
-        days = ", on a " + " or ".join(WEEKDAYS[day] for day in sorted(set(rules.weekdays)))
+    if rules.weekdays_asked:
+        days = ", on a " + " or ".join(WEEKDAYS[day] for day in rules.weekdays_asked)
     return (
         f"A night is usable with {season.body.label} {rules.min_altitude_deg:g} degrees up or more and "
         f"the Sun {sky_words.depth_words(rules.sun_below_deg)} for {rules.min_window_minutes:g} minutes or "
@@ -116,7 +114,7 @@ def _at_moment(season: CampaignSeason, moment: Moment, row: dict[str, Any]) -> s
     side = "after" if later_days > 0.0 else "before"
     apart = f"{hours:.0f} hours" if hours < 36.0 else f"{abs(later_days):.0f} days"
     when = "within the hour" if hours < 1.0 else f"{apart} {side} it"
-    off = abs(row["path_deg"] - float(season.path.along_at(np.array([moment.jd_tt]))[0]))
+    off = abs(row["path_deg"] - season.path.reached_deg(moment.jd_tt))
     place = f", {off:.1f} degrees from it along the path" if off >= TOLD_DEG else ""
     return f"{moment.words}, {when}{place}"
 
@@ -133,8 +131,9 @@ def _along_path(nights: pl.DataFrame, draft: Draft, night: int) -> str:
         word = "closer step in the bend"
     usable = np.flatnonzero(nights["usable"].to_numpy())
     earlier = usable[usable < night]
-    if earlier.size and night - int(earlier[-1]) > LONG_BREAK_DAYS:
-        word += f", the first usable night after {night - int(earlier[-1]) - 1} that are not"
+    apart = night - int(earlier[-1]) if earlier.size else 0
+    if apart > LONG_BREAK_DAYS:
+        word += f", the first usable night after {apart - 1} that are not"
     return word
 
 
@@ -150,7 +149,7 @@ def _conditions(row: dict[str, Any]) -> list[str]:
         told.append("Moon down")
     upright = row["culmination_jd"] or row["window_start_jd"]
     upright = min(max(upright, row["window_start_jd"]), row["window_end_jd"])
-    if abs(row["recommended_jd"] - upright) * MINUTES_PER_DAY > MOVED_MINUTES:
+    if abs(row["recommended_jd"] - upright) * sky_words.MINUTES_PER_DAY > MOVED_MINUTES:
         told.append("the field stands tilted: the hour is chosen away from the Moon")
     return told
 
@@ -206,9 +205,8 @@ def _day(nights: pl.DataFrame, moment: Moment) -> str:
 
 def _why_not(nights: pl.DataFrame, moment: Moment, request: CampaignRequest) -> str:
     """Return what spoils the night of a moment."""
-    if request.first_open is not None and np.datetime64(_day(nights, moment)) < np.datetime64(
-        request.first_open
-    ):
+    first_open = request.first_open
+    if first_open is not None and np.datetime64(_day(nights, moment)) < np.datetime64(first_open):
         return "it is past"
     reason = nights["reason"][_nearest(nights, moment)]
     return str(reason) if reason else "the nights near it are skipped or lost, or fewer nights are wanted"
@@ -230,15 +228,9 @@ def _reported(nights: pl.DataFrame, draft: Draft, request: CampaignRequest) -> l
     outside = sorted({day.isoformat() for day in strange} - set(days))
     if outside:
         told.append(f"Not within this campaign and left aside: {', '.join(outside)}.")
-    for day in request.skip:
-        told += _skipped(days, draft, day)
+    told += [
+        f"{day} was not planned: leaving it out changes no planned night."
+        for day in request.skip
+        if day.isoformat() in days and days.index(day.isoformat()) not in draft.old
+    ]
     return told
-
-
-def _skipped(days: list[str], draft: Draft, day: date) -> list[str]:
-    if day.isoformat() not in days:
-        return []
-    night = days.index(day.isoformat())
-    if night not in draft.old:
-        return [f"{day} was not planned: leaving it out changes no planned night."]
-    return []

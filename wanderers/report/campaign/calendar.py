@@ -15,7 +15,6 @@ from icalendar import Event
 from wanderers import __version__
 from wanderers.errors import WanderersError
 from wanderers.plans.replan import Status
-from wanderers.plans.rows import SPARE
 from wanderers.report.calendar_entries import PROVENANCE, UID_ENDING, Entry, read_entry
 from wanderers.report.calendar_update import Published, merged, read_calendar
 from wanderers.report.calendars import CHECKSUM_DIGITS, FIRST_STAMP, ExactText, by_clock, calendar_file
@@ -87,7 +86,7 @@ def _entry(contents: CampaignContents, night: Night) -> Entry:
     component.add("SEQUENCE", 0)
     for name, column in (("DTSTART", "window_start_local"), ("DTEND", "window_end_local")):
         component.add(name, by_clock(_minute(str(night[column])), site))
-    is_spare = night["role"] == SPARE
+    is_spare = words.is_spare(night)
     component.add("STATUS", TENTATIVE if is_spare else STATUS[night["status"]])
     component.add("TRANSP", "TRANSPARENT")
     component.add("CATEGORIES", ExactText("spare night" if is_spare else "planned night"))
@@ -107,7 +106,7 @@ def _minute(local: str) -> dt.datetime:
 def _summary(contents: CampaignContents, night: Night) -> str:
     """Return the title of an entry."""
     name, time = contents.campaign.season.body.label, words.clock(night["recommended_local"])
-    if night["role"] == SPARE:
+    if words.is_spare(night):
         return f"{name}: spare for {words.short_day(night['spare_for'])}, {time}"
     count = contents.plan.height
     must = " (must)" if words.is_must(night) else ""
@@ -117,8 +116,8 @@ def _summary(contents: CampaignContents, night: Night) -> str:
 
 def _description(contents: CampaignContents, night: Night) -> list[str]:
     """Return the lines of an entry's text."""
-    kernel, framing = contents.kernel, contents.framing
-    spares = "" if night["role"] == SPARE else words.if_cloudy(contents, night)
+    kernel = contents.kernel
+    spares = "" if words.is_spare(night) else words.if_cloudy(contents, night)
     warned = [night["caution"]] if night["caution"] else []
     if cautions.is_near_sun(contents):
         warned.append(cautions.SUN)
@@ -126,7 +125,7 @@ def _description(contents: CampaignContents, night: Night) -> list[str]:
         f"Recommended time {words.clock(night['recommended_local'])} ({night['zone']}), "
         f"{words.night_words(night)}: {words.place_words(night)}.",
         f"Why: {night['reasons']}.",
-        f"Lens {framing.lens_mm:.4g} mm, magnitude {words.magnitude(night['magnitude'])}.",
+        f"Lens {words.lens(contents)}, magnitude {words.magnitude(night['magnitude'])}.",
         *([spares] if spares else []),
         *warned,
         f"{PROVENANCE}{kernel.name} (SHA-256 {kernel.sha256[:CHECKSUM_DIGITS]}) by wanderers {__version__}.",

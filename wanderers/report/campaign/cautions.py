@@ -21,6 +21,7 @@ LASER = (
     "people or animals."
 )
 LOCAL = "Local rules come first."
+ALWAYS = (SITE, LASER, LOCAL)
 MODEL = (
     "Magnitudes are those of a model and leave out dust storms and the like; times are good to a minute, and "
     "clocks as the zone's rules now stand."
@@ -29,7 +30,7 @@ MODEL = (
 
 def cautions(contents: CampaignContents) -> list[str]:
     """Return the cautions that a campaign's papers carry, the most important first."""
-    return [*([SUN] if is_near_sun(contents) else []), SITE, LASER, LOCAL]
+    return [*([SUN] if is_near_sun(contents) else []), *ALWAYS]
 
 
 def is_near_sun(contents: CampaignContents) -> bool:

@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass, replace
-from typing import Final
+from typing import Any, Final
 
 import numpy as np
 import polars as pl
@@ -16,9 +17,10 @@ from wanderers.plans.camera import FULL_FRAME, Framing, Sensor, frame_path, tilt
 from wanderers.plans.campaign import Campaign
 from wanderers.plans.comparison_stars import Comparisons, comparison_stars
 from wanderers.plans.field_stars import RegistrationStars, registration_stars
-from wanderers.plans.frame import DEFAULT_MARGIN, CameraFrame, directions_of
+from wanderers.plans.frame import DEFAULT_MARGIN, CameraFrame
 from wanderers.plans.path import direction_at
 from wanderers.plans.replan import Status
+from wanderers.plans.rows import directions
 from wanderers.report.campaign.sky_clock import SkyClock, sky_clock
 
 PX_COLUMNS: Final = ("x_px", "y_px", "move_px", "camera_tilt_deg")
@@ -83,6 +85,12 @@ class CampaignContents:
         """Whether south is nearer to the top of the picture than north."""
         return bool(np.cos(np.radians(self.frame.position_angle_deg)) < 0.0)
 
+    def compared_nights(self) -> Iterator[tuple[dict[str, Any], pl.DataFrame, str]]:
+        """Give each night on which the brightness can be estimated: its row, its stars, why it has none."""
+        stars = self.comparisons.table
+        for number, (place, message) in enumerate(zip(self.compared, self.comparisons.messages, strict=True)):
+            yield self.plan.row(place, named=True), stars.filter(pl.col("night") == number), message
+
 
 def gather_campaign(store: TrackStore, campaign: Campaign, camera: CameraChoice) -> CampaignContents:
     """Compute what the files of a campaign hold.
@@ -95,7 +103,14 @@ def gather_campaign(store: TrackStore, campaign: Campaign, camera: CameraChoice)
     tracks = store.tracks(float(season.path.jd[0]), float(season.path.jd[-1]))
     jd = np.append(np.arange(season.start_jd, season.end_jd, 1.0), season.end_jd)
     path = direction_at(Sky(tracks), season.body, jd)
-    framing = _as_it_stands(campaign, _framing(path, camera), path, camera)
+    framing = frame_path(
+        path,
+        camera.sensor,
+        lens_mm=camera.lens_mm,
+        margin=camera.margin,
+        position_angle_deg=camera.position_angle_deg,
+    )
+    framing = _as_it_stands(campaign, framing, path, camera)
     middle = float(jd[jd.size // 2])
     stars = registration_stars(framing.frame, path, middle, camera.sensor.columns, camera.sensor.rows)
     compared = tuple(np.flatnonzero(_to_estimate(campaign.plan)).tolist())
@@ -118,16 +133,6 @@ def gather_campaign(store: TrackStore, campaign: Campaign, camera: CameraChoice)
 def to_come(plan: pl.DataFrame) -> pl.DataFrame:
     """Return the planned nights that are neither done nor lost."""
     return plan.filter(pl.col("status") == Status.PLANNED.value)
-
-
-def _framing(path: Floats, camera: CameraChoice) -> Framing:
-    return frame_path(
-        path,
-        camera.sensor,
-        lens_mm=camera.lens_mm,
-        margin=camera.margin,
-        position_angle_deg=camera.position_angle_deg,
-    )
 
 
 def _as_it_stands(campaign: Campaign, framing: Framing, path: Floats, camera: CameraChoice) -> Framing:
@@ -172,5 +177,4 @@ def _in_frame(nights: pl.DataFrame, plan: pl.DataFrame, framing: Framing) -> pl.
 
 def _pixels(nights: pl.DataFrame, framing: Framing) -> Floats:
     """Return the places of nights in the picture, shape (n, 2)."""
-    directions = directions_of(nights["ra_j2000_deg"].to_numpy(), nights["dec_j2000_deg"].to_numpy())
-    return framing.frame.pixels(directions, framing.sensor.columns, framing.sensor.rows)
+    return framing.frame.pixels(directions(nights), framing.sensor.columns, framing.sensor.rows)

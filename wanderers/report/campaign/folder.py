@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import hashlib
 import json
 import os
 import shutil
@@ -14,6 +13,7 @@ import polars as pl
 from matplotlib.figure import Figure
 
 from wanderers import __version__
+from wanderers.ephemeris.checksums import sha256_of
 from wanderers.ephemeris.store import TrackStore
 from wanderers.files import reported_as_output_error
 from wanderers.plans.campaign import Campaign
@@ -129,6 +129,7 @@ def _sheets() -> dict[str, str]:
 def _write_tables(contents: CampaignContents, folder: Path) -> dict[str, str]:
     """Write the tables; return the files' names and what they hold."""
     plan = "a row a planned night; fill in its status and give it to --done to plan anew"
+    changes = contents.campaign.changes
     tables: tuple[tuple[str, pl.DataFrame, str], ...] = (
         ("plan.csv", contents.plan, plan),
         ("plan.parquet", contents.plan, "the same as Parquet"),
@@ -136,11 +137,7 @@ def _write_tables(contents: CampaignContents, folder: Path) -> dict[str, str]:
         ("stars.csv", log.lettered(contents), "registration stars, with their letters on the chart"),
         ("comparison_stars.csv", log.compared(contents), "comparison stars by night"),
         ("brightness_log.csv", log.blank_log(contents), "a log of brightness estimates to fill in"),
-        *(
-            (("changes.csv", contents.campaign.changes, "what planning anew changed"),)
-            if _replanned(contents)
-            else ()
-        ),
+        *(() if changes.is_empty() else (("changes.csv", changes, "what planning anew changed"),)),
     )
     for name, table, _ in tables:
         if name.endswith(".csv"):
@@ -148,10 +145,6 @@ def _write_tables(contents: CampaignContents, folder: Path) -> dict[str, str]:
         else:
             table.write_parquet(folder / name)
     return {name: holds for name, _, holds in tables}
-
-
-def _replanned(contents: CampaignContents) -> bool:
-    return not contents.campaign.changes.is_empty()
 
 
 def _write_calendar(contents: CampaignContents, earlier: Path, folder: Path) -> dict[str, str]:
@@ -169,7 +162,7 @@ def _keep_handwriting(earlier: Path, building: Path) -> dict[str, str]:
     changed = [
         name
         for name, digest in sorted(listed.items())
-        if (earlier / name).is_file() and (name.startswith(f"{KEPT}/") or _digest(earlier / name) != digest)
+        if (earlier / name).is_file() and (name.startswith(f"{KEPT}/") or sha256_of(earlier / name) != digest)
     ]
     kept = {}
     for name in changed:
@@ -187,10 +180,6 @@ def _free_name(folder: Path, name: str) -> Path:
     return first if not first.exists() else next(path for path in taken if not path.exists())
 
 
-def _digest(path: Path) -> str:
-    return hashlib.sha256(path.read_bytes()).hexdigest()
-
-
 def _write_manifest(contents: CampaignContents, folder: Path) -> None:
     """Write the list of files with their checksums, and what they were made from."""
     campaign, kernel = contents.campaign, contents.kernel
@@ -204,6 +193,6 @@ def _write_manifest(contents: CampaignContents, folder: Path) -> None:
         "kernel": kernel.name,
         "kernel_sha256": kernel.sha256,
         "files": sorted(paths),
-        "sha256": {name: _digest(path) for name, path in sorted(paths.items())},
+        "sha256": {name: sha256_of(path) for name, path in sorted(paths.items())},
     }
     (folder / CAMPAIGN.manifest).write_text(json.dumps(manifest, indent=1) + "\n", encoding="utf-8")

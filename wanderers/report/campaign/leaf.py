@@ -8,32 +8,23 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import Final
 
-from matplotlib.axes import Axes
-from matplotlib.backends.backend_pdf import FigureCanvasPdf
-from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
 from matplotlib.patches import Rectangle
 
 from wanderers.report.wall import text as type_setting
-from wanderers.report.wall.layout import MM, PT_PER_IN, Box, Paper
+from wanderers.report.wall.layout import MM, Page, Paper
 
 MARGIN: Final = 10.0 * MM
 INK: Final = "#000000"
 RULE: Final = "#555555"
 
 
-class Leaf:
+class Leaf(Page):
     """One page, long side upright, written from the top down."""
 
     def __init__(self, paper: Paper) -> None:
         """Take a fresh page."""
-        self.height, self.width = paper.size_pt
-        self.figure = Figure(figsize=(self.width / PT_PER_IN, self.height / PT_PER_IN), dpi=PT_PER_IN)
-        FigureCanvasPdf(self.figure)
-        self.ax: Axes = self.figure.add_axes((0.0, 0.0, 1.0, 1.0))
-        self.ax.set(xlim=(0.0, self.width), ylim=(0.0, self.height))
-        self.ax.set_axis_off()
-        self.printed: list[tuple[str, Box]] = []
+        super().__init__(*reversed(paper.size_pt))
         self.y = self.height - MARGIN
 
     @property
@@ -52,26 +43,11 @@ class Leaf:
         return self.y - MARGIN
 
     def text(
-        self, x: float, y: float, words: str, size: float, *, bold: bool = False, align: str = "left"
-    ) -> float:
-        """Write one line that stands on y; return its width."""
-        words = type_setting.printable(words)
-        wide = type_setting.width_pt(words, size, bold=bold)
-        start = {"left": x, "right": x - wide, "center": x - wide / 2.0}[align]
-        self.ax.text(
-            start,
-            y,
-            words,
-            fontsize=size,
-            weight="bold" if bold else "normal",
-            color=INK,
-            ha="left",
-            va="baseline",
-            parse_math=False,
-        )
-        reach = Box(start, y - type_setting.DESCENT * size, start + wide, y + type_setting.ASCENT * size)
-        self.printed.append((words, reach))
-        return wide
+        self, x: float, y: float, words: str, size: float, *, bold: bool = False, ink: str = INK,
+        align: str = "left",
+    ) -> float:  # fmt: skip
+        """Write one line that stands on y, letters that the font lacks as squares; return its width."""
+        return super().text(x, y, type_setting.printable(words), size, bold=bold, ink=ink, align=align)
 
     def line(self, words: str, size: float, *, bold: bool = False, gap: float = 0.0) -> None:
         """Write one line below the last."""

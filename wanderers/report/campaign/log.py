@@ -2,15 +2,23 @@
 
 from __future__ import annotations
 
-from typing import Final
+from typing import Any, Final
 
 import polars as pl
 
+from wanderers.plans.comparison_stars import STARS_A_NIGHT
 from wanderers.report.campaign import words
 from wanderers.report.campaign.contents import CampaignContents
 from wanderers.report.charts.campaign_backdrop import LETTERS
 
-STARS_A_NIGHT: Final = 3
+PREDICTED: Final[dict[str, type[pl.DataType]]] = {
+    "evening_date": pl.String,
+    "planned_local_time": pl.String,
+    "predicted_mag": pl.Float64,
+    "altitude_deg": pl.Float64,
+    "airmass": pl.Float64,
+}
+"""Columns of the log that tell what to expect; the comparison stars follow."""
 TO_FILL_IN: Final = (
     "observed_local_time",
     "brighter_star",
@@ -45,39 +53,24 @@ def compared(contents: CampaignContents) -> pl.DataFrame:
 
 def blank_log(contents: CampaignContents) -> pl.DataFrame:
     """Return a line a planned night: what is predicted, its comparison stars, and columns to fill in."""
-    rows = []
-    table = contents.comparisons.table
-    for place, at in enumerate(contents.compared):
-        night = contents.plan.row(at, named=True)
-        stars = table.filter(pl.col("night") == place).select("star", "v_mag").rows()
-        stars += [(None, None)] * (STARS_A_NIGHT - len(stars))
-        rows.append(
-            {
-                "evening_date": night["evening_date"],
-                "planned_local_time": words.clock(night["recommended_local"]),
-                "predicted_mag": round(night["magnitude"], 2) if night["magnitude"] is not None else None,
-                "altitude_deg": round(night["altitude_deg"], 1),
-                "airmass": round(night["airmass"], 2),
-            }
-            | {
-                f"{name}_{number}": value
-                for number, star in enumerate(stars, 1)
-                for name, value in zip(("star", "v_mag"), star, strict=True)
-            }
-        )
-    return pl.DataFrame(rows, schema=_schema()).with_columns(
+    columns = dict(PREDICTED)
+    for number in range(1, STARS_A_NIGHT + 1):
+        columns |= {f"star_{number}": pl.String, f"v_mag_{number}": pl.Float64}
+    rows = [_predicted(night, stars) for night, stars, _ in contents.compared_nights()]
+    return pl.DataFrame(rows, schema=columns, orient="row").with_columns(
         pl.lit(None, dtype=pl.String).alias(name) for name in TO_FILL_IN
     )
 
 
-def _schema() -> dict[str, type[pl.DataType]]:
-    stars: dict[str, type[pl.DataType]] = {}
-    for number in range(1, STARS_A_NIGHT + 1):
-        stars |= {f"star_{number}": pl.String, f"v_mag_{number}": pl.Float64}
-    return {
-        "evening_date": pl.String,
-        "planned_local_time": pl.String,
-        "predicted_mag": pl.Float64,
-        "altitude_deg": pl.Float64,
-        "airmass": pl.Float64,
-    } | stars
+def _predicted(night: words.Night, stars: pl.DataFrame) -> list[Any]:
+    """Return a line of the log as far as it is filled in."""
+    own = stars.select("star", "v_mag").rows()
+    own += [(None, None)] * (STARS_A_NIGHT - len(own))
+    return [
+        night["evening_date"],
+        words.clock(night["recommended_local"]),
+        round(night["magnitude"], 2) if night["magnitude"] is not None else None,
+        round(night["altitude_deg"], 1),
+        round(night["airmass"], 2),
+        *(value for star in own for value in star),
+    ]

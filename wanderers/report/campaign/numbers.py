@@ -30,7 +30,7 @@ def frame_facts(contents: CampaignContents) -> list[Fact]:
     return [
         ("Sensor", f"{sensor.name}, {sensor.width_mm:g} × {sensor.height_mm:g} mm"),
         ("Pixels", f"{sensor.columns} × {sensor.rows}, {sensor.pixel_um:.1f} µm{pixels}"),
-        ("Lens", f"{framing.lens_mm:.4g} mm"),
+        ("Lens", words.lens(contents)),
         ("Picture", f"{frame.width_deg:.1f}° × {frame.height_deg:.1f}°"),
         ("Middle (J2000)", middle(contents)),
         ("Upper edge", f"position angle {frame.position_angle_deg:.0f}° (from north through east)"),
@@ -142,23 +142,18 @@ class Comparison:
 
 def comparison_rows(contents: CampaignContents) -> list[Comparison]:
     """Return which stars to set the planet against, a row a planned night that is still to come."""
-    out = []
-    table = contents.comparisons.table
-    for number, at in enumerate(contents.compared):
-        night = contents.plan.row(at, named=True)
-        own = table.filter(table["night"] == number)
-        out.append(
-            Comparison(
-                night=str(night["night"]),
-                evening=words.short_day(night["evening_date"]),
-                time=words.clock(night["recommended_local"]),
-                planet=f"{words.magnitude(night['magnitude'])}, air mass {night['airmass']:.1f}",
-                stars=tuple(_star_text(star) for star in own.iter_rows(named=True)),
-                notes=tuple(str(star["note"] or "") for star in own.iter_rows(named=True)),
-                message=contents.comparisons.messages[number],
-            )
+    return [
+        Comparison(
+            night=str(night["night"]),
+            evening=words.short_day(night["evening_date"]),
+            time=words.clock(night["recommended_local"]),
+            planet=f"{words.magnitude(night['magnitude'])}, air mass {night['airmass']:.1f}",
+            stars=tuple(_star_text(star) for star in stars.iter_rows(named=True)),
+            notes=tuple(str(note or "") for note in stars["note"].to_list()),
+            message=message,
         )
-    return out
+        for night, stars, message in contents.compared_nights()
+    ]
 
 
 def _star_text(star: words.Night) -> str:

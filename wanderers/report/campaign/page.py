@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import base64
-import hashlib
 from collections.abc import Mapping
 from dataclasses import dataclass, fields
 from typing import Final
@@ -12,6 +10,7 @@ from markupsafe import Markup
 
 from wanderers import __version__
 from wanderers.plans.replan import Status
+from wanderers.plans.rows import MUST
 from wanderers.plans.wording import rules_sentence
 from wanderers.report.calendars import CHECKSUM_DIGITS
 from wanderers.report.campaign import cautions, numbers, words
@@ -20,7 +19,7 @@ from wanderers.report.campaign.numbers import Comparison, Fact, StarRow
 from wanderers.report.campaign.words import Night
 from wanderers.report.charts import timeaxis
 from wanderers.report.pictures import Picture
-from wanderers.report.render import environment, packaged
+from wanderers.report.render import environment, packaged, policy_hash
 from wanderers.site.zones import zone_data_version
 
 TEMPLATE: Final = "campaign.html.j2"
@@ -123,14 +122,13 @@ def page_of(
         files: what lies beside the page, and what each file holds.
     """
     campaign = contents.campaign
-    near_sun = cautions.SUN if cautions.is_near_sun(contents) else ""
     return CampaignPage(
         title=_title(contents),
         lead=_lead(contents),
         basis=_basis(contents),
         next_words=tuple(words.what_next(contents)),
         chances=tuple(words.chances_words(contents)),
-        nights=tuple(_night_row(contents, night) for night in contents.plan.iter_rows(named=True)),
+        nights=tuple(_night_row(night) for night in contents.plan.iter_rows(named=True)),
         moments=_moment_rows(contents),
         changes=tuple(
             (words.long_day(row["evening_date"]), row["change"], row["reason"] or "")
@@ -145,8 +143,8 @@ def page_of(
         stars_message=contents.registration.message,
         comparisons=tuple(numbers.comparison_rows(contents)),
         pictures=pictures,
-        near_sun=near_sun,
-        cautions=tuple(text for text in cautions.cautions(contents) if text != near_sun),
+        near_sun=cautions.SUN if cautions.is_near_sun(contents) else "",
+        cautions=cautions.ALWAYS,
         files=tuple(files.items()),
         provenance=_provenance(contents),
         generator=f"wanderers {__version__}",
@@ -156,7 +154,6 @@ def page_of(
 def rendered(page: CampaignPage) -> str:
     """Return the page as HTML that holds everything it needs."""
     program = f"\n{packaged('dossier.js')}"
-    digest = base64.b64encode(hashlib.sha256(program.encode()).digest()).decode()
     return (
         environment()
         .get_template(TEMPLATE)
@@ -164,7 +161,7 @@ def rendered(page: CampaignPage) -> str:
             {name.name: getattr(page, name.name) for name in fields(page)},
             style=Markup(packaged("page.css") + packaged("campaign.css")),
             program=Markup(program),
-            program_hash=f"sha256-{digest}",
+            program_hash=policy_hash(program),
         )
     )
 
@@ -184,7 +181,7 @@ def _lead(contents: CampaignContents) -> str:
         return f"{path}; no night of it can be had from here."
     gone = {name: int((contents.plan["status"] == name).sum()) for name in (Status.DONE, Status.LOST)}
     past = ", ".join(f"{count} {name.value}" for name, count in gone.items() if count)
-    musts = int((contents.plan["role"] == "must").sum())
+    musts = int((contents.plan["role"] == MUST).sum())
     return (
         f"{path}: {contents.plan.height} nights{f' ({past})' if past else ''}, {musts} of them must-nights, "
         f"and {contents.spares.height} spares."
@@ -192,7 +189,7 @@ def _lead(contents: CampaignContents) -> str:
 
 
 def _basis(contents: CampaignContents) -> tuple[Fact, ...]:
-    campaign, site, framing = contents.campaign, contents.campaign.site, contents.framing
+    campaign, site = contents.campaign, contents.campaign.site
     return (
         (
             "Site",
@@ -202,17 +199,17 @@ def _basis(contents: CampaignContents) -> tuple[Fact, ...]:
         ("Clock", site.zone),
         ("Season", str(campaign.season.row["season_id"])),
         ("Planned as of", words.as_of(contents).isoformat()),
-        ("Camera", f"{framing.sensor.name}, {framing.lens_mm:.4g} mm"),
+        ("Camera", f"{contents.framing.sensor.name}, {words.lens(contents)}"),
         ("Nights lost to clouds", f"{campaign.request.cloudy * 100.0:.0f} %, as assumed"),
     )
 
 
-def _night_row(contents: CampaignContents, night: Night) -> NightRow:
+def _night_row(night: Night) -> NightRow:
     diameter, move = night["diameter_arcsec"], night["move_deg"]
     pixels = "" if night["move_px"] is None else f", {night['move_px']:.0f} px"
     return NightRow(
         number=str(night["night"]),
-        evening=f"{str(night['weekday'])[:3]} {words.short_day(night['evening_date'])}",
+        evening=words.short_evening(night),
         evening_date=str(night["evening_date"]),
         role=words.role(night),
         is_must=words.is_must(night),
@@ -235,9 +232,7 @@ def _moment_rows(contents: CampaignContents) -> tuple[MomentRow, ...]:
     """Return the moments that must be had, in order of time."""
     chances = {moment.name: moment for moment in contents.campaign.chances.moments}
     held = {
-        name: night
-        for night in contents.plan.iter_rows(named=True)
-        for name in str(night["moment"] or "").split("+")
+        name: night for night in contents.plan.iter_rows(named=True) for name in words.moment_names(night)
     }
     rows = []
     for moment in contents.campaign.season.moments:

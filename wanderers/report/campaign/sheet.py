@@ -21,7 +21,7 @@ from wanderers.report.campaign.words import Night
 from wanderers.report.charts.campaign_field import picture_shape, plot_campaign_field
 from wanderers.report.charts.style import LIGHT, in_force
 from wanderers.report.wall.layout import Paper
-from wanderers.report.wall.text import printable, width_pt
+from wanderers.report.wall.text import LEADING, printable, width_pt
 
 TYPE_PT: Final = 11.0
 """Smallest type: read by dim red light. Common practice, no source."""
@@ -144,11 +144,10 @@ def _write_purpose(leaf: Leaf, contents: CampaignContents) -> None:
 
 def lens_line(contents: CampaignContents) -> str:
     """Return lens, middle and roll in one line."""
-    framing = contents.framing
     lean = contents.plan["camera_tilt_deg"].drop_nulls()
     tilt = "" if lean.is_empty() else f", tilt from upright {_range(lean.min(), lean.max())}"
     return (
-        f"Lens {framing.lens_mm:.4g} mm on {framing.sensor.name}; middle {numbers.middle(contents)} (J2000); "
+        f"{words.lens_on_sensor(contents)}; middle {numbers.middle(contents)} (J2000); "
         f"upper edge at position angle {contents.frame.position_angle_deg:.0f}°{tilt}."
     )
 
@@ -197,7 +196,7 @@ def _write_night(leaf: Leaf, night: Night, edges: list[float], note: str, height
     late = "+" if words.is_after_midnight(night) else ""
     cells = (
         str(night["night"]),
-        f"{str(night['weekday'])[:3]} {words.short_day(night['evening_date'])}",
+        words.short_evening(night),
         f"{words.clock(night['recommended_local'])}{late}",
         words.window(night),
         words.place(night),
@@ -230,12 +229,12 @@ def _about(contents: CampaignContents) -> list[tuple[str, list[str]]]:
 def _about_height(about: list[tuple[str, list[str]]], leaf: Leaf) -> float:
     """Return how much room the second page's texts take."""
     width = leaf.right - leaf.left
-    heads = len(about) * (2.0 * GAP_PT + 1.17 * HEAD_PT)
+    heads = len(about) * (2.0 * GAP_PT + LEADING * HEAD_PT)
     return heads + sum(paragraph_height(texts, TYPE_PT, width, 1.0, 10.0) for _, texts in about)
 
 
 def _log_height(rows: int) -> float:
-    return 2.0 * GAP_PT + 1.17 * HEAD_PT + 6.0 + TYPE_PT + 4.0 + rows * LOG_ROW_PT
+    return 2.0 * GAP_PT + LEADING * HEAD_PT + 6.0 + TYPE_PT + 4.0 + rows * LOG_ROW_PT
 
 
 def _map_height(contents: CampaignContents, leaf: Leaf, room: float) -> float:

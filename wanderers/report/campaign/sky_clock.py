@@ -14,6 +14,7 @@ from wanderers.ephemeris.store import TrackStore
 from wanderers.ephemeris.timescales import jd_utc_from_tt
 from wanderers.plans.campaign import Campaign
 from wanderers.plans.request import evening_span
+from wanderers.plans.usable import moon_lit
 from wanderers.site.evenings import evenings
 from wanderers.site.look import heaven, view_body
 from wanderers.site.zones import UNIX_EPOCH_JD, Days
@@ -50,12 +51,17 @@ class SkyClock:
     @property
     def day_jd(self) -> Floats:
         """Place of each evening on a time axis: its date as a Julian Day number, shape (n,)."""
-        return np.asarray(UNIX_EPOCH_JD + self.days.astype("datetime64[D]").astype(np.int64))
+        return _day_jd(self.days)
 
     def hour_of(self, day_jd: Floats, jd_tt: Floats) -> Floats:
         """Return the clock time of instants in evenings given by ``day_jd``, shape (k,), as ``hour``."""
         noon = np.interp(day_jd, self.day_jd, self.noon_jd)
         return np.asarray(self.hour[0] + HOURS * (jd_tt - noon))
+
+
+def _day_jd(days: Days) -> Floats:
+    """Return calendar dates as Julian Day numbers, shape (n,)."""
+    return np.asarray(UNIX_EPOCH_JD + days.astype("datetime64[D]").astype(np.int64))
 
 
 def sky_clock(store: TrackStore, campaign: Campaign) -> SkyClock:
@@ -69,17 +75,15 @@ def sky_clock(store: TrackStore, campaign: Campaign) -> SkyClock:
     seen = view_body(sky, over, body.order)
     hills = site.horizon.altitude_deg(seen.place.azimuth_deg)
     limit = np.maximum(hills, campaign.rules.min_altitude_deg)
-    lit = np.cos(np.radians(over.moon_phase_angle_deg) / 2.0) ** 2
     noon_utc = jd_utc_from_tt(start)
     clock = noon_utc + some.zone.offset_s(noon_utc) / SECONDS_PER_DAY
-    date_jd = UNIX_EPOCH_JD + some.days.astype("datetime64[D]").astype(np.int64)
-    begins = round(float(np.median(HOURS * (clock - date_jd))), 4)
+    begins = round(float(np.median(HOURS * (clock - _day_jd(some.days)))), 4)
     return SkyClock(
         days=some.days,
         noon_jd=start,
         hour=begins + np.linspace(0.0, HOURS, STEPS + 1),
         sun_altitude_deg=over.sun_altitude_deg.reshape(jd.shape),
         moon_altitude_deg=over.moon_altitude_deg.reshape(jd.shape),
-        moon_illuminated=lit.reshape(jd.shape)[STEPS // 2],
+        moon_illuminated=moon_lit(over).reshape(jd.shape)[STEPS // 2],
         above_limit_deg=(seen.altitude_deg - limit).reshape(jd.shape),
     )

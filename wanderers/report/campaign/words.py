@@ -4,25 +4,25 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from datetime import date
+from itertools import zip_longest
 from typing import Any, Final
 
 import numpy as np
 import polars as pl
 
 from wanderers.plans.replan import Status
-from wanderers.plans.rows import MUST
+from wanderers.plans.rows import GOOD, MUST, SPARE
 from wanderers.report.campaign.contents import CampaignContents, to_come
 from wanderers.report.charts.timeaxis import MONTH_NAMES, MONTHS
+from wanderers.report.facts import MINUS
 from wanderers.site.compass import LETTERS, POINTS
 
 Night = Mapping[str, Any]
 """A row of a plan or of a table of spares."""
 
 MINUTES_A_DAY: Final = 1_440
-ROLE_WORDS: Final = {"must": "must", "good": "planned", "spare": "spare"}
-MINUS: Final = "\N{MINUS SIGN}"
+ROLE_WORDS: Final = {MUST: "must", GOOD: "planned", SPARE: "spare"}
 DOWN: Final = "down"
-SHORT_DAYS: Final = 3
 
 
 def clock(local: str | None) -> str:
@@ -46,6 +46,17 @@ def short_day(evening: str) -> str:
     return f"{int(day)}\N{NO-BREAK SPACE}{MONTHS[int(month) - 1]}"
 
 
+def short_evening(night: Night) -> str:
+    """Return a night's evening as Wed 3 Mar."""
+    return f"{str(night['weekday'])[:3]} {short_day(night['evening_date'])}"
+
+
+def _day_before(day: str, later: str) -> str:
+    """Return a date that a later one follows, the month named only where it changes: 14, or 30 Nov."""
+    month, _, number = day.rpartition("-")
+    return str(int(number)) if month == later.rpartition("-")[0] else short_day(day)
+
+
 def long_day(evening: str) -> str:
     """Return a date as 3 March 2027."""
     year, month, day = evening.rsplit("-", 2)
@@ -60,9 +71,7 @@ def next_day(evening: str) -> str:
 def night_words(night: Night) -> str:
     """Return which night is meant, both dates named: the night of Friday 13 to 14 November 2026."""
     first, last = str(night["evening_date"]), next_day(str(night["evening_date"]))
-    same = first.rsplit("-", 1)[0] == last.rsplit("-", 1)[0]
-    begin = str(int(first.rsplit("-", 1)[1])) if same else short_day(first)
-    return f"the night of {night['weekday']} {begin} to {long_day(last)}"
+    return f"the night of {night['weekday']} {_day_before(first, last)} to {long_day(last)}"
 
 
 def window(night: Night) -> str:
@@ -130,10 +139,15 @@ def sun_words(contents: CampaignContents, night: Night) -> str:
     return f"{verb} {at}" if at else ""
 
 
+def moment_names(night: Night) -> list[str]:
+    """Return the names of the moments that a night serves."""
+    return [name for name in str(night["moment"] or "").split("+") if name]
+
+
 def moments_words(contents: CampaignContents, night: Night) -> list[str]:
     """Return what a night serves, in words."""
     told = {moment.name: moment.words for moment in contents.campaign.season.moments}
-    return [told[name] for name in str(night["moment"] or "").split("+") if name]
+    return [told[name] for name in moment_names(night)]
 
 
 def role(night: Night) -> str:
@@ -148,6 +162,11 @@ def is_must(night: Night) -> bool:
     return bool(night["role"] == MUST)
 
 
+def is_spare(night: Night) -> bool:
+    """Return whether a night stands in for another."""
+    return bool(night["role"] == SPARE)
+
+
 def spares_of(contents: CampaignContents, night: Night) -> list[Night]:
     """Return a night's spares in the order in which to try them."""
     known = {row["evening_date"]: row for row in contents.spares.iter_rows(named=True)}
@@ -157,12 +176,7 @@ def spares_of(contents: CampaignContents, night: Night) -> list[Night]:
 def spare_days(night: Night) -> str:
     """Return the evening dates of a night's spares, months named where they change: 14, 15 Nov."""
     days = str(night["spares"] or "").split()
-    parts = []
-    for number, day in enumerate(days):
-        later = days[number + 1] if number + 1 < len(days) else ""
-        same = day.rsplit("-", 1)[0] == later.rsplit("-", 1)[0]
-        parts.append(str(int(day.rsplit("-", 1)[1])) if same else short_day(day))
-    return ", ".join(parts)
+    return ", ".join(_day_before(day, later) for day, later in zip_longest(days, days[1:], fillvalue=""))
 
 
 def next_night(contents: CampaignContents) -> Night | None:
@@ -206,10 +220,20 @@ def what_next(contents: CampaignContents) -> list[str]:
     return [*told, if_cloudy(contents, night)]
 
 
+def lens(contents: CampaignContents) -> str:
+    """Return the focal length."""
+    return f"{contents.framing.lens_mm:.4g} mm"
+
+
+def lens_on_sensor(contents: CampaignContents) -> str:
+    """Return the lens and what it sits on."""
+    return f"Lens {lens(contents)} on {contents.framing.sensor.name}"
+
+
 def lens_words(contents: CampaignContents, night: Night) -> str:
     """Return with which lens a night is taken, and how the camera then leans."""
-    framing, lean = contents.framing, night["camera_tilt_deg"]
-    text = f"Lens {framing.lens_mm:.4g} mm on {framing.sensor.name}, aimed and turned as on the chart"
+    lean = night["camera_tilt_deg"]
+    text = f"{lens_on_sensor(contents)}, aimed and turned as on the chart"
     if lean is None or abs(lean) < 0.5:
         return f"{text}." if lean is None else f"{text}: upright at that time."
     return f"{text}: at that time its upper side leans {abs(lean):.0f} degrees to the {side(lean)}."
@@ -264,7 +288,7 @@ def chances_words(contents: CampaignContents) -> list[str]:
     if contents.campaign.is_empty:
         return []
     share = f"With {chances.cloudy * 100.0:.0f} % of nights lost to clouds"
-    told = [
+    return [
         f"{share}, the chance of getting both turns is {percent(chances.both_turns)}.",
         f"Of {chances.planned} frames, {chances.expected_frames:.0f} are to be expected without spares and "
         f"{chances.expected_frames_with_spares:.0f} with them.",
@@ -274,4 +298,3 @@ def chances_words(contents: CampaignContents) -> list[str]:
         "to be expected under clouds, without spares.",
         "Each night counts as lost by itself; clouds come in spells, so neighbouring nights fare worse.",
     ]
-    return told

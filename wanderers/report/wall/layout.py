@@ -63,23 +63,18 @@ class Box:
         return Box(self.left + gap, self.bottom + gap, self.right - gap, self.top - gap)
 
 
-class Sheet:
+class Page:
     """One page to draw on."""
 
-    def __init__(self, paper: Paper) -> None:
-        """Take a fresh page."""
-        self.width, self.height = paper.size_pt
+    def __init__(self, width: float, height: float) -> None:
+        """Take a fresh page of a size."""
+        self.width, self.height = width, height
         self.figure = Figure(figsize=(self.width / PT_PER_IN, self.height / PT_PER_IN), dpi=PT_PER_IN)
         FigureCanvasPdf(self.figure)
         self.ax: Axes = self.figure.add_axes((0.0, 0.0, 1.0, 1.0))
         self.ax.set(xlim=(0.0, self.width), ylim=(0.0, self.height))
         self.ax.set_axis_off()
         self.printed: list[tuple[str, Box]] = []
-
-    @property
-    def body(self) -> Box:
-        """What lies within the margins."""
-        return Box(MARGIN, MARGIN, self.width - MARGIN, self.height - MARGIN)
 
     def text(
         self, x: float, y: float, words: str, size: float, *, bold: bool = False, ink: str = "#000000",
@@ -88,13 +83,12 @@ class Sheet:
         """Write one line that stands on y; return its width."""
         wide = type_setting.width_pt(words, size, bold=bold)
         left = {"left": x, "right": x - wide, "center": x - wide / 2.0}[align]
-        weight = "bold" if bold else "normal"
         self.ax.text(
             left,
             y,
             words,
             fontsize=size,
-            weight=weight,
+            weight="bold" if bold else "normal",
             color=ink,
             ha="left",
             va="baseline",
@@ -103,6 +97,19 @@ class Sheet:
         reach = Box(left, y - type_setting.DESCENT * size, left + wide, y + type_setting.ASCENT * size)
         self.printed.append((words, reach))
         return wide
+
+
+class Sheet(Page):
+    """A page of the wall calendar, long side level."""
+
+    def __init__(self, paper: Paper) -> None:
+        """Take a fresh page."""
+        super().__init__(*paper.size_pt)
+
+    @property
+    def body(self) -> Box:
+        """What lies within the margins."""
+        return Box(MARGIN, MARGIN, self.width - MARGIN, self.height - MARGIN)
 
     def lines(self, x: float, y: float, lines: Sequence[str], size: float, ink: str = "#000000") -> float:
         """Write lines below each other, the first on y; return where the next would stand."""
