@@ -115,6 +115,7 @@ def gather_campaign(store: TrackStore, campaign: Campaign, camera: CameraChoice)
     stars = registration_stars(framing.frame, path, middle, camera.sensor.columns, camera.sensor.rows)
     compared = tuple(np.flatnonzero(_to_estimate(campaign.plan)).tolist())
     at = campaign.plan["recommended_jd_tt"].to_numpy()[list(compared)].astype(np.float64)
+    extinction = campaign.rules.criteria.extinction_at(site.elevation_m)
     return CampaignContents(
         campaign=campaign,
         kernel=store.kernel,
@@ -125,7 +126,7 @@ def gather_campaign(store: TrackStore, campaign: Campaign, camera: CameraChoice)
         spares=_in_frame(campaign.spares, campaign.plan, framing),
         registration=stars,
         compared=compared,
-        comparisons=comparison_stars(tracks, site, season.body, at),
+        comparisons=comparison_stars(tracks, site, season.body, at, per_airmass_mag=extinction),
         clock=sky_clock(store, campaign),
     )
 
