@@ -12,10 +12,11 @@ from hypothesis import strategies as st
 
 from tests.plans.test_frame import in_projection, paths, tan_projection
 from wanderers.arrays import Floats
+from wanderers.ephemeris.vectors import unit_vectors
 from wanderers.errors import UnknownNameError, UsageProblem
 from wanderers.plans import camera
 from wanderers.plans.camera import FULL_FRAME, SENSORS, Sensor
-from wanderers.plans.frame import CameraFrame, directions_of
+from wanderers.plans.frame import CameraFrame
 
 # Photographers' handbooks, full frame 36 x 24 mm, to the degree as they print it; common practice, no source.
 HANDBOOK_FIELDS = {35: (54, 38), 50: (40, 27), 85: (24, 16), 135: (15, 10), 200: (10, 7), 400: (5, 3.4)}
@@ -119,7 +120,7 @@ USUAL_LENSES = {
 def test_the_lens_for_a_loop_is_the_one_photographers_take(planet: str) -> None:
     (width, height), shortest, longest = USUAL_LENSES[planet]
     t = np.linspace(0.0, 2.0 * np.pi, 100)
-    path = directions_of(
+    path = unit_vectors(
         60.0 + width / 2.0 * np.cos(t) / np.cos(np.radians(20.0)), 20.0 + height / 2.0 * np.sin(t)
     )
     lens = camera.frame_path(path).usual_mm
@@ -127,7 +128,7 @@ def test_the_lens_for_a_loop_is_the_one_photographers_take(planet: str) -> None:
 
 
 def test_the_path_in_the_frame_tells_whether_a_lens_holds_the_last_night() -> None:
-    path = directions_of(np.linspace(50.0, 70.0, 21), np.full(21, 20.0))
+    path = unit_vectors(np.linspace(50.0, 70.0, 21), np.full(21, 20.0))
     framing = camera.frame_path(path, lens_mm=135.0)
     assert not framing.fits and not framing.holds_path
     assert framing.room[0] < 0.0 < framing.room[10]
@@ -135,19 +136,19 @@ def test_the_path_in_the_frame_tells_whether_a_lens_holds_the_last_night() -> No
 
 
 def test_a_lens_shorter_than_all_usual_ones_is_used_as_it_is() -> None:
-    path = directions_of(np.linspace(0.0, 110.0, 40), np.zeros(40))
+    path = unit_vectors(np.linspace(0.0, 110.0, 40), np.zeros(40))
     framing = camera.frame_path(path, SENSORS["one inch"])
     assert framing.usual_mm is None and framing.lens_mm == framing.longest_mm < 14.0 and framing.fits
 
 
 def test_a_single_place_takes_the_longest_usual_lens() -> None:
-    framing = camera.frame_path(directions_of(np.array([10.0]), np.array([5.0])))
+    framing = camera.frame_path(unit_vectors(np.array([10.0]), np.array([5.0])))
     assert framing.longest_mm == np.inf and framing.lens_mm == 800.0
     assert framing.path_px == pytest.approx(np.array([[3000.0, 2000.0]]))
 
 
 def test_a_fixed_roll_is_kept() -> None:
-    path = directions_of(np.linspace(50.0, 60.0, 11), np.linspace(10.0, 14.0, 11))
+    path = unit_vectors(np.linspace(50.0, 60.0, 11), np.linspace(10.0, 14.0, 11))
     level = camera.frame_path(path, position_angle_deg=0.0)
     assert level.frame.position_angle_deg == 0.0
     assert level.longest_mm < camera.frame_path(path).longest_mm
@@ -180,7 +181,7 @@ def test_a_star_trails_one_pixel_in_the_limit(dec: float) -> None:
     seconds = float(camera.trail_limit_s(FULL_FRAME, 85.0, dec))
     turned = np.degrees(erfa.era00(2_461_000.5, seconds / 86_400.0) - erfa.era00(2_461_000.5, 0.0))
     wcs = tan_projection(CameraFrame(100.0, dec, 40.0, width, height))
-    path = in_projection(wcs, directions_of(np.array([100.0, 100.0 + turned]), np.array([dec, dec])))
+    path = in_projection(wcs, unit_vectors(np.array([100.0, 100.0 + turned]), np.array([dec, dec])))
     assert np.hypot(*(path[1] - path[0])) == pytest.approx(1.0, rel=1e-4)
 
 
@@ -206,7 +207,7 @@ def test_a_positive_tilt_turns_the_upper_side_to_the_left(
     middle = SkyCoord(80.0, 20.0, unit="deg")
     toward_zenith = middle.directional_offset_by(parallactic * u.deg, 1.0 * u.deg)
     frame = CameraFrame(80.0, 20.0, angle, 20.0, 20.0)
-    x, y = frame.on_plane(directions_of(np.array([toward_zenith.ra.deg]), np.array([toward_zenith.dec.deg])))[
+    x, y = frame.on_plane(unit_vectors(np.array([toward_zenith.ra.deg]), np.array([toward_zenith.dec.deg])))[
         0
     ]
     tilt = camera.tilt_deg(angle, np.array([parallactic]))[0]
@@ -256,4 +257,4 @@ def test_pixels_that_cannot_be_are_refused(text: str) -> None:
 @pytest.mark.parametrize("lens", [0.0, -50.0, 1e6, float("nan")])
 def test_a_lens_that_cannot_be_is_refused(lens: float) -> None:
     with pytest.raises(UsageProblem, match="focal length"):
-        camera.frame_path(directions_of(np.array([1.0, 2.0]), np.zeros(2)), lens_mm=lens)
+        camera.frame_path(unit_vectors(np.array([1.0, 2.0]), np.zeros(2)), lens_mm=lens)

@@ -15,6 +15,7 @@ from tests.plans.test_frame import in_projection, tan_projection
 from wanderers.arrays import Floats
 from wanderers.constants import DAYS_PER_JULIAN_YEAR, J2000_JD
 from wanderers.ephemeris.stars import deep_stars, field_stars, variable_hips
+from wanderers.ephemeris.vectors import unit_vectors
 from wanderers.plans.camera import Framing, frame_path
 from wanderers.plans.field_stars import (
     RegistrationStars,
@@ -23,7 +24,7 @@ from wanderers.plans.field_stars import (
     star_names,
     stars_in,
 )
-from wanderers.plans.frame import CameraFrame, directions_of
+from wanderers.plans.frame import CameraFrame
 
 JD_2027 = J2000_JD + 27.0 * DAYS_PER_JULIAN_YEAR
 OBLIQUITY = np.radians(23.4393)
@@ -32,7 +33,7 @@ OBLIQUITY = np.radians(23.4393)
 def loop_at(longitude_deg: float, width_deg: float, height_deg: float) -> Floats:
     """A loop on the ecliptic, as directions in equatorial axes."""
     t = np.linspace(-1.0, 1.0, 120)
-    x, y, z = directions_of(
+    x, y, z = unit_vectors(
         longitude_deg + width_deg / 2.0 * (t * 0.4 + np.sin(np.pi * t) * 0.9),
         height_deg * np.cos(np.pi * t) * 0.5 + 0.5,
     )
@@ -110,7 +111,7 @@ def test_at_most_as_many_as_asked_for_are_taken() -> None:
 def test_a_frame_with_few_listed_stars_says_so() -> None:
     # High above the ecliptic, where only stars to V 6.6 are listed, half a degree wide.
     frame = CameraFrame(200.0, 70.0, 0.0, 0.6, 0.4)
-    found = registration_stars(frame, directions_of(np.array([200.0]), np.array([70.0])), JD_2027, 6000, 4000)
+    found = registration_stars(frame, unit_vectors(np.array([200.0]), np.array([70.0])), JD_2027, 6000, 4000)
     assert len(found.stars) == len(found.table()) < 8
     assert "use fainter ones" in found.message
 
@@ -126,7 +127,7 @@ def test_places_are_those_of_astropys_proper_motion_and_projection() -> None:
         pm_dec=stars.pm_dec_mas_per_year * u.mas / u.yr,
         obstime=Time(J2000_JD, format="jd", scale="tdb"),
     ).apply_space_motion(Time(JD_2027, format="jd", scale="tdb"))
-    places = in_projection(tan_projection(framing.frame), directions_of(moved.ra.deg, moved.dec.deg))
+    places = in_projection(tan_projection(framing.frame), unit_vectors(moved.ra.deg, moved.dec.deg))
     np.testing.assert_allclose(found.place_px, places, atol=1e-3)
 
 
@@ -136,7 +137,7 @@ def test_stars_in_a_frame_are_all_that_the_projection_puts_there() -> None:
     every = deep_stars()
     apart = SkyCoord(every.ra_deg, every.dec_deg, unit="deg").separation(SkyCoord(56.0, 22.0, unit="deg")).deg
     near = every.take(apart < 20.0)
-    x, y = in_projection(tan_projection(frame), directions_of(near.ra_deg, near.dec_deg)).T
+    x, y = in_projection(tan_projection(frame), unit_vectors(near.ra_deg, near.dec_deg)).T
     inside = (x >= 0.0) & (x <= 6_000.0) & (y >= 0.0) & (y <= 4_000.0)
     np.testing.assert_array_equal(stars.hip, near.hip[inside])
     np.testing.assert_allclose(places, np.stack([x, y], axis=1)[inside], atol=1e-4)

@@ -13,7 +13,8 @@ from scipy.optimize import minimize
 from scipy.spatial.transform import Rotation
 
 from wanderers.arrays import Floats
-from wanderers.plans.frame import CameraFrame, FrameError, coordinates, directions_of, smallest_frame
+from wanderers.ephemeris.vectors import unit_vectors
+from wanderers.plans.frame import CameraFrame, FrameError, coordinates, smallest_frame
 
 COLUMNS, ROWS = 6000, 4000
 
@@ -54,7 +55,7 @@ def paths(draw: st.DrawFn) -> Floats:
     length, width = draw(st.floats(0.5, 20.0)), draw(st.floats(0.0, 6.0))
     turns, phase = draw(st.floats(1.0, 3.0)), draw(st.floats(0.0, 6.3))
     t = np.linspace(-1.0, 1.0, draw(st.integers(2, 40)))
-    local = directions_of(
+    local = unit_vectors(
         length * (t + 0.4 * np.sin(np.pi * t)), width * np.sin(turns * np.pi * t + phase) * (1.0 - 0.5 * t)
     )
     turn = Rotation.from_euler(
@@ -98,7 +99,7 @@ def test_places_in_the_picture_are_those_of_the_fits_projection(
 
 def test_east_is_left_when_north_is_up() -> None:
     frame = CameraFrame(100.0, 20.0, 0.0, 10.0, 8.0)
-    x, y = frame.pixels(directions_of(np.array([101.0, 100.0]), np.array([20.0, 21.0])), COLUMNS, ROWS).T
+    x, y = frame.pixels(unit_vectors(np.array([101.0, 100.0]), np.array([20.0, 21.0])), COLUMNS, ROWS).T
     assert x[0] < COLUMNS / 2 and y[1] < ROWS / 2
 
 
@@ -154,7 +155,7 @@ def test_no_other_roll_on_a_dense_scan_allows_a_longer_lens(path: Floats, aspect
 
 def test_a_roll_off_the_best_needs_a_shorter_lens() -> None:
     # Guards the scan above: for this path a wrong roll costs far more than its tolerance.
-    path = directions_of(np.linspace(40.0, 55.0, 20), np.linspace(10.0, 12.0, 20))
+    path = unit_vectors(np.linspace(40.0, 55.0, 20), np.linspace(10.0, 12.0, 20))
     best = smallest_frame(path)
     worse = smallest_frame(path, position_angle_deg=best.position_angle_deg + 20.0)
     assert worse.width_deg > 1.03 * best.width_deg
@@ -171,7 +172,7 @@ LOOPS = {
 def test_giving_up_the_centring_would_hardly_lengthen_the_lens(shape: str) -> None:
     length, width, turns, phase = LOOPS[shape]
     t = np.linspace(-1.0, 1.0, 60)
-    path = directions_of(
+    path = unit_vectors(
         130.0 + length * (t + 0.3 * np.sin(np.pi * t)), 18.0 + width * np.sin(turns * np.pi * t + phase)
     )
     frame = smallest_frame(path, margin=0.0)
@@ -207,7 +208,7 @@ def test_a_rectangle_of_sky_is_its_own_smallest_frame(
     known = CameraFrame(ra, dec, roll % 360.0, float(width), height)
     # The corners come from the FITS projection.
     corner = np.array([[0.5, 0.5], [COLUMNS + 0.5, 0.5], [COLUMNS + 0.5, ROWS + 0.5], [0.5, ROWS + 0.5]])
-    corners = directions_of(*tan_projection(known).wcs_pix2world(corner, 1).T)
+    corners = unit_vectors(*tan_projection(known).wcs_pix2world(corner, 1).T)
     for aspect in (None, ratio):
         found = smallest_frame(corners, aspect=aspect, margin=0.0)
         apart = SkyCoord(found.ra_deg, found.dec_deg, unit="deg").separation(SkyCoord(ra, dec, unit="deg"))
@@ -227,14 +228,14 @@ def test_where_on_the_sky_a_path_lies_does_not_change_the_size(path: Floats) -> 
 
 
 def test_how_densely_a_part_of_the_path_is_sampled_does_not_matter() -> None:
-    even = directions_of(np.linspace(0.0, 30.0, 31), np.linspace(-5.0, 5.0, 31) ** 2 / 5.0)
+    even = unit_vectors(np.linspace(0.0, 30.0, 31), np.linspace(-5.0, 5.0, 31) ** 2 / 5.0)
     crowded = np.concatenate([np.tile(even[:, :3], 200), even], axis=1)
     assert smallest_frame(crowded) == smallest_frame(even)
 
 
 @pytest.mark.parametrize("angle", [0.0, 33.0, 90.0, 271.5])
 def test_a_roll_that_is_asked_for_is_kept(angle: float) -> None:
-    path = directions_of(np.linspace(355.0, 365.0, 30) % 360.0, np.linspace(60.0, 64.0, 30))
+    path = unit_vectors(np.linspace(355.0, 365.0, 30) % 360.0, np.linspace(60.0, 64.0, 30))
     frame = smallest_frame(path, position_angle_deg=angle)
     assert frame.position_angle_deg == angle
     assert np.min(frame.room(path)) == pytest.approx(0.15, abs=1e-9)
@@ -242,7 +243,7 @@ def test_a_roll_that_is_asked_for_is_kept(angle: float) -> None:
 
 
 def test_a_path_across_the_pole_is_held() -> None:
-    path = directions_of(np.array([20.0] * 10 + [200.0] * 10), np.r_[81:90.5:10j, 89.5:86:10j])
+    path = unit_vectors(np.array([20.0] * 10 + [200.0] * 10), np.r_[81:90.5:10j, 89.5:86:10j])
     frame = smallest_frame(path, margin=0.0)
     assert np.all(frame.holds(path))
     # A straight path of 13 degrees along the diagonal of 3 by 2.
@@ -253,7 +254,7 @@ def test_a_path_across_the_pole_is_held() -> None:
 
 
 def test_a_single_place_is_a_frame_without_size_north_up() -> None:
-    place = directions_of(np.array([222.0]), np.array([-33.0]))
+    place = unit_vectors(np.array([222.0]), np.array([-33.0]))
     frame = smallest_frame(np.tile(place, 3))
     assert (frame.width_deg, frame.height_deg) == pytest.approx((0.0, 0.0), abs=1e-9)
     assert (frame.ra_deg, frame.dec_deg, frame.position_angle_deg) == pytest.approx((222.0, -33.0, 0.0))
@@ -261,7 +262,7 @@ def test_a_single_place_is_a_frame_without_size_north_up() -> None:
 
 def test_of_rolls_equally_good_the_one_nearest_to_north_up_is_taken() -> None:
     # A path along the equator fits alike along both diagonals.
-    path = directions_of(np.linspace(-4.0, 4.0, 9) % 360.0, np.zeros(9))
+    path = unit_vectors(np.linspace(-4.0, 4.0, 9) % 360.0, np.zeros(9))
     frame = smallest_frame(path)
     lean = (frame.position_angle_deg + 90.0) % 180.0 - 90.0
     assert abs(lean) == pytest.approx(np.degrees(np.arctan(2.0 / 3.0)), abs=1e-3)
@@ -269,7 +270,7 @@ def test_of_rolls_equally_good_the_one_nearest_to_north_up_is_taken() -> None:
 
 def test_turned_over_is_the_same_sky_upside_down() -> None:
     frame = CameraFrame(10.0, -20.0, 100.0, 12.0, 8.0)
-    path = directions_of(np.array([9.0, 12.0]), np.array([-21.0, -18.5]))
+    path = unit_vectors(np.array([9.0, 12.0]), np.array([-21.0, -18.5]))
     np.testing.assert_allclose(
         frame.turned_over().pixels(path, COLUMNS, ROWS), [COLUMNS, ROWS] - frame.pixels(path, COLUMNS, ROWS)
     )
@@ -278,7 +279,7 @@ def test_turned_over_is_the_same_sky_upside_down() -> None:
 def test_room_is_a_half_in_the_middle_nothing_on_the_edge_and_less_outside() -> None:
     frame = CameraFrame(50.0, 0.0, 0.0, 20.0, 10.0)
     dec = np.array([0.0, 5.0, 6.0, 0.0])
-    room = frame.room(directions_of(np.array([50.0, 50.0, 50.0, 230.0]), dec))
+    room = frame.room(unit_vectors(np.array([50.0, 50.0, 50.0, 230.0]), dec))
     assert room[:2] == pytest.approx([0.5, 0.0], abs=1e-12)
     assert room[2] < 0.0 and room[3] == -np.inf
     far = SkyCoord(*(coordinates(frame.corners())), unit="deg")
@@ -288,13 +289,13 @@ def test_room_is_a_half_in_the_middle_nothing_on_the_edge_and_less_outside() -> 
 @pytest.mark.parametrize(
     ("path", "options", "words"),
     [
-        (directions_of(np.linspace(0.0, 150.0, 40), np.zeros(40)), {}, "shorter span"),
-        (directions_of(np.array([0.0, 180.0]), np.zeros(2)), {}, "shorter span"),
+        (unit_vectors(np.linspace(0.0, 150.0, 40), np.zeros(40)), {}, "shorter span"),
+        (unit_vectors(np.array([0.0, 180.0]), np.zeros(2)), {}, "shorter span"),
         (np.zeros((3, 0)), {}, "at least one"),
         (np.full((3, 2), np.nan), {}, "none unknown"),
-        (directions_of(np.array([0.0]), np.array([0.0])), {"margin": 0.5}, "margin"),
-        (directions_of(np.array([0.0]), np.array([0.0])), {"margin": -0.1}, "margin"),
-        (directions_of(np.array([0.0]), np.array([0.0])), {"aspect": 0.0}, "ratio"),
+        (unit_vectors(np.array([0.0]), np.array([0.0])), {"margin": 0.5}, "margin"),
+        (unit_vectors(np.array([0.0]), np.array([0.0])), {"margin": -0.1}, "margin"),
+        (unit_vectors(np.array([0.0]), np.array([0.0])), {"aspect": 0.0}, "ratio"),
     ],
 )
 def test_impossible_frames_are_refused_in_one_line(

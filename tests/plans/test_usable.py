@@ -16,8 +16,9 @@ from wanderers.ephemeris.store import TrackStore
 from wanderers.errors import UsageProblem
 from wanderers.plans.path import Path, path_of
 from wanderers.plans.rules import CampaignRules, default_rules
-from wanderers.plans.usable import all_nights, weekdays_of
+from wanderers.plans.usable import all_nights
 from wanderers.site.clock import utc_texts
+from wanderers.site.hours import weekdays_of
 from wanderers.site.places import Site
 
 SPAN = (np.datetime64("2026-10-26"), np.datetime64("2027-06-19"))

@@ -90,10 +90,15 @@ def appearance(sky: Sky, body: Ints, jd: Floats) -> Appearance:
         distance,
         _magnitudes(body, jd, shape, phase_angle),
         diameter_arcsec(body, distance),
-        np.cos(np.radians(phase_angle / 2.0)) ** 2,
+        lit_part(phase_angle),
         np.asarray(constellations.constellation_at(apparent[0]), dtype=np.int64),
         apparent[0],
     )
+
+
+def lit_part(phase_angle_deg: Floats) -> Floats:
+    """Return the illuminated part of a disc at a phase angle, shape (n,): cos^2(i / 2)."""
+    return np.asarray(np.cos(np.radians(phase_angle_deg / 2.0)) ** 2)
 
 
 def triangle(sky: Sky, body: Ints, jd: Floats) -> Triangle:

@@ -15,7 +15,7 @@ from typing import Final
 import numpy as np
 
 from wanderers.arrays import Bools, Floats
-from wanderers.ephemeris.vectors import latitude_deg, longitude_deg, unit_vectors
+from wanderers.ephemeris.vectors import latitude_deg, longitude_deg
 from wanderers.errors import UsageProblem
 
 DEFAULT_MARGIN: Final = 0.15
@@ -172,11 +172,6 @@ def smallest_frame(
         _, up, _ = _axes(middle, np.array([roll]), pole)[0]
         roll = round(float(np.degrees(np.arctan2(up @ east, up @ north))), 9) % 360.0
     return CameraFrame(ra, dec, roll, width, height)
-
-
-def directions_of(ra_deg: Floats, dec_deg: Floats) -> Floats:
-    """Return the unit vectors of places, shape (3, n)."""
-    return unit_vectors(ra_deg, dec_deg)
 
 
 def coordinates(directions: Floats) -> tuple[Floats, Floats]:

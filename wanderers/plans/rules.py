@@ -10,10 +10,10 @@ import numpy as np
 from wanderers.arrays import Floats
 from wanderers.ephemeris.bodies import INNER, Body
 from wanderers.errors import UsageProblem
+from wanderers.site.hours import WEEKDAY_NAMES
 from wanderers.site.rules import Rules
 from wanderers.site.visibility import Criteria
 
-WEEKDAYS: Final = ("Monday", "Tuesday", "Wednesday", "Thursday", "Friday", "Saturday", "Sunday")
 EVERY_DAY: Final = tuple(range(7))
 LOOP_ALTITUDE_DEG: Final = 20.0
 LOOP_SUN_DEG: Final = -12.0
@@ -63,7 +63,7 @@ class CampaignRules:
         if not all(0.0 <= limit <= 180.0 for limit in (self.moon_bright_deg, self.moon_faint_deg)):
             raise UsageProblem("the distance to keep from the Moon must be within 0 to 180 degrees")
         if not self.weekdays or not set(self.weekdays) <= set(EVERY_DAY):
-            raise UsageProblem(f"choose weekdays from {', '.join(WEEKDAYS)}")
+            raise UsageProblem(f"choose weekdays from {', '.join(WEEKDAY_NAMES)}")
 
     @property
     def watch(self) -> Rules:

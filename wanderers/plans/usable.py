@@ -13,33 +13,32 @@ from typing import Final
 import numpy as np
 import polars as pl
 
-from wanderers.arrays import Bools, Floats, Ints
+from wanderers.arrays import Bools, Floats
 from wanderers.ephemeris import kernels
-from wanderers.ephemeris.appearance import appearance
+from wanderers.ephemeris.appearance import appearance, lit_part
 from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.constellations import ABBREVIATIONS
 from wanderers.ephemeris.sky import Sky
 from wanderers.ephemeris.store import TrackStore
 from wanderers.ephemeris.vectors import latitude_deg, longitude_deg
 from wanderers.plans.path import Path
-from wanderers.plans.rules import WEEKDAYS, CampaignRules
+from wanderers.plans.rules import CampaignRules
 from wanderers.site import clock, reasons
 from wanderers.site.airmass import airmass, dimmed_magnitude
 from wanderers.site.compass import POINTS, compass_point
 from wanderers.site.evenings import Evenings, evenings
-from wanderers.site.hours import EPOCH_WEEKDAY
+from wanderers.site.hours import WEEKDAY_NAMES, weekdays_of
 from wanderers.site.ledger import ledger
 from wanderers.site.look import Heaven, View, heaven, margins_of, view_body
 from wanderers.site.places import Site
 from wanderers.site.topocentric import parallactic_angle_deg
 from wanderers.site.visibility import VERDICTS, Verdict, verdicts
-from wanderers.site.zones import Days
 
 SAMPLES: Final = 73
 """Moments tried in a window, apart from culmination: ten minutes apart in a night of twelve hours."""
 INSET_DAYS: Final = 5.0 / reasons.MINUTES_PER_DAY
 """How far inside the window the recommended time stays: the first frame must not touch its limits."""
-WEEKDAY_NAME: Final = pl.col("weekday").replace_strict(dict(enumerate(WEEKDAYS)), return_dtype=pl.String)
+WEEKDAY_NAME: Final = pl.col("weekday").replace_strict(dict(enumerate(WEEKDAY_NAMES)), return_dtype=pl.String)
 """In a table of nights, whose weekdays are numbers."""
 DARK_SUN_DEG: Final = -18.0
 TWILIGHT_WORTH: Final = 0.6
@@ -90,11 +89,6 @@ def all_nights(
     return _judged(_worded(some, table, rules), rules)
 
 
-def weekdays_of(days: Days) -> Ints:
-    """Return the weekday of calendar dates, Monday 0, shape (n,)."""
-    return np.asarray((days.astype("datetime64[D]").astype(np.int64) + EPOCH_WEEKDAY) % 7)
-
-
 def recommended_jd(
     sky: Sky, some: Evenings, body: Body, numbers: pl.DataFrame, rules: CampaignRules
 ) -> Floats:
@@ -125,14 +119,9 @@ def recommended_jd(
     return out
 
 
-def moon_lit(over: Heaven) -> Floats:
-    """Return the illuminated part of the Moon's disc, shape (n,); NaN without a Moon."""
-    return np.asarray(np.cos(np.radians(over.moon_phase_angle_deg) / 2.0) ** 2)
-
-
 def moon_too_near(over: Heaven, seen: View, rules: CampaignRules) -> Bools:
     """Return where the Moon is up and nearer than its light allows, shape (n,)."""
-    limit = rules.moon_limit_deg(moon_lit(over))
+    limit = rules.moon_limit_deg(lit_part(over.moon_phase_angle_deg))
     return np.asarray((over.moon_altitude_deg > 0.0) & (seen.lights.moon_separation_deg < limit))
 
 
@@ -145,7 +134,7 @@ def look_at(sky: Sky, site: Site, body: Body, jd: Floats, rules: CampaignRules) 
     fixed = sky.apparent(target, jd)
     margins = margins_of(seen, looks.magnitude, rules.criteria, site)
     extinction = rules.criteria.extinction_at(site.elevation_m)
-    lit = moon_lit(over)
+    lit = lit_part(over.moon_phase_angle_deg)
     return {
         "altitude_deg": seen.altitude_deg,
         "airless_altitude_deg": seen.place.airless_altitude_deg,
@@ -264,7 +253,7 @@ def _tests(rules: CampaignRules) -> list[_Test]:
         lost = watchable & (pl.col("verdict") == Verdict.NOT_VISIBLE.value)
         tests.append(_Test(lost, reasons.obstacle()))
     if rules.weekdays_asked:
-        wanted = ", ".join(WEEKDAYS[day] for day in rules.weekdays_asked)
+        wanted = ", ".join(WEEKDAY_NAMES[day] for day in rules.weekdays_asked)
         other = ~pl.col("weekday").is_in(rules.weekdays_asked)
         tests.append(_Test(other, pl.concat_str(pl.lit("a "), WEEKDAY_NAME, pl.lit(f", not {wanted}"))))
     return tests

@@ -11,9 +11,10 @@ from wanderers.plans.columns import CHANGE_COLUMNS, arranged
 from wanderers.plans.draft import Draft
 from wanderers.plans.replan import Status
 from wanderers.plans.request import Aim, CampaignRequest
-from wanderers.plans.rules import WEEKDAYS, CampaignRules
+from wanderers.plans.rules import CampaignRules
 from wanderers.plans.season import NEXT, CampaignSeason, Moment
 from wanderers.site import reasons as sky_words
+from wanderers.site.hours import WEEKDAY_NAMES
 
 BENT: Final = 6.0
 """Degrees of turning a degree of path from which a stretch is called a bend."""
@@ -98,7 +99,7 @@ def rules_sentence(season: CampaignSeason, rules: CampaignRules) -> str:
     """Return what a night had to offer."""
     days = ""
     if rules.weekdays_asked:
-        days = ", on a " + " or ".join(WEEKDAYS[day] for day in rules.weekdays_asked)
+        days = ", on a " + " or ".join(WEEKDAY_NAMES[day] for day in rules.weekdays_asked)
     return (
         f"A night is usable with {season.body.label} {rules.min_altitude_deg:g} degrees up or more and "
         f"the Sun {sky_words.depth_words(rules.sun_below_deg)} for {rules.min_window_minutes:g} minutes or "

@@ -65,6 +65,27 @@ def rendered(page: Page, data: dict[str, Any], calendar: str) -> str:
     )
 
 
+def rendered_beside(page: Any, template: str, style: str) -> str:
+    """Return a page that lies beside the report's, a dossier or a campaign, as HTML.
+
+    Args:
+        page: the model, a dataclass.
+        template: name of its template.
+        style: name of its style, which follows the common one.
+    """
+    program = f"\n{packaged('dossier.js')}"
+    return (
+        environment()
+        .get_template(template)
+        .render(
+            {name.name: getattr(page, name.name) for name in fields(page)},
+            style=Markup(packaged("page.css") + packaged(style)),
+            program=Markup(program),
+            program_hash=policy_hash(program),
+        )
+    )
+
+
 def policy_hash(program: str) -> str:
     """Return what a Content Security Policy (W3C, level 3) lets a program in the page run by."""
     return f"sha256-{base64.b64encode(hashlib.sha256(program.encode()).digest()).decode()}"

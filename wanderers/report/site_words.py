@@ -7,9 +7,9 @@ from typing import Any, Final
 
 from wanderers.report.names import label
 from wanderers.report.words import Event
+from wanderers.site.hours import WEEKDAY_NAMES
 
 ROUNDING: Final = dt.timedelta(seconds=30)
-WEEKDAYS: Final = ("Monday", "Tuesday", "Wednesday", "Thursday", "Friday", "Saturday", "Sunday")
 FIRST_MORNING_HOUR: Final = 3
 """Earlier is night. Common practice, no source."""
 AIDS: Final = {
@@ -83,7 +83,7 @@ def night_of(start: dt.datetime, end: dt.datetime) -> str:
 def day_words(date: str) -> str:
     """Return a date with its weekday."""
     day = dt.date.fromisoformat(date)
-    return f"{WEEKDAYS[day.weekday()]} {day.isoformat()}"
+    return f"{WEEKDAY_NAMES[day.weekday()]} {day.isoformat()}"
 
 
 def sentence(text: str) -> str:

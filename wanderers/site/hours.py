@@ -8,7 +8,7 @@ from typing import Final
 
 import numpy as np
 
-from wanderers.arrays import Bools, Floats
+from wanderers.arrays import Bools, Floats, Ints
 from wanderers.constants import SECONDS_PER_DAY
 from wanderers.ephemeris.timescales import jd_tt_from_utc
 from wanderers.site.evenings import Evenings
@@ -22,7 +22,13 @@ NEAR_CHANGE_DAYS: Final = 1.0
 HALF_SECOND_DAYS: Final = 0.5 / SECONDS_PER_DAY
 EPOCH_WEEKDAY: Final = 3
 """1970-01-01 was a Thursday, counted from Monday as 0."""
-WEEKDAYS: Final = ("mon", "tue", "wed", "thu", "fri", "sat", "sun")
+WEEKDAY_NAMES: Final = ("Monday", "Tuesday", "Wednesday", "Thursday", "Friday", "Saturday", "Sunday")
+WEEKDAYS: Final = tuple(name[:3].lower() for name in WEEKDAY_NAMES)
+
+
+def weekdays_of(days: Days) -> Ints:
+    """Return the weekday of each date, Monday is 0, shape (n,)."""
+    return np.asarray((days.astype("datetime64[D]").astype(np.int64) + EPOCH_WEEKDAY) % 7)
 
 
 @dataclass(frozen=True, slots=True)
@@ -49,8 +55,7 @@ class Opening:
         """Return whether evenings of these dates come into question, shape (n,)."""
         if not self.weekdays:
             return np.ones(days.size, dtype=np.bool_)
-        weekday = (days.astype("datetime64[D]").astype(np.int64) + EPOCH_WEEKDAY) % 7
-        return np.isin(weekday, list(self.weekdays))
+        return np.isin(weekdays_of(days), list(self.weekdays))
 
     def stretches(self, some: Evenings) -> Stretches | None:
         """Return one stretch of hours an evening; None where all hours are allowed."""

@@ -10,7 +10,7 @@ import numpy as np
 import polars as pl
 
 from wanderers.arrays import Floats
-from wanderers.ephemeris.appearance import appearance
+from wanderers.ephemeris.appearance import appearance, lit_part
 from wanderers.ephemeris.bodies import BODIES
 from wanderers.ephemeris.sky import SUN, Sky
 from wanderers.events.search import Roots
@@ -154,7 +154,7 @@ def _look(sky: Sky, some: Evenings, body: int, best_jd: Floats, rules: Rules) ->
         "dimmed_magnitude": dimmed_magnitude(looks.magnitude, seen.altitude_deg, extinction),
         "elongation_deg": np.full(jd.size, np.nan) if body == SUN else seen.lights.sun_separation_deg,
         "constellation_number": looks.constellation.astype(np.float64),
-        "moon_illuminated": np.cos(np.radians(over.moon_phase_angle_deg) / 2.0) ** 2,
+        "moon_illuminated": lit_part(over.moon_phase_angle_deg),
         "moon_separation_deg": seen.lights.moon_separation_deg,
         "moon_altitude_deg": over.moon_altitude_deg,
         "margin_sky": margins.sky,

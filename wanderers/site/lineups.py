@@ -12,6 +12,7 @@ import polars as pl
 
 from wanderers.arrays import Bools, Floats, Ints
 from wanderers.ephemeris import kernels
+from wanderers.ephemeris.appearance import lit_part
 from wanderers.ephemeris.bodies import BODIES
 from wanderers.ephemeris.sky import SUN, Sky
 from wanderers.ephemeris.store import TrackStore
@@ -285,9 +286,7 @@ def _light(scene: _Scene, wanted: Wanted) -> dict[str, pl.Series]:
         "morning_or_evening": pl.Series(part.tolist(), dtype=pl.String),
         "elongation_deg": pl.Series(np.min(np.where(scene.lineup.counted, near, np.inf), axis=0)),
         "moon_altitude_deg": pl.Series(over.moon_altitude_deg, nan_to_null=True),
-        "moon_illuminated": pl.Series(np.cos(np.radians(over.moon_phase_angle_deg) / 2.0) ** 2).fill_nan(
-            None
-        ),
+        "moon_illuminated": pl.Series(lit_part(over.moon_phase_angle_deg)).fill_nan(None),
         "sunset_local": clock.local_texts(some.zone, sunset),
         "sunrise_local": clock.local_texts(some.zone, sunrise),
         "sunset_clock": clock.local_minutes(some.zone, sunset),

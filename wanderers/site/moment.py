@@ -11,7 +11,7 @@ import polars as pl
 from wanderers.arrays import Floats, Ints
 from wanderers.constants import J2000_JD, SECONDS_PER_DAY
 from wanderers.ephemeris import constellations, kernels
-from wanderers.ephemeris.appearance import appearance
+from wanderers.ephemeris.appearance import appearance, lit_part
 from wanderers.ephemeris.bodies import BODIES, Body
 from wanderers.ephemeris.dates import datetime64_from_jd
 from wanderers.ephemeris.sky import FIRST_STAR, SUN, Sky
@@ -130,7 +130,7 @@ def _seen(sky: Sky, site: Site, jd: float, targets: Targets, rules: Rules) -> pl
             "constellation": constellation,
             "sun_altitude_deg": over.sun_altitude_deg,
             "moon_altitude_deg": pl.Series(over.moon_altitude_deg, nan_to_null=True),
-            "moon_illuminated": np.cos(np.radians(over.moon_phase_angle_deg) / 2.0) ** 2,
+            "moon_illuminated": lit_part(over.moon_phase_angle_deg),
             "moon_separation_deg": pl.Series(seen.lights.moon_separation_deg, nan_to_null=True),
             "margin": margins.least,
             "margin_sky": margins.sky,

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from wanderers.arrays import Bools, Floats, Ints
+from wanderers.ephemeris.appearance import lit_part
 from wanderers.events.members import ABSENT
 from wanderers.site.sightings import Watch, look_exactly
 
@@ -87,7 +88,7 @@ def members_at(watched: Watch, member: Ints, jd: Floats) -> Members:
         spread(seen.lights.moon_separation_deg),
         over.sun_altitude_deg[first],
         over.moon_altitude_deg[first],
-        np.cos(np.radians(over.moon_phase_angle_deg[first]) / 2.0) ** 2,
+        lit_part(over.moon_phase_angle_deg[first]),
     )
 
 

@@ -3,10 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, fields
+from dataclasses import dataclass
 from typing import Final
-
-from markupsafe import Markup
 
 from wanderers import __version__
 from wanderers.plans.replan import Status
@@ -19,7 +17,7 @@ from wanderers.report.campaign.numbers import Comparison, Fact, StarRow
 from wanderers.report.campaign.words import Night
 from wanderers.report.charts import timeaxis
 from wanderers.report.pictures import Picture
-from wanderers.report.render import environment, packaged, policy_hash
+from wanderers.report.render import rendered_beside
 from wanderers.site.zones import zone_data_version
 
 TEMPLATE: Final = "campaign.html.j2"
@@ -153,17 +151,7 @@ def page_of(
 
 def rendered(page: CampaignPage) -> str:
     """Return the page as HTML that holds everything it needs."""
-    program = f"\n{packaged('dossier.js')}"
-    return (
-        environment()
-        .get_template(TEMPLATE)
-        .render(
-            {name.name: getattr(page, name.name) for name in fields(page)},
-            style=Markup(packaged("page.css") + packaged("campaign.css")),
-            program=Markup(program),
-            program_hash=policy_hash(program),
-        )
-    )
+    return rendered_beside(page, TEMPLATE, "campaign.css")
 
 
 def _title(contents: CampaignContents) -> str:

@@ -9,12 +9,12 @@ import numpy as np
 
 from wanderers.arrays import Floats
 from wanderers.constants import SECONDS_PER_DAY
+from wanderers.ephemeris.appearance import lit_part
 from wanderers.ephemeris.sky import Sky
 from wanderers.ephemeris.store import TrackStore
 from wanderers.ephemeris.timescales import jd_utc_from_tt
 from wanderers.plans.campaign import Campaign
 from wanderers.plans.request import evening_span
-from wanderers.plans.usable import moon_lit
 from wanderers.site.evenings import evenings
 from wanderers.site.look import heaven, view_body
 from wanderers.site.zones import UNIX_EPOCH_JD, Days
@@ -84,6 +84,6 @@ def sky_clock(store: TrackStore, campaign: Campaign) -> SkyClock:
         hour=begins + np.linspace(0.0, HOURS, STEPS + 1),
         sun_altitude_deg=over.sun_altitude_deg.reshape(jd.shape),
         moon_altitude_deg=over.moon_altitude_deg.reshape(jd.shape),
-        moon_illuminated=moon_lit(over).reshape(jd.shape)[STEPS // 2],
+        moon_illuminated=lit_part(over.moon_phase_angle_deg).reshape(jd.shape)[STEPS // 2],
         above_limit_deg=(seen.altitude_deg - limit).reshape(jd.shape),
     )

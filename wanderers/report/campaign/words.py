@@ -12,8 +12,9 @@ import polars as pl
 
 from wanderers.plans.replan import Status
 from wanderers.plans.rows import GOOD, MUST, SPARE
+from wanderers.report import facts
 from wanderers.report.campaign.contents import CampaignContents, to_come
-from wanderers.report.charts.timeaxis import MONTH_NAMES, MONTHS
+from wanderers.report.charts.timeaxis import MONTHS
 from wanderers.report.facts import MINUS
 from wanderers.site.compass import LETTERS, POINTS
 
@@ -60,7 +61,7 @@ def _day_before(day: str, later: str) -> str:
 def long_day(evening: str) -> str:
     """Return a date as 3 March 2027."""
     year, month, day = evening.rsplit("-", 2)
-    return f"{int(day)} {MONTH_NAMES[int(month) - 1]} {year.replace('-', MINUS).lstrip('0') or '0'}"
+    return f"{int(day)} {facts.MONTHS[int(month) - 1]} {year.replace('-', MINUS).lstrip('0') or '0'}"
 
 
 def next_day(evening: str) -> str:

@@ -12,8 +12,9 @@ from matplotlib.axes import Axes
 from wanderers.arrays import Floats
 from wanderers.ephemeris.constellations import ABBREVIATIONS, constellation_at, full_name
 from wanderers.ephemeris.stars import StarCatalogue
+from wanderers.ephemeris.vectors import unit_vectors
 from wanderers.plans.field_stars import star_names, stars_in
-from wanderers.plans.frame import CameraFrame, directions_of
+from wanderers.plans.frame import CameraFrame
 from wanderers.report.campaign.contents import CampaignContents
 from wanderers.report.charts import field, labels
 from wanderers.report.charts.field import SkyField
@@ -76,7 +77,7 @@ class Plane:
         sky = self.sky()
         ecliptic = sky.on_axes(field.ecliptic_in(sky))
         boundaries = sky.on_axes(field.boundaries_in(sky))
-        return self.places(directions_of(*boundaries.T)), self.places(directions_of(*ecliptic.T))
+        return self.places(unit_vectors(*boundaries.T)), self.places(unit_vectors(*ecliptic.T))
 
 
 @dataclass(frozen=True, slots=True, eq=False)

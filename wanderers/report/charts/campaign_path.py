@@ -10,7 +10,8 @@ from matplotlib.axes import Axes
 
 from wanderers.arrays import Floats
 from wanderers.ephemeris import frames
-from wanderers.plans.frame import coordinates, directions_of
+from wanderers.ephemeris.vectors import unit_vectors
+from wanderers.plans.frame import coordinates
 from wanderers.report.campaign.contents import CampaignContents
 from wanderers.report.charts import campaign_nights, labels, timeaxis
 from wanderers.report.charts.campaign_backdrop import Plane
@@ -122,7 +123,7 @@ def _on_axes(table: pl.DataFrame, x: Floats) -> Floats:
 
 
 def _directions(table: pl.DataFrame) -> Floats:
-    return directions_of(table["ra_j2000_deg"].to_numpy(), table["dec_j2000_deg"].to_numpy())
+    return unit_vectors(table["ra_j2000_deg"].to_numpy(), table["dec_j2000_deg"].to_numpy())
 
 
 def _ecliptic(directions: Floats) -> tuple[Floats, Floats]:

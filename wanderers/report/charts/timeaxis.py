@@ -15,23 +15,10 @@ from matplotlib.axes import Axes
 from wanderers.arrays import Floats, Ints
 from wanderers.ephemeris.dates import datetime64_from_jd
 from wanderers.ephemeris.timescales import jd_utc_from_tt
+from wanderers.report import facts
+from wanderers.site.zones import UNIX_EPOCH_JD
 
-MONTHS: Final = ("Jan", "Feb", "Mar", "Apr", "May", "Jun", "Jul", "Aug", "Sep", "Oct", "Nov", "Dec")
-MONTH_NAMES: Final = (
-    "January",
-    "February",
-    "March",
-    "April",
-    "May",
-    "June",
-    "July",
-    "August",
-    "September",
-    "October",
-    "November",
-    "December",
-)
-_UNIX_EPOCH_JD: Final = 2_440_587.5
+MONTHS: Final = tuple(name[:3] for name in facts.MONTHS)
 GREGORIAN_FROM_JD: Final = 2_299_160.5
 """1582-10-15: dates before it are usually given in the Julian calendar, here never."""
 
@@ -92,13 +79,13 @@ def day_text(jd_utc: float, *, year: bool = True) -> str:
 def long_day_text(jd_utc: float) -> str:
     """Return a date as prose has it: ``3 March 2027``."""
     date = calendar_days(jd_utc)
-    return f"{date.day[0]} {MONTH_NAMES[date.month[0] - 1]} {year_text(int(date.year[0]))}"
+    return f"{date.day[0]} {facts.MONTHS[date.month[0] - 1]} {year_text(int(date.year[0]))}"
 
 
 def month_text(jd_utc: float) -> str:
     """Return month and year in full: ``March 2027``."""
     date = calendar_days(jd_utc)
-    return f"{MONTH_NAMES[date.month[0] - 1]} {year_text(int(date.year[0]))}"
+    return f"{facts.MONTHS[date.month[0] - 1]} {year_text(int(date.year[0]))}"
 
 
 def span_text(low: float, high: float) -> str:
@@ -118,7 +105,7 @@ def month_span_text(low: float, high: float) -> str:
         return f"{month_text(low)} to {month_text(high)}"
     if first.month[0] == last.month[0]:
         return month_text(low)
-    return f"{MONTH_NAMES[first.month[0] - 1]} to {month_text(high)}"
+    return f"{facts.MONTHS[first.month[0] - 1]} to {month_text(high)}"
 
 
 def year_text(year: int) -> str:
@@ -147,7 +134,7 @@ def ticks(low: float, high: float, division: Division) -> Floats:
         number = np.arange(first, last + 2)
         count = number if division.unit == "month" else number + 1970
         chosen = number[count % division.every == 0].astype(f"datetime64[{unit}]").astype("datetime64[D]")
-    jd = chosen.astype(np.int64) + _UNIX_EPOCH_JD
+    jd = chosen.astype(np.int64) + UNIX_EPOCH_JD
     return np.asarray(jd[(jd >= low) & (jd <= high)])
 
 

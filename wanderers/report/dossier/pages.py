@@ -3,12 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import fields, replace
+from dataclasses import replace
 from pathlib import Path
 from typing import Any, Final
 
 import polars as pl
-from markupsafe import Markup
 
 from wanderers.ephemeris.bodies import Body
 from wanderers.report import facts
@@ -17,7 +16,7 @@ from wanderers.report.contents import Contents
 from wanderers.report.dossier.page import Dossier, dossier_of
 from wanderers.report.dossier.sources import FILES, FOLDER, address, season_rows
 from wanderers.report.pictures import Job, Picture
-from wanderers.report.render import environment, packaged, policy_hash
+from wanderers.report.render import rendered_beside
 from wanderers.site.zones import Zone
 
 TEMPLATE: Final = "dossier.html.j2"
@@ -68,17 +67,7 @@ def stems(row: Mapping[str, Any]) -> dict[str, str]:
 
 def rendered(page: Dossier) -> str:
     """Return a dossier as HTML that holds everything it needs."""
-    program = f"\n{packaged('dossier.js')}"
-    return (
-        environment()
-        .get_template(TEMPLATE)
-        .render(
-            {name.name: getattr(page, name.name) for name in fields(page)},
-            style=Markup(packaged("page.css") + packaged("dossier.css")),
-            program=Markup(program),
-            program_hash=policy_hash(program),
-        )
-    )
+    return rendered_beside(page, TEMPLATE, "dossier.css")
 
 
 def _studied(contents: Contents) -> pl.DataFrame:

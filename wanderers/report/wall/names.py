@@ -4,10 +4,11 @@ from __future__ import annotations
 
 from typing import Final
 
-from wanderers.report import facts, site_words
+from wanderers.report import facts
+from wanderers.site import hours
 
 MONTHS: Final = facts.MONTHS
-WEEKDAYS: Final = site_words.WEEKDAYS
+WEEKDAYS: Final = hours.WEEKDAY_NAMES
 WEEKDAYS_SHORT: Final = ("Mo", "Tu", "We", "Th", "Fr", "Sa", "Su")
 WEEK: Final = "week"
 MORE: Final = "+{count} more in the table"
