@@ -6,6 +6,7 @@ import re
 import subprocess
 import sys
 from pathlib import Path
+from xml.etree import ElementTree
 
 import matplotlib
 import numpy as np
@@ -14,8 +15,11 @@ import pytest
 from matplotlib.figure import Figure
 from PIL import Image
 
-from tests.report.chart_reading import path_track
+from tests.report.chart_reading import drawn_texts, path_track
+from tests.report.test_charts_model import track
+from wanderers.ephemeris.bodies import Body
 from wanderers.report import charts
+from wanderers.report.pictures import lean
 
 
 def test_files_repeat_byte_for_byte_whatever_the_users_settings(
@@ -52,6 +56,16 @@ def test_text_of_an_svg_is_text(mars_path: Figure, tmp_path: Path) -> None:
     assert "<dc:date>" not in svg
     glyphs = re.findall(r'<path id="DejaVuSans', svg)
     assert not glyphs
+
+
+def test_a_leaner_svg_says_what_the_figure_says(all_seasons: pl.DataFrame, tmp_path: Path) -> None:
+    figure = charts.draw_brightness(Body.MARS, track(Body.MARS), all_seasons)
+    svg = charts.save(figure, "chart", tmp_path, formats=("svg",))["svg"].read_text(encoding="utf-8")
+    texts = ElementTree.fromstring(lean(svg)).iter("{http://www.w3.org/2000/svg}text")
+    said = {word for text in texts for word in "".join(text.itertext()).split()}
+    drawn = {word for text in drawn_texts(figure) for word in text.get_text().split()}
+    assert any(re.search(r"\d\.\d\d\d", word) for word in drawn)
+    assert {word for word in drawn if re.search(r"\d", word)} <= said
 
 
 def test_the_night_style_holds_nothing_but_red(mars_season: pl.DataFrame, tmp_path: Path) -> None:

@@ -146,6 +146,8 @@ def test_a_lean_drawing_keeps_its_text_and_loses_what_nobody_sees() -> None:
         "<?xml version='1.0'?><!-- made --><svg><metadata>x</metadata>\n\n <path d='M 1.23456 -7.899'/></svg>"
     )
     assert lean(drawing) == "<svg>\n<path d='M 1.23 -7.89'/></svg>\n"
+    told = "<svg><text x='1.23456'>0.678 au, <tspan y='0.125'>−0.025</tspan></text></svg>\n"
+    assert lean(told) == told.replace("1.23456", "1.23").replace("0.125", "0.12")
 
 
 def test_the_pages_program_reads_the_table_back(events: pl.DataFrame) -> None:

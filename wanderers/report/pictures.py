@@ -158,10 +158,13 @@ def drawn_into(folder: Path, job: Job) -> Picture:
 
 
 def lean(svg: str) -> str:
-    """Return a drawing without what nobody sees: decimals beyond a hundredth of a dot, notes, blank lines."""
+    """Return a drawing without what nobody sees: decimals beyond a hundredth of a dot, notes, blank lines.
+
+    Only tags lose decimals: what stands between them is text that people read.
+    """
     bare = re.sub(r"<\?xml.*?\?>|<!DOCTYPE.*?>|<!--.*?-->|<metadata>.*?</metadata>", "", svg, flags=re.DOTALL)
-    rounded = re.sub(r"(\d\.\d\d)\d+", r"\1", bare)
-    return re.sub(r"\s*\n\s*", "\n", rounded).strip().replace("'DejaVu Sans'", FONTS) + "\n"
+    shorter = re.sub(r"<[^>]+>", lambda tag: re.sub(r"(\d\.\d\d)\d+", r"\1", tag[0]), bare)
+    return re.sub(r"\s*\n\s*", "\n", shorter).strip().replace("'DejaVu Sans'", FONTS) + "\n"
 
 
 Mapping = Callable[[Callable[[Job], Picture], list[Job]], Iterator[Picture]]
