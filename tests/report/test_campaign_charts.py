@@ -24,6 +24,7 @@ from wanderers.report.campaign.contents import CameraChoice, CampaignContents, g
 from wanderers.report.charts import campaign_clock, campaign_field, campaign_light, campaign_nights
 from wanderers.report.charts.campaign_nights import RED
 from wanderers.report.charts.export import save
+from wanderers.report.charts.style import LIGHT
 
 CASES = [("mars", "hill"), ("jupiter", "atoll"), ("saturn", "ridge"), ("venus", "ridge"), ("venus", "hill")]
 DRAWN = (
@@ -240,6 +241,10 @@ def test_what_became_of_nights_is_told_by_shape(store: TrackStore) -> None:
     assert {"done", "lost", "good", "must"} <= set(nights.sorts)
     ax = campaign_clock.draw_campaign_clock(some).axes[0]
     assert len(dots(ax, "x")) == 2
+    key = {line.get_label(): line for line in campaign_nights.handles(nights.sorts, LIGHT)}
+    assert key["done"].get_marker() is not key["planned night"].get_marker()
+    drawn = [line for line in ax.lines if line.get_marker() is key["done"].get_marker()]
+    assert sum(line.get_xydata().shape[0] for line in drawn) == nights.sort.count("done")
     said = words(campaign_clock.draw_campaign_clock(some))
     assert "lost" in said and "done" in said
 

@@ -15,6 +15,7 @@ import numpy as np
 import polars as pl
 from matplotlib.axes import Axes
 from matplotlib.lines import Line2D
+from matplotlib.path import Path
 
 from wanderers.arrays import Bools, Floats
 from wanderers.ephemeris.bodies import BODIES
@@ -36,6 +37,14 @@ RED: Final = replace(
 """For screens in the field: nothing but red on black; text at least 4.5:1, lines 3:1 (WCAG 2.1)."""
 
 SIZES: Final = {"good": 6.5, "must": 7.0, "done": 6.5, "lost": 6.5, "spare": 5.0}
+RING_WITH_POINT: Final = Path.make_compound_path(Path.unit_circle(), Path.circle(radius=0.16))
+MARKERS: Final[dict[str, str | Path]] = {
+    "good": "o",
+    "must": "s",
+    "done": RING_WITH_POINT,
+    "lost": "x",
+    "spare": "|",
+}
 KEY_WORDS: Final = {
     "good": "planned night",
     "must": "must-night",
@@ -101,7 +110,7 @@ def look(sort: str, style: Style) -> dict[str, Any]:
     """Return how nights of a sort are drawn: keywords of a line without a line."""
     common: dict[str, Any] = {
         "linestyle": "none",
-        "marker": {"must": "s", "lost": "x", "spare": "|"}.get(sort, "o"),
+        "marker": MARKERS[sort],
         "markersize": SIZES[sort],
         "markeredgecolor": style.ink,
         "markerfacecolor": style.ink if sort == MUST else style.paper,
@@ -120,9 +129,6 @@ def draw(ax: Axes, nights: Nights, places: Floats, style: Style) -> None:
         own = places[nights.of(sort)]
         zorder = 4.5 if sort == MUST else 4.0
         ax.plot(own[:, 0], own[:, 1], zorder=zorder, **look(sort, style))
-        if sort == Status.DONE.value:
-            point = look(sort, style) | {"markersize": 2.2, "markerfacecolor": style.ink}
-            ax.plot(own[:, 0], own[:, 1], zorder=4.1, **point)
 
 
 def number_labels(
