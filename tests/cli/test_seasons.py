@@ -61,3 +61,38 @@ def test_bodies_and_frames_are_chosen(rows: Rows) -> None:
 @pytest.mark.parametrize("body", ["sun", "moon"])
 def test_bodies_that_never_turn_back_have_no_seasons(body: str, rows: Rows) -> None:
     assert rows(*YEARS, "--body", body).height == 0
+
+
+@pytest.mark.parametrize(
+    ("arguments", "told"),
+    [
+        ((), ("in longitude", "in RA", "against the")),
+        (
+            ("--format", "markdown", "--length", "short"),
+            ("Jupiter retrograde <!--", "retrograde in RA", "retrograde J2000"),
+        ),
+        (
+            ("--format", "markdown", "--length", "medium", "--language", "de"),
+            (" rückläufig in RA ", " J2000 "),
+        ),
+    ],
+)
+def test_seasons_of_several_frames_are_told_apart(
+    monkeypatch: pytest.MonkeyPatch,
+    capsys: Any,
+    cache_folder: Path,
+    arguments: tuple[str, ...],
+    told: tuple[str, ...],
+) -> None:
+    run = Program(monkeypatch, capsys, "--cache", str(cache_folder))
+    frames = ("--frame", "ecliptic", "--frame", "equator", "--frame", "j2000")
+    outcome = run("seasons", "--from", "2028", "--to", "2029", "--body", "jupiter", *frames, *arguments)
+    assert outcome.status == 0
+    assert all(words in " ".join(outcome.out.split()) for words in told)
+
+
+def test_the_usual_frame_needs_no_column(
+    monkeypatch: pytest.MonkeyPatch, capsys: Any, cache_folder: Path
+) -> None:
+    run = Program(monkeypatch, capsys, "--cache", str(cache_folder))
+    assert "Frame" not in run("seasons", "--from", "2028", "--to", "2029", "--body", "jupiter").out

@@ -11,8 +11,10 @@ import polars as pl
 
 from wanderers import schema
 from wanderers.ephemeris.bodies import Body
+from wanderers.ephemeris.frames import Frame
 from wanderers.report import outlook_table, site_tables
 from wanderers.report.names import label
+from wanderers.site.summary import counted
 
 WIDTH: Final = 100
 NARROWEST: Final = 12
@@ -90,11 +92,6 @@ def track_heading(table: pl.DataFrame, body: Body, kernel: str) -> str:
     return f"{body.label}, {rows}, geocentric, apparent places from {kernel}; times in UTC"
 
 
-def counted(count: int, noun: str) -> str:
-    """Return a number with its noun in the right form."""
-    return f"{count} {noun}" if count == 1 else f"{count} {noun}s"
-
-
 Column = tuple[str, Callable[[pl.DataFrame], list[str]], bool]
 
 
@@ -111,12 +108,19 @@ def _layout(table: pl.DataFrame) -> list[Column]:
     if "dark_hours_rank" in table.columns:
         return outlook_table.LAYOUT
     if schema.conforms(table, schema.SEASON_COLUMNS) and "verdict" in table.columns:
-        return SITE_SEASONS
+        return _with_frame(SITE_SEASONS, table)
     if schema.conforms(table, schema.SEASON_COLUMNS):
-        return SEASONS
+        return _with_frame(SEASONS, table)
     if schema.conforms(table, schema.TRACK_COLUMNS):
         return TRACK
     return [(name, _texts(name, str), table.schema[name].is_numeric()) for name in table.columns]
+
+
+def _with_frame(layout: list[Column], table: pl.DataFrame) -> list[Column]:
+    """Return a layout of seasons that names the frame, unless all are of the usual one."""
+    if table["frame"].is_in([Frame.ECLIPTIC.value]).all():
+        return layout
+    return [layout[0], ("Frame", _texts("frame", FRAME_WORDS.__getitem__), False), *layout[1:]]
 
 
 def _texts(name: str, cell: Cell) -> Callable[[pl.DataFrame], list[str]]:

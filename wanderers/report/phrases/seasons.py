@@ -78,6 +78,12 @@ def _constellations(season: Row, words: Language) -> str | None:
     return words.phrase("document", "among").format(names=listed)
 
 
+def _frame_mark(season: Row, words: Language) -> str | None:
+    """Return the frame in few words, None for the usual one."""
+    mark = words.table("frame_marks").get(season["frame"])
+    return None if mark is None else str(mark)
+
+
 def _frame(table: str) -> Fact:
     return lambda season, words: words.phrase(table, season["frame"])
 
@@ -92,5 +98,6 @@ SOURCES: Final[dict[str, Fact]] = {
     "constellations_in": _constellations,
     "frame": _frame("frames"),
     "frame_brief": _frame("brief_frames"),
+    "frame_mark": _frame_mark,
 }
 """Fields of the phrases of seasons."""
