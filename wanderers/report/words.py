@@ -103,10 +103,14 @@ def uncertainty(event: Event) -> str | None:
 def near_the_sun(event: Event) -> bool:
     """Return whether a body of an event may stand less than NEAR_SUN_DEG from the Sun.
 
-    The elongation told is that of the first body; the others may stand nearer by the whole separation.
+    A site's row says it of all of them. Without a site the elongation told is that of the first body; the
+    others may stand nearer by the whole separation.
     """
+    if event.get("caution") is not None:
+        return True
     elongation = event["elongation_deg"]
-    return elongation is not None and elongation - (event["separation_deg"] or 0.0) < NEAR_SUN_DEG
+    nearer = 0.0 if "caution" in event else event["separation_deg"] or 0.0
+    return elongation is not None and elongation - nearer < NEAR_SUN_DEG
 
 
 def minute(instant: str) -> str:
