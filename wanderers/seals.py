@@ -43,6 +43,11 @@ def read_sealed(path: Path, made_from: str) -> bytes:
     return content
 
 
+def what_is_wrong(error: OSError | ValueError) -> str:
+    """Return what keeps a sealed file from being used, in words."""
+    return f"cannot be read ({error.strerror})" if isinstance(error, OSError) else "is damaged or foreign"
+
+
 def _seal(content: bytes, made_from: str) -> bytes:
     """Return a CRC-32: it notices damage, and takes a quarter of the time of a cryptographic digest."""
     return zlib.crc32(content, zlib.crc32(made_from.encode())).to_bytes(SEAL_BYTES, "big")

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import pytest
 
-from wanderers.cli.options import ProgressLine, time_left
+from wanderers.cli.options import ProgressLine, time_left, told_once
 
 
 def test_the_line_tells_the_time_left_and_ends(capsys: pytest.CaptureFixture[str]) -> None:
@@ -27,3 +27,11 @@ def test_the_line_tells_the_time_left_and_ends(capsys: pytest.CaptureFixture[str
 )
 def test_times_left_are_rough(seconds: float, words: str) -> None:
     assert time_left(seconds) == words
+
+
+def test_a_line_met_again_is_told_once() -> None:
+    lines: list[str] = []
+    tell = told_once(lines.append)
+    for line in ("a", "b", "a", "b", "c"):
+        tell(line)
+    assert lines == ["a", "b", "c"]

@@ -233,11 +233,19 @@ def test_a_damaged_or_foreign_file_is_found_anew_with_one_warning(
     assert len(told) == 1 and len(found) == 2
 
 
+def test_many_damaged_files_get_one_warning(own: TrackStore, told: list[str]) -> None:
+    expected = kept_almanac(own, QUERY)
+    for path in files(own):
+        truncated(path, own)
+    assert ids(kept_almanac(own, QUERY)) == ids(expected)
+    assert len(told) == 1 and "and 2 more" in told[0]
+
+
 def test_a_folder_in_the_way_only_warns(own: TrackStore, told: list[str]) -> None:
     expected = kept_almanac(own, QUERY)
     folder(piece_file(own, SEAMS_JD[0], SEAMS_JD[1]), own)
     assert ids(kept_almanac(own, QUERY)) == ids(expected)
-    assert len(told) == 2 and "not kept" in told[1]
+    assert len(told) == 2 and "cannot be read (Is a directory)" in told[0] and "not kept" in told[1]
 
 
 def test_a_protected_folder_only_warns(

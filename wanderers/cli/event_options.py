@@ -10,6 +10,7 @@ from typing import Any, Final, TypeVar
 import click
 
 from wanderers.cli.options import (
+    ONE_AND_SEVERAL,
     Span,
     Workplace,
     body_option,
@@ -79,7 +80,7 @@ def event_options(*, years: int, stars: str) -> Callable[[Command], Command]:
 
     def decorate(command: Command) -> Command:
         @span_options(default_years=years)
-        @body_option
+        @body_option(ONE_AND_SEVERAL)
         @kind_option
         @frame_option
         @click.option(

@@ -11,7 +11,7 @@ from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 from enum import StrEnum
 from pathlib import Path
-from typing import Any, TypeVar
+from typing import Any, Final, TypeVar
 
 import click
 
@@ -123,17 +123,20 @@ def _years_later(jd: float, years: int) -> str:
     return f"{'-' if later < 0 else ''}{abs(later):04d}{day}"
 
 
-def body_option(command: Command) -> Command:
-    """Add the repeatable ``--body``; the command receives ``bodies``, all when none is given."""
-    return _repeatable(
-        command,
-        "--body",
-        "bodies",
-        BODY,
-        BODIES,
-        "Body wanted; may be repeated. One alone: and all it meets; several: "
-        "and their meetings with each other. [default: all]",
-    )
+ONE_AND_SEVERAL: Final = (
+    "Body wanted; may be repeated. One alone: and all it meets; several: of what they meet, each other and "
+    "stars."
+)
+EACH_BODY: Final = "Planet wanted; may be repeated."
+
+
+def body_option(meaning: str) -> Callable[[Command], Command]:
+    """Add the repeatable ``--body``; the command receives ``bodies``, all when none is given.
+
+    Args:
+        meaning: what naming bodies means, as the help says it.
+    """
+    return lambda command: _repeatable(command, "--body", "bodies", BODY, BODIES, f"{meaning} [default: all]")
 
 
 def kind_option(command: Command) -> Command:
@@ -196,7 +199,19 @@ def open_workplace(kernel: Path | None, cache: Path | None, quiet: bool) -> Work
     folder = cache or kernels.default_cache_dir()
     found = kernels.inspect_kernel(kernels.find_kernel(kernel, folder, os.environ), folder, warn=warn)
     progress = silent if quiet or not sys.stderr.isatty() else ProgressLine()
-    return Workplace(TrackStore(found, folder, progress=progress, warn=warn), quiet)
+    return Workplace(TrackStore(found, folder, progress=progress, warn=told_once(warn)), quiet)
+
+
+def told_once(tell: Callable[[str], None]) -> Callable[[str], None]:
+    """Return a function that passes on a line the first time: one fault may be met once a block."""
+    told: set[str] = set()
+
+    def tell_once(line: str) -> None:
+        if line not in told:
+            told.add(line)
+            tell(line)
+
+    return tell_once
 
 
 def warn(line: str) -> None:

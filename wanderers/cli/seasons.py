@@ -8,6 +8,7 @@ import click
 from click.core import ParameterSource
 
 from wanderers.cli.options import (
+    EACH_BODY,
     Span,
     Workplace,
     body_option,
@@ -49,7 +50,7 @@ FIXED_BY_OUTLOOK: Final = {
 
 @click.command("seasons")
 @span_options(default_years=2)
-@body_option
+@body_option(EACH_BODY)
 @frame_option
 @click.option("--outlook", type=click.FloatRange(1.0, 500.0), metavar="YEARS", help=BESIDE_OTHERS)
 @site_options(required=False)

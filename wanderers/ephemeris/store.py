@@ -24,7 +24,7 @@ from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.chebyshev import Series
 from wanderers.ephemeris.kernels import Kernel, usable_span_jd_tt
 from wanderers.ephemeris.tracks import Tracks
-from wanderers.seals import read_sealed, write_sealed
+from wanderers.seals import read_sealed, what_is_wrong, write_sealed
 
 Progress = Callable[[int, int], None]
 """Told, after each block, how many are done of how many."""
@@ -137,8 +137,8 @@ class TrackStore:
         try:
             block = read_block(path, index, self._stamp(), self.kernel.bodies)
             self._whole.add(index)
-        except (OSError, ValueError):
-            self.warn(f"cache file {path} is damaged or foreign: rebuilt")
+        except (OSError, ValueError) as error:
+            self.warn(f"cache file {path} {what_is_wrong(error)}: rebuilt")
             return None
         self._remember(block)
         return block

@@ -26,7 +26,7 @@ from wanderers.ephemeris.blocks import BLOCK_DAYS
 from wanderers.ephemeris.store import TrackStore
 from wanderers.events.almanac import almanac
 from wanderers.events.catalogue import Query, stretches
-from wanderers.seals import read_sealed, write_sealed
+from wanderers.seals import read_sealed, what_is_wrong, write_sealed
 
 SHORTEST_DAYS: Final = BLOCK_DAYS
 """Spans shorter than this are found anew each time: that takes a second or two."""
@@ -49,7 +49,7 @@ def kept_almanac(store: TrackStore, query: Query) -> pl.DataFrame:
         return almanac(store, query)
     cuts = stretches(store, query.jd_from, query.jd_to)
     pieces = [replace(query, jd_from=start, jd_to=end) for start, end in cuts]
-    known = {piece: table for piece in pieces if (table := _read(store, piece)) is not None}
+    known = _known(store, pieces)
     tables: list[pl.DataFrame] = []
     for is_known, run in groupby(pieces, key=known.__contains__):
         neighbours = list(run)
@@ -68,16 +68,32 @@ def _found(store: TrackStore, run: Sequence[Query]) -> list[pl.DataFrame]:
     return [events[start:end] for start, end in pairwise(edges)]
 
 
-def _read(store: TrackStore, piece: Query) -> pl.DataFrame | None:
-    """Return the kept events of a piece, None where there are none that can be trusted."""
-    path = _path(store, piece)
-    try:
-        content = read_sealed(path, _made_from(store, piece))
-    except FileNotFoundError:
-        return None
-    except (OSError, ValueError):
-        store.warn(f"cache file {path} is damaged or foreign: rebuilt")
-        return None
+def _known(store: TrackStore, pieces: Sequence[Query]) -> dict[Query, pl.DataFrame]:
+    """Read the events of those pieces that were kept and can be trusted; the others get one warning."""
+    known: dict[Query, pl.DataFrame] = {}
+    faults: list[str] = []
+    for piece in pieces:
+        path = _path(store, piece)
+        try:
+            known[piece] = _read(path, _made_from(store, piece))
+        except FileNotFoundError:
+            continue
+        except (OSError, ValueError) as error:
+            faults.append(f"cache file {path} {what_is_wrong(error)}")
+    if faults:
+        others = f", and {len(faults) - 1} more are not as they should be" if len(faults) > 1 else ""
+        store.warn(f"{faults[0]}{others}: rebuilt")
+    return known
+
+
+def _read(path: Path, made_from: str) -> pl.DataFrame:
+    """Return kept events, and mark them as read now.
+
+    Raises:
+        OSError: the file cannot be read.
+        ValueError: it is damaged or something else.
+    """
+    content = read_sealed(path, made_from)
     with suppress(OSError):
         os.utime(path)
     return pl.read_parquet(io.BytesIO(content))
