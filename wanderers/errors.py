@@ -47,5 +47,9 @@ class SpanError(WanderersError):
     """A span of time outside the kernel."""
 
 
+class InputError(WanderersError):
+    """A file that cannot be read."""
+
+
 class OutputError(WanderersError):
     """A place that cannot be written."""

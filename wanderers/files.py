@@ -10,7 +10,7 @@ from contextlib import contextmanager, suppress
 from pathlib import Path
 from typing import BinaryIO, Final
 
-from wanderers.errors import OutputError
+from wanderers.errors import InputError, OutputError
 
 _ADVICE: Final = "choose another place or correct its permissions"
 _KEPT_OF_NAME: Final = 40
@@ -71,6 +71,23 @@ def write_output(path: Path, content: bytes) -> None:
     with reported_as_output_error(path):
         path.parent.mkdir(parents=True, exist_ok=True)
         write_bytes_atomically(path, content)
+
+
+def read_text(path: Path) -> str:
+    """Return the text of a file that a user named, UTF-8 with or without a mark of byte order.
+
+    Raises:
+        InputError: it cannot be read; says why.
+    """
+    try:
+        return path.read_text(encoding="utf-8-sig")
+    except (OSError, UnicodeDecodeError) as error:
+        raise InputError(f"cannot read {path}: {why_unreadable(error)}; name another file") from error
+
+
+def why_unreadable(error: OSError | UnicodeDecodeError) -> str:
+    """Return what keeps a text file from being read, in words."""
+    return str(error.strerror or error) if isinstance(error, OSError) else "it is no UTF-8 text"
 
 
 def require_writable(path: Path, *, folder: bool = False) -> None:

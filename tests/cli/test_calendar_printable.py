@@ -100,6 +100,7 @@ def test_both_files_are_written_if_both_are_asked_for(run: Run, tmp_path: Path) 
     [
         (("--paper", "a4"), 2, "--paper is for --printable"),
         (("--printable", "w.pdf", "--paper", "a5"), 2, "'a5' is not one of"),
+        (("--printable", "w.png"), 2, "name it w.pdf"),
         (("--printable", "."), 1, "it is a folder"),
         (("--printable", "w.pdf", "--from", "2027", "--to", "2040"), 2, "at most 120 months"),
     ],

@@ -138,6 +138,7 @@ def test_a_city_is_found_and_what_is_assumed_goes_to_standard_error(run: Program
         ((*HILL, "--from", "2027-03-08", "--to", "2027-03-08"), "is not after"),
         ((*HILL, "--at", "2027-03-05T20:00", "--from", "2027-03-01"), "leave out --from"),
         ((*HILL, "--at", "yesterday"), "is not a date"),
+        ((*HILL, "--at", "25:00"), "no time of day '25:00'"),
         ((*HILL, "--min-altitude", "95"), "min-altitude"),
         ((*HILL, "--sun-below", "-100"), "sun-below"),
     ],

@@ -116,6 +116,15 @@ def test_format_wins_over_the_ending_of_the_file(cache_folder: Path, tmp_path: P
     assert path.read_text().startswith("[{")
 
 
+def test_an_ending_that_names_no_format_is_refused(cache_folder: Path, tmp_path: Path) -> None:
+    path = tmp_path / "seasons.xlsx"
+    run = program(*CASES["seasons"].arguments, "--out", str(path), cache=cache_folder)
+    assert run.returncode == 2 and ".xlsx" in run.stderr and ".parquet" in run.stderr
+    assert not path.exists()
+    given = program(*CASES["seasons"].arguments, "--format", "csv", "--out", str(path), cache=cache_folder)
+    assert given.returncode == 0 and path.read_text().startswith("season_id,")
+
+
 @pytest.mark.parametrize("name", CASES)
 def test_help_has_an_example(name: str, cache_folder: Path) -> None:
     run = program(CASES[name].arguments[0], "--help", cache=cache_folder)

@@ -81,3 +81,8 @@ def test_a_small_kernel_serves_the_bodies_it_holds(small_kernel: Path, rows: Row
     whole = rows("mars", *IN_SMALL)
     # DE421 and DE440 put Mars less than a hundredth of an arcsecond apart in these years.
     np.testing.assert_allclose(small["longitude_deg"], whole["longitude_deg"], atol=3e-6)
+
+
+def test_more_rows_than_fit_are_refused(cache_folder: Path) -> None:
+    request = ("track", "mars", "--from", "1550", "--to", "2650", "--step", "1s")
+    refused(program(*request, cache=cache_folder), 2, "--step", "rows", "shorter span")

@@ -15,16 +15,16 @@ from wanderers.cli.options import BODY, Workplace, workplace_options
 from wanderers.cli.report import REPORTS, progress_line
 from wanderers.cli.site_options import site_options, today
 from wanderers.ephemeris.bodies import Body
-from wanderers.errors import OutputError
+from wanderers.files import read_text
 from wanderers.plans.campaign import Campaign, plan_campaign
-from wanderers.plans.replan import LoggedNight, parse_evening, read_log
+from wanderers.plans.replan import parse_evening, read_log
 from wanderers.plans.request import CampaignRequest
 from wanderers.plans.season import LEAD_DAYS, NEXT, TAIL_DAYS
 from wanderers.report.campaign.contents import CameraChoice
 from wanderers.report.campaign.folder import CAMPAIGN, write_campaign
 from wanderers.report.folder import require_replaceable
-from wanderers.report.tables import counted
 from wanderers.site.places import Site
+from wanderers.site.summary import counted
 from wanderers.site.zones import zone_named
 
 WHICH_SEASON: Final = "Season: next, a year, or a season_id of the seasons table."
@@ -81,7 +81,7 @@ def command(
         season=season,
         lead_days=lead,
         tail_days=tail,
-        log=() if done is None else _log(done),
+        log=() if done is None else read_log(read_text(done), str(done)),
         skip=tuple(parse_evening(text, "--skip") for text in skipped),
     )
     if out is not None:
@@ -96,14 +96,6 @@ def command(
         for line in told(campaign):
             click.echo(f"wanderers: {line}", err=True)
     click.echo(page)
-
-
-def _log(path: Path) -> tuple[LoggedNight, ...]:
-    try:
-        text = path.read_text(encoding="utf-8-sig")
-    except (OSError, UnicodeDecodeError) as error:
-        raise OutputError(f"cannot read {path}: {error}") from error
-    return read_log(text, str(path))
 
 
 def stem_of(campaign: Campaign) -> str:

@@ -57,7 +57,9 @@ def rules_options(command: Command) -> Command:
     @click.option("--moon-distance", default=MODEL.moon_bright_deg, **FAR, help=BRIGHT_MOON)
     @click.option("--thin-moon-distance", default=MODEL.moon_faint_deg, **FAR, help=FAINT_MOON)
     @click.option("--extinction", type=LOSS, metavar="MAG", help=HOW_CLEAR)
-    @click.option("--dark-sky", type=BLACKNESS, default=21.0, metavar="MAG", help=HOW_BLACK)
+    @click.option(
+        "--dark-sky", type=BLACKNESS, default=21.0, show_default=True, metavar="MAG", help=HOW_BLACK
+    )
     @functools.wraps(command)
     def wrapped(
         *args: Any,

@@ -17,7 +17,7 @@ from wanderers.ephemeris import kernels
 from wanderers.ephemeris.dates import iso_strings
 from wanderers.ephemeris.kernels import Kernel
 from wanderers.errors import KernelError
-from wanderers.report.tables import counted
+from wanderers.site.summary import counted
 
 BYTES_PER_MB: Final = 1_000_000
 

@@ -74,12 +74,12 @@ class LazyCommands(click.Group):
 )
 @click.version_option(__version__, prog_name="wanderers")
 def program() -> None:
-    r"""Stations, retrograde seasons and meetings of the planets, from a JPL kernel, offline.
+    """Stations, retrograde seasons and meetings of the planets, from a JPL kernel, offline.
 
     \b
     Example: everything that happens in the next two years, as a folder to open in a browser
         wanderers report
-    """
+    """  # noqa: D301  (click takes the backspace itself as a mark)
 
 
 def main() -> None:

@@ -22,8 +22,8 @@ from wanderers.site.zones import zone_named
 
 DEFAULT_EVENINGS = 7
 AT_ONE_MOMENT = (
-    "List instead everything up at this time by the site's clock, as 2027-03-05T20:00 or 20:00; "
-    "Z or an offset may follow."
+    "List instead everything up at this time by the site's clock, as 2027-03-05T20:00 or 20:00, however low "
+    "unless --min-altitude is given; Z or an offset may follow."
 )
 WHICH_BODIES = "Body wanted; may be repeated. [default: the Moon and the planets to Neptune]"
 

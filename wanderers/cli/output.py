@@ -13,7 +13,7 @@ from typing import Any, BinaryIO, Final, TypeVar
 import click
 import polars as pl
 
-from wanderers.errors import OutputError
+from wanderers.errors import OutputError, UsageProblem
 from wanderers.events.old_dates import has_old_dates, with_julian_dates
 from wanderers.files import reported_as_output_error, require_writable, write_atomically, write_output
 from wanderers.report.tables import print_table
@@ -79,7 +79,12 @@ def _with_formats(command: Command, formats: Sequence[str], suffixes: Mapping[st
         if path is not None:
             require_folder(path)
             require_writable(path)
-        chosen = form or (suffixes.get(path.suffix.lower(), "table") if path else "table")
+        ending = path.suffix.lower() if path else ""
+        if ending and form is None and ending not in suffixes:
+            raise UsageProblem(
+                f"no format ends in {ending}: name the file with {', '.join(suffixes)}, or give --format"
+            )
+        chosen = form or suffixes.get(ending, "table")
         return command(*args, destination=Destination(chosen, path, calendar), **kwargs)
 
     return wrapped  # type: ignore[return-value]

@@ -68,6 +68,8 @@ def printable_options(command: Command) -> Command:
             raise click.UsageError("--paper is for --printable: add --printable FILE.pdf or leave it out")
         if printable_path is not None:
             require_writable(printable_path)
+            if printable_path.suffix.lower() != ".pdf":
+                raise click.UsageError(f"--printable draws a PDF file: name it {printable_path.stem}.pdf")
         wanted = None if printable_path is None else Printable(printable_path, paper or PAPERS[0])
         return command(*args, printable=wanted, **kwargs)
 

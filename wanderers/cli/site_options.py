@@ -36,7 +36,7 @@ HEIGHT: Final = click.FloatRange(0.0, 89.0)
 ALTITUDE: Final = click.FloatRange(-90.0, 90.0)
 LOSS: Final = click.FloatRange(0.0, 5.0, min_open=True)
 BLACKNESS: Final = click.FloatRange(10.0, 23.0)
-HOW_HIGH: Final = "Least altitude of a body. [default: 10; with --at 0]"
+HOW_HIGH: Final = "Least altitude of a body. [default: 10]"
 HOW_DARK: Final = "Highest altitude of the Sun."
 HOW_CLEAR: Final = (
     "Magnitudes lost per air mass: 0.2 on a mountain, 0.4 and more in haze. "
@@ -149,12 +149,22 @@ def parse_moment(text: str, zone: Zone) -> float:
     """
     match = CLOCK.fullmatch(text.strip())
     clock, offset = (match["clock"], match["zone"]) if match else (text, None)
-    if TIME_OF_DAY.fullmatch(clock):
-        clock = f"{today(zone)}T{clock.zfill(5)}"
-    jd = parse_date(clock)
+    jd = _of_today(clock, zone) if TIME_OF_DAY.fullmatch(clock) else parse_date(clock)
     if offset is None:
         return float(timescales.jd_tt_from_utc(_from_clock(text, jd, zone)))
     return float(timescales.jd_tt_from_utc(jd - _offset_s(offset) / SECONDS_PER_DAY))
+
+
+def _of_today(time: str, zone: Zone) -> float:
+    """Return the Julian date of a bare time of day, by the clock.
+
+    Raises:
+        DateError: no day has it.
+    """
+    try:
+        return parse_date(f"{today(zone)}T{time.zfill(5)}")
+    except DateError as error:
+        raise DateError(f"there is no time of day '{time}': write 00:00 to 23:59") from error
 
 
 def _from_clock(text: str, jd: float, zone: Zone) -> float:

@@ -19,9 +19,11 @@ from wanderers.cli.options import (
 from wanderers.cli.output import Destination, output_options, write_table
 from wanderers.ephemeris.bodies import Body
 from wanderers.ephemeris.frames import Frame
+from wanderers.errors import UsageProblem
 from wanderers.events.timeseries import time_series
 from wanderers.report.tables import track_heading
 
+MOST_ROWS = 5_000_000
 DAYS_PER_UNIT = {"s": 1.0 / 86_400.0, "min": 1.0 / 1_440.0, "h": 1.0 / 24.0, "d": 1.0}
 
 
@@ -72,5 +74,11 @@ def command(
         wanderers track mars --from 2027-01 --to 2027-02 --step 6h --format csv
     """
     require_in_kernel(workplace, span, (body,))
+    rows = (span.jd_to - span.jd_from) / step
+    if rows > MOST_ROWS:
+        raise UsageProblem(
+            f"--step would give {rows:,.0f} rows, more than {MOST_ROWS:,}: "
+            "choose a longer step or a shorter span"
+        )
     table = time_series(workplace.store, body, span.jd_from, span.jd_to, step, frame)
     write_table(table, destination, track_heading(table, body, workplace.store.kernel.name))

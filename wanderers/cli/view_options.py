@@ -17,12 +17,13 @@ from wanderers.errors import UsageProblem
 from wanderers.events.catalogue import Query
 from wanderers.events.kept import kept_almanac
 from wanderers.report.site_tables import site_heading
-from wanderers.report.tables import almanac_heading, counted
+from wanderers.report.tables import almanac_heading
 from wanderers.site.almanac import events_of_site, with_parallax
 from wanderers.site.audience import Audience, Removed, chosen_by_figures, chosen_from_site, removed_words
 from wanderers.site.hours import WEEKDAYS, Opening
 from wanderers.site.places import Site
 from wanderers.site.rules import Rules
+from wanderers.site.summary import counted
 
 Command = TypeVar("Command", bound=Callable[..., Any])
 

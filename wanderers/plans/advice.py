@@ -14,8 +14,9 @@ from wanderers.plans.season import CampaignSeason, Moment, date_of
 from wanderers.plans.spares import NEAR_DAYS, Line
 from wanderers.plans.usable import all_nights
 from wanderers.site.places import Site
+from wanderers.site.summary import counted
 
-LOWER_ALTITUDES_DEG: Final = (15.0, 10.0, 5.0)
+LOWER_ALTITUDES_DEG: Final = (60.0, 45.0, 30.0, 15.0, 10.0, 5.0)
 LIGHTER_SUNS_DEG: Final = (-9.0, -6.0)
 LOWEST_DEG: Final = 5.0
 LIGHTEST_DEG: Final = -6.0
@@ -144,7 +145,7 @@ def _for_an_empty_plan(trials: Trials, rules: CampaignRules) -> tuple[str, ...]:
     told = []
     if trials.usable(easiest_rules(rules)):
         counts = [(easier.words, trials.usable(easier.rules)) for easier in easier_rules(rules)]
-        told = [f"{words} would give {_nights(count)}" for words, count in counts if count]
+        told = [f"{words} would give {counted(count, 'usable night')}" for words, count in counts if count]
         told = told or ["only giving up several of the rules together would give nights"]
     return _sentences(told) or (
         f"From this site {trials.season.body.label} is not to be had this season: try another season, "
@@ -154,7 +155,3 @@ def _for_an_empty_plan(trials: Trials, rules: CampaignRules) -> tuple[str, ...]:
 
 def _sentences(told: list[str]) -> tuple[str, ...]:
     return tuple(text[0].upper() + text[1:] + "." for text in told)
-
-
-def _nights(count: int) -> str:
-    return "1 usable night" if count == 1 else f"{count} usable nights"

@@ -15,6 +15,7 @@ from wanderers.plans.rules import CampaignRules
 from wanderers.plans.season import NEXT, CampaignSeason, Moment
 from wanderers.site import reasons as sky_words
 from wanderers.site.hours import WEEKDAY_NAMES
+from wanderers.site.summary import counted
 
 BENT: Final = 6.0
 """Degrees of turning a degree of path from which a stretch is called a bend."""
@@ -113,7 +114,7 @@ def _at_moment(season: CampaignSeason, moment: Moment, row: dict[str, Any]) -> s
     later_days = row["nominal_jd"] - moment.jd_tt
     hours = abs(later_days) * 24.0
     side = "after" if later_days > 0.0 else "before"
-    apart = f"{hours:.0f} hours" if hours < 36.0 else f"{abs(later_days):.0f} days"
+    apart = counted(hours, "hour") if hours < 36.0 else counted(abs(later_days), "day")
     when = "within the hour" if hours < 1.0 else f"{apart} {side} it"
     off = abs(row["path_deg"] - season.path.reached_deg(moment.jd_tt))
     place = f", {off:.1f} degrees from it along the path" if off >= TOLD_DEG else ""

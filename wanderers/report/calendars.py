@@ -34,8 +34,8 @@ from wanderers.report.definitions import definition
 from wanderers.report.phrases.language import Language
 from wanderers.report.phrases.notes import notes
 from wanderers.report.phrases.sentences import sentences
-from wanderers.report.tables import counted
 from wanderers.site.places import Site
+from wanderers.site.summary import counted
 from wanderers.site.zones import zone_named, zone_names
 
 FIRST_STAMP: Final = dt.datetime(2000, 1, 1, 12, tzinfo=dt.UTC)

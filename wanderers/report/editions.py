@@ -23,6 +23,7 @@ from pathlib import Path
 from typing import Any, Final
 
 from wanderers.errors import UsageProblem, WanderersError
+from wanderers.files import why_unreadable
 from wanderers.report.phrases.language import REFERENCE, Language, language
 from wanderers.site.zones import Zone, zone_named
 
@@ -68,7 +69,7 @@ def read_editions(path: Path) -> tuple[Edition, ...]:
     try:
         tables = tomllib.loads(path.read_text(encoding="utf-8"))
     except (OSError, UnicodeDecodeError) as error:
-        raise EditionFileError(f"cannot read the editions in {path}: {error}") from error
+        raise EditionFileError(f"cannot read the editions in {path}: {why_unreadable(error)}") from error
     except tomllib.TOMLDecodeError as error:
         raise EditionFileError(f"{path} is no TOML: {error}; {EXAMPLE}") from error
     return editions(tables, str(path))

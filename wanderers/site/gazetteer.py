@@ -186,5 +186,8 @@ def _advice(text: str) -> str:
 @cache
 def _folded(text: str) -> str:
     """Return a name without case, accents and outer blanks: Zürich is zurich."""
-    plain = unicodedata.normalize("NFKD", text.strip().casefold())
+    plain = text.strip().casefold()
+    if plain.isascii():  # most of 200,000 names
+        return plain
+    plain = unicodedata.normalize("NFKD", plain)
     return "".join(letter for letter in plain if not unicodedata.combining(letter))

@@ -143,3 +143,9 @@ def _minute(name: str) -> pl.Expr:
     ) // 60
     hour, minute = minutes // 60 % 24, minutes % 60
     return pl.concat_str(hour.cast(pl.String).str.zfill(2), pl.lit(":"), minute.cast(pl.String).str.zfill(2))
+
+
+def counted(number: float, noun: str) -> str:
+    """Return a whole number with its noun: ``1 day``, ``81 days``."""
+    said = f"{number:.0f}"
+    return f"{said} {noun}" if said == "1" else f"{said} {noun}s"

@@ -11,6 +11,7 @@ from wanderers.constants import AU_KM, SPEED_OF_LIGHT_KM_PER_S
 from wanderers.events.season_marks import CLOSEST
 from wanderers.report import facts
 from wanderers.report.dossier.sources import Origin, SeasonRows, printed
+from wanderers.site.summary import counted
 
 TURNS: Final = (("station_retrograde", "at the first turn"), ("station_direct", "at the second turn"))
 MIDDLES: Final = {"opposition": "opposition", "inferior_conjunction": "inferior conjunction"}
@@ -55,11 +56,6 @@ class Figure:
 def figures(rows: SeasonRows) -> tuple[Figure, ...]:
     """Return every figure of a season, in the order in which a script needs them."""
     return (*_motion(rows), *_distance(rows), *_light(rows), *_size(rows))
-
-
-def counted(number: float, noun: str) -> str:
-    """Return a whole number with its noun: ``1 day``, ``81 days``."""
-    return f"{number:.0f} {noun}{'' if f'{number:.0f}' == '1' else 's'}"
 
 
 def moon_widths(degrees: float) -> str:

@@ -16,6 +16,7 @@ from wanderers.report import facts
 from wanderers.report.dossier import facts as figures
 from wanderers.report.dossier.sources import Origin, SeasonRows, printed
 from wanderers.report.words import listed
+from wanderers.site.summary import counted
 
 STARS_TOLD: Final = 3
 CLOSE_DEG: Final = 3.0
@@ -94,7 +95,7 @@ def spoken_angle(degrees: float) -> str:
     """Return an angle in words: tenths of a degree, below one degree arcminutes."""
     if degrees >= 0.9995:
         return f"{degrees:.1f} degrees"
-    return figures.counted(degrees * 60.0, "arcminute")
+    return counted(degrees * 60.0, "arcminute")
 
 
 def _backwards(rows: SeasonRows) -> Iterator[Sentence]:
@@ -103,7 +104,7 @@ def _backwards(rows: SeasonRows) -> Iterator[Sentence]:
     days, arc = season["retrograde_days"], season["arc_deg"]
     stations = (rows.in_season("station_retrograde_utc"), rows.in_season("station_direct_utc"))
     yield Sentence(
-        f"From {span}, for {figures.counted(days, 'day')}, {name} runs backwards, westward among the stars.",
+        f"From {span}, for {counted(days, 'day')}, {name} runs backwards, westward among the stars.",
         (*stations, rows.in_season("retrograde_days")),
     )
     yield Sentence(

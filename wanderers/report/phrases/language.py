@@ -11,6 +11,7 @@ from pathlib import Path
 from typing import Any, Final
 
 from wanderers.errors import UnknownNameError, WanderersError
+from wanderers.files import why_unreadable
 from wanderers.report.phrases.templates import field_names
 
 SUFFIX: Final = ".toml"
@@ -109,7 +110,7 @@ def _text_of(path: Path) -> str:
     try:
         return path.read_text(encoding="utf-8")
     except (OSError, UnicodeDecodeError) as error:
-        raise LanguageError(f"cannot read the phrases in {path}: {error}") from error
+        raise LanguageError(f"cannot read the phrases in {path}: {why_unreadable(error)}") from error
 
 
 def _read(code: str, source: str, text: str) -> Language:
