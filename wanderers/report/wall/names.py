@@ -31,7 +31,7 @@ LEGEND_MIDNIGHT: Final = f"{MIDNIGHT_MARK} within 30 min of midnight"
 LEGEND_TABLE: Final = "the table: wanderers almanac, same dates"
 LEGEND_WEEKS: Final = "weeks by ISO 8601"
 LEGEND_STATIONS: Final = (
-    "retrograde: the planet moves westward among the stars, from station to station, in longitude"
+    "retrograde, Mercury to Saturn: westward among the stars, from station to station, in longitude"
 )
 NORTHERN_MOON: Final = "Moon as seen from northern latitudes"
 SOUTHERN_MOON: Final = "Moon as seen from southern latitudes"
