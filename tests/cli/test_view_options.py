@@ -306,7 +306,7 @@ def test_an_outlook_needs_a_site_and_a_span(run: Program) -> None:
         ("--min-altitude", "5"),
         ("--sun-below", "-18"),
         ("--extinction", "0.3"),
-        ("--dark-sky", "5.5"),
+        ("--dark-sky", "19.5"),
         ("--frame", "j2000"),
     ],
     ids=lambda option: option[0],

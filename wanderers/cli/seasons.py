@@ -39,7 +39,7 @@ BESIDE_OTHERS = (
 )
 
 FIXED_BY_OUTLOOK: Final = {
-    "frames": "--frame",
+    "frames_given": "--frame",
     "min_altitude": "--min-altitude",
     "sun_below": "--sun-below",
     "extinction": "--extinction",
