@@ -94,6 +94,28 @@ def test_the_caution_begins_below_twenty_degrees(elongation: float, cautioned: b
     assert (facts.NEAR_SUN_NOTE in facts.note(row)) == cautioned
 
 
+UP = "The Sun is up: no binoculars or telescope, after sunset at 18:00"
+WITHIN = "Within 20 degrees of the Sun: no binoculars or telescope, after sunset at 18:00"
+
+
+@pytest.mark.parametrize(
+    ("from_site", "elongation", "near"),
+    [
+        ({}, 24.0, True),  # the other body may stand at 19
+        ({"caution": None}, 24.0, False),  # a site that looked at both found it does not
+        ({"caution": WITHIN}, 24.0, True),
+        ({"caution": UP}, 90.0, False),  # by day, but far from the Sun
+        ({"caution": UP}, 24.0, True),
+        ({"caution": None}, 19.0, True),
+    ],
+)
+def test_a_site_that_looked_at_both_bodies_settles_whether_one_is_near_the_sun(
+    from_site: dict[str, str | None], elongation: float, near: bool
+) -> None:
+    pair = CONJUNCTION | {"elongation_deg": elongation, "separation_deg": 5.0} | from_site
+    assert words.near_the_sun(pair) is near
+
+
 def test_the_short_cautions_defer_to_local_rules_as_the_long_ones_do() -> None:
     for long, short in facts.SHORT_NOTES.items():
         assert "local rules" in long.lower()

@@ -205,3 +205,13 @@ def test_the_clock_of_the_sentence_is_the_tables(seen: pl.DataFrame) -> None:
         rounded = min(hour * 60 + minute + (second >= 30), 1_439)
         bare = told(row | {"verdict": None}).long
         assert f"at {rounded // 60:02d}:{rounded % 60:02d} local time" in bare
+
+
+@pytest.mark.parametrize("code", ["en", "de"])
+def test_by_day_the_caution_is_of_the_sun_that_is_up_not_of_nearness(code: str) -> None:
+    words = language(code)
+    up = "The Sun is up: no binoculars or telescope, after sunset at 18:00"
+    by_day = PAIR | {"elongation_deg": 90.0, "caution": up}
+    assert notes.caution(by_day, words) == words.phrase("notes", "daylight")
+    assert notes.caution(by_day | {"elongation_deg": 15.0}, words) == words.phrase("notes", "near_sun")
+    assert notes.caution(by_day | {"caution": None}, words) is None

@@ -118,7 +118,7 @@ def _layout(table: pl.DataFrame) -> list[Column]:
 
 def _with_frame(layout: list[Column], table: pl.DataFrame) -> list[Column]:
     """Return a layout of seasons that names the frame, unless all are of the usual one."""
-    if table["frame"].is_in([Frame.ECLIPTIC.value]).all():
+    if (table["frame"] == Frame.ECLIPTIC.value).all():
         return layout
     return [layout[0], ("Frame", _texts("frame", FRAME_WORDS.__getitem__), False), *layout[1:]]
 

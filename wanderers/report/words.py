@@ -103,13 +103,12 @@ def uncertainty(event: Event) -> str | None:
 def near_the_sun(event: Event) -> bool:
     """Return whether a body of an event may stand less than NEAR_SUN_DEG from the Sun.
 
-    A site's row says it of all of them. Without a site the elongation told is that of the first body; the
-    others may stand nearer by the whole separation.
+    The elongation told is that of the first body; the others may stand nearer by the whole separation, unless
+    a site has looked at all of them and found no cause for caution.
     """
-    if event.get("caution") is not None:
-        return True
     elongation = event["elongation_deg"]
-    nearer = 0.0 if "caution" in event else event["separation_deg"] or 0.0
+    is_cleared = "caution" in event and event["caution"] is None
+    nearer = 0.0 if is_cleared else event["separation_deg"] or 0.0
     return elongation is not None and elongation - nearer < NEAR_SUN_DEG
 
 

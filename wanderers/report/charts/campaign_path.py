@@ -10,8 +10,8 @@ from matplotlib.axes import Axes
 
 from wanderers.arrays import Floats
 from wanderers.ephemeris import frames
-from wanderers.ephemeris.vectors import unit_vectors
 from wanderers.plans.frame import coordinates
+from wanderers.plans.rows import directions
 from wanderers.report.campaign.contents import CampaignContents
 from wanderers.report.charts import campaign_nights, labels, timeaxis
 from wanderers.report.charts.campaign_backdrop import Plane
@@ -28,7 +28,7 @@ STEPS_DEG: Final = np.array([1.0, 2.0, 5.0, 10.0, 15.0, 20.0, 30.0, 60.0, 120.0,
 
 def plan_places(plane: Plane, table: pl.DataFrame) -> Floats:
     """Return places of nights in the picture, shape (n, 2)."""
-    return plane.places(_directions(table))
+    return plane.places(directions(table))
 
 
 def stretch(contents: CampaignContents) -> bool:
@@ -117,15 +117,11 @@ def _month_labels(ax: Axes, contents: CampaignContents, line: Floats, style: Sty
 
 def _on_axes(table: pl.DataFrame, x: Floats) -> Floats:
     """Return longitude (on the same turn as the path's) and latitude of nights, shape (n, 2)."""
-    longitude, latitude = _ecliptic(_directions(table))
+    longitude, latitude = _ecliptic(directions(table))
     middle = 0.5 * (float(x.min()) + float(x.max()))
     return np.stack([middle + (longitude - middle + 180.0) % 360.0 - 180.0, latitude], axis=1)
 
 
-def _directions(table: pl.DataFrame) -> Floats:
-    return unit_vectors(table["ra_j2000_deg"].to_numpy(), table["dec_j2000_deg"].to_numpy())
-
-
-def _ecliptic(directions: Floats) -> tuple[Floats, Floats]:
+def _ecliptic(direction: Floats) -> tuple[Floats, Floats]:
     """Return longitude and latitude on the mean ecliptic of J2000, shape (n,) each."""
-    return coordinates(frames.ecliptic_of_j2000() @ directions)
+    return coordinates(frames.ecliptic_of_j2000() @ direction)

@@ -212,6 +212,7 @@ def _entry(row: words.Event, rank: int) -> Entry:
     is_target = row["body"] != Body.SUN and row["kind"] not in NO_SIGHTS
     at_the_sun = row["kind"] == Kind.TRANSIT
     said = phrases.wordings(row, date=_short_date(row["happens"]))
+    risky = row.get("caution") is not None or words.near_the_sun(row)
     return Entry(
         day=row["day"],
         minute=minute,
@@ -220,7 +221,7 @@ def _entry(row: words.Event, rank: int) -> Entry:
         plain=said,
         rank=rank,
         state=state,
-        near_sun=is_target and (at_the_sun or words.near_the_sun(row)),
+        near_sun=is_target and (at_the_sun or risky),
         at_the_sun=at_the_sun,
         near_midnight=state is not State.WATCHED and row["kind"] not in TIMELESS and _near_midnight(minute),
     )
