@@ -24,7 +24,6 @@ MOON_RADIUS_KM = 1737.4
 """IAU Working Group on Cartographic Coordinates, report of 2015, table 5."""
 SUN_RADIUS_ARCSEC = 959.63
 """At 1 au: Auwers 1891, still the almanacs' convention (Explanatory Supplement, 3rd ed., table 10.1)."""
-AU_KM = 149_597_870.7
 SECONDS = 86_400.0
 
 
